@@ -1,0 +1,62 @@
+import type { Mesh } from '../mesh/Mesh.js';
+
+/** The guide arm on which the internal phase sits: `differential` is +theta/2 above and -theta/2 below. */
+export const INTERNAL_ARMS = ['upper', 'lower', 'differential'] as const;
+export type InternalArm = (typeof INTERNAL_ARMS)[number];
+
+/** The guide on which the external phase sits, before or behind the two splitters. */
+export const EXTERNAL_GUIDES = ['upper-input', 'lower-input', 'upper-output', 'lower-output'] as const;
+export type ExternalGuide = (typeof EXTERNAL_GUIDES)[number];
+
+/** `symmetric`: [[cos a, i sin a], [i sin a, cos a]]; `real`: [[cos a, sin a], [sin a, -cos a]]. */
+export const SPLITTER_FORMS = ['symmetric', 'real'] as const;
+export type SplitterForm = (typeof SPLITTER_FORMS)[number];
+
+/** How every cell of a chip is built, as it stands on the chip. */
+export interface CellStyle {
+  readonly internal: InternalArm;
+  readonly external: ExternalGuide;
+  readonly splitterForm: SplitterForm;
+}
+
+/** Amplitude factors in (0, 1]; 1 is no loss. */
+export interface ChipLoss {
+  /** On both ports at each splitter passed. */
+  readonly splitter: number;
+  /** On the one guide of each phase shifter, whatever its setting; on both arms of a differential one. */
+  readonly shifter: number;
+  /** On all ports at each column. */
+  readonly column: number;
+  /** Facets, per port. */
+  readonly input: Float64Array;
+  readonly output: Float64Array;
+}
+
+/** Phases in radians that a shifter can be set to, ends included. */
+export type PhaseRange = readonly [low: number, high: number];
+
+/** A chip as the program works with it: every default filled in, losses as amplitude factors. Plain readonly data. */
+export interface Chip {
+  readonly name: string;
+  readonly note: string;
+  readonly mesh: Mesh;
+  readonly style: CellStyle;
+  /** False for a chip without the last column of N phases (or the first, for external phases at the output). */
+  readonly portShifters: boolean;
+  /** Power that crosses, two per cell in cell order: at 2k the splitter that the light meets first, at 2k+1 the second. */
+  readonly couplingRatios: Float64Array;
+  readonly loss: ChipLoss;
+  /** Range of every shifter without one of its own; null when the chip states none. */
+  readonly shifterRange: PhaseRange | null;
+  /** Own ranges by index (from 0) of the shifter. */
+  readonly shifterRanges: ReadonlyMap<number, PhaseRange>;
+  /** Own names by index (from 0) of the shifter. */
+  readonly shifterNames: ReadonlyMap<number, string>;
+  /** Names of the ports from the top, or null. */
+  readonly portNames: readonly string[] | null;
+}
+
+/** True when the external phase stands behind the splitters; the free port phases are then at the mesh's inputs. */
+export function externalAtOutput(style: CellStyle): boolean {
+  return style.external === 'upper-output' || style.external === 'lower-output';
+}
