@@ -84,7 +84,5 @@ function placeOnMesh(
 }
 
 function diagonalPhases({ rows: modes, re, im }: ComplexMatrix): Float64Array {
-  return Float64Array.from({ length: modes }, (_, i) =>
-    Math.atan2(im[i * modes + i]!, re[i * modes + i]!),
-  );
+  return Float64Array.from({ length: modes }, (_, i) => Math.atan2(im[i * modes + i]!, re[i * modes + i]!));
 }
