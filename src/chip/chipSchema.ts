@@ -1,0 +1,111 @@
+import { z } from 'zod';
+import { LAYOUTS, MIRRORS } from '../mesh/Mesh.js';
+import { EXTERNAL_GUIDES, INTERNAL_ARMS, SPLITTER_FORMS } from './Chip.js';
+
+/** The newest chip-file format that this version reads and the one that it writes. */
+export const CHIP_FORMAT = 1;
+
+/** Ports that a chip may have; a mesh of 1024 ports has over a million shifters. */
+export const MAX_CHIP_MODES = 1024;
+
+const ratio = z
+  .number()
+  .min(0)
+  .max(1)
+  .describe('Power coupling ratio: the share of the power that changes guide.');
+const ratioPair = z.tuple([ratio, ratio]).describe('First and second splitter, as the light meets them.');
+const decibels = z.number().min(0).max(1000).describe('Loss in dB, 0 or more.');
+const decibelsPerPort = z
+  .union([decibels, z.array(decibels)])
+  .describe('Loss in dB: one number for all ports, or one for each port from the top.');
+const angle = z.number().min(-1e4).max(1e4);
+const range = z
+  .tuple([angle, angle])
+  .describe('Least and greatest phase in radians that can be set, both ends included.');
+const name = z.string().min(1).max(200);
+
+/** The chip file, as the project's design describes it. Only `modes` is required; unknown keys are refused. */
+export const chipFileSchema = z
+  .strictObject({
+    $schema: z.string().exactOptional().describe('Where editors find this schema.'),
+    format: z.literal(CHIP_FORMAT).exactOptional().describe('Version of the file format.'),
+    name: name.exactOptional().describe('Name of the chip.'),
+    note: z.string().max(10_000).exactOptional().describe('Anything that a reader should know.'),
+    modes: z.int().min(1).max(MAX_CHIP_MODES).describe('Number of ports on either side.'),
+    layout: z
+      .enum(LAYOUTS)
+      .exactOptional()
+      .describe('rectangular (Clements et al. 2016, the default) or triangular (Reck et al. 1994).'),
+    mirror: z
+      .enum(MIRRORS)
+      .exactOptional()
+      .describe(
+        'ports: port p at the place of port N+1-p. columns: the columns in reverse order. Default none.',
+      ),
+    portShifters: z
+      .boolean()
+      .exactOptional()
+      .describe('Whether the N phases at the outputs (or inputs) are there; default true.'),
+    cellStyle: z
+      .strictObject({
+        internal: z
+          .enum(INTERNAL_ARMS)
+          .exactOptional()
+          .describe(
+            'Arm of the internal phase; differential is +theta/2 above, -theta/2 below. Default upper.',
+          ),
+        external: z
+          .enum(EXTERNAL_GUIDES)
+          .exactOptional()
+          .describe('Guide of the external phase. Default upper-input.'),
+        splitterForm: z
+          .enum(SPLITTER_FORMS)
+          .exactOptional()
+          .describe(
+            '[[cos a, i sin a], [i sin a, cos a]] (symmetric, default) or [[cos a, sin a], [sin a, -cos a]].',
+          ),
+      })
+      .exactOptional()
+      .describe('How every cell is built, as it stands on the chip.'),
+    couplingRatio: ratio.exactOptional().describe('Nominal ratio of every splitter; default 0.5.'),
+    measuredCells: z
+      .array(
+        z.strictObject({ cell: z.int().min(1).describe('Number of the cell.'), couplingRatio: ratioPair }),
+      )
+      .exactOptional()
+      .describe('Measured ratios; cells that are not listed have the nominal one.'),
+    lossDb: z
+      .strictObject({
+        splitter: decibels.exactOptional().describe('On both ports at each splitter passed.'),
+        shifter: decibels.exactOptional().describe('On the one guide of each phase shifter.'),
+        column: decibels.exactOptional().describe('On all ports at each column.'),
+        input: decibelsPerPort.exactOptional().describe('Coupling (facet) loss at the inputs.'),
+        output: decibelsPerPort.exactOptional().describe('Coupling (facet) loss at the outputs.'),
+      })
+      .exactOptional()
+      .describe('Losses in dB; what is not given is 0.'),
+    shifterLimits: z
+      .strictObject({ rangeRad: range })
+      .exactOptional()
+      .describe('Limits of every shifter; without them any phase can be set.'),
+    shifterOverrides: z
+      .array(
+        z.strictObject({
+          shifter: z.int().min(1).describe('Number of the shifter, as in the phase table.'),
+          name: name.exactOptional().describe('Name of the shifter, such as its pad.'),
+          rangeRad: range.exactOptional(),
+        }),
+      )
+      .exactOptional()
+      .describe('Shifters with a name or limits of their own.'),
+    portNames: z.array(name).exactOptional().describe('Names of the ports from the top.'),
+  })
+  .describe('A programmable photonic chip: a mesh of Mach-Zehnder interferometers.');
+
+/** A chip file that has passed the schema. */
+export type ChipFile = z.infer<typeof chipFileSchema>;
+
+/** The schema as JSON Schema (draft 2020-12), for editors. */
+export function chipJsonSchema(): Record<string, unknown> {
+  return { title: 'phasewright chip file', ...z.toJSONSchema(chipFileSchema) };
+}
