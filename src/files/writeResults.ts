@@ -42,8 +42,9 @@ export async function writeResults({ folder, files, report, runId, force }: Resu
   try {
     for (const [name, content] of contents)
       temporaries.push(await writeTemporary(join(folder, name), content));
-    for (const name of earlier?.files ?? []) {
-      if (!files.has(name)) await rm(join(folder, name), { force: true });
+    if (earlier !== undefined && earlier.runId !== runId) {
+      // The old report goes first and the new one comes last: at no moment does a report stand beside another run's files.
+      for (const name of [REPORT_FILE, ...earlier.files]) await rm(join(folder, name), { force: true });
     }
     for (const [k, [name]] of contents.entries()) await rename(temporaries[k]!, join(folder, name));
   } catch (error) {

@@ -94,6 +94,12 @@ function noHeader(found: string): InputError {
   );
 }
 
+/** A value as it stands in the file, cut; a word that is no number has become NaN by now. */
+function shown(value: unknown): string {
+  if (typeof value === 'number') return Number.isNaN(value) ? 'not a number' : String(value);
+  return (JSON.stringify(value) ?? 'missing').slice(0, 40);
+}
+
 type RawRow = { readonly [key in keyof PhaseRow]: unknown };
 
 function checkedRow(raw: RawRow, k: number): PhaseRow {
@@ -105,22 +111,19 @@ function checkedRow(raw: RawRow, k: number): PhaseRow {
     const mayBeEmpty = key === 'cell' || key === 'column';
     if (value === null && mayBeEmpty) continue;
     if (!(Number.isSafeInteger(value) && (value as number) >= 1)) {
-      throw fault(
-        `${key} is ${value === null ? 'empty' : String(value)}`,
-        `${key} is a whole number from 1.`,
-      );
+      throw fault(`${key} is ${value === null ? 'empty' : shown(value)}`, `${key} is a whole number from 1.`);
     }
   }
   if (!ROLES.includes(role as ShifterRole)) {
     const near = typeof role === 'string' ? nearestName(role, ROLES) : undefined;
     throw fault(
-      `there is no role ${String(role)}`,
+      `there is no role ${shown(role)}`,
       near ? `Did you mean ${near}?` : `Roles are ${ROLES.join(', ')}.`,
     );
   }
   if (!(typeof phaseRad === 'number' && Number.isFinite(phaseRad))) {
     throw fault(
-      `the phase is ${phaseRad === null ? 'empty' : String(phaseRad)}`,
+      `the phase is ${phaseRad === null ? 'empty' : shown(phaseRad)}`,
       'A phase is a finite number, in radians.',
     );
   }

@@ -1,0 +1,104 @@
+import { Command, CommanderError } from 'commander';
+import { createColors } from 'picocolors';
+import { InputError } from '../errors/InputError.js';
+import { packageVersion } from '../files/version.js';
+import { addChipCommand } from './chip.js';
+import { addFigureCommand } from './figure.js';
+import { addPhasesCommand } from './phases.js';
+import { addTargetCommand } from './target.js';
+import { addVerifyCommand } from './verify.js';
+
+/** Exit codes of the program. */
+export const EXIT = { done: 0, notMet: 1, input: 2, internal: 3 } as const;
+
+/**
+ * Runs the program with its arguments (without the names of node and of the script). Prints results, messages and errors.
+ * @returns the exit code: 0 done, 1 done and a --require not met, 2 input or usage at fault, 3 internal fault
+ */
+export async function runCommandLine(args: readonly string[]): Promise<number> {
+  let exitCode: number = EXIT.done;
+  const program = buildProgram((code) => (exitCode = code));
+  if (args.length === 0) {
+    process.stderr.write(program.helpInformation());
+    return EXIT.input;
+  }
+  try {
+    await program.parseAsync([...args], { from: 'user' });
+    return exitCode;
+  } catch (error) {
+    return reportError(error, args);
+  }
+}
+
+function buildProgram(setExitCode: (code: number) => void): Command {
+  const program = new Command('phasewright')
+    .description('Phases, fidelity and figures for programmable photonic chips.')
+    .version(packageVersion(), '--version', 'print the version')
+    .helpOption('-h, --help', 'print help')
+    .helpCommand('help [command]', 'print help for a command')
+    .exitOverride()
+    .configureOutput({ writeErr: () => undefined })
+    .addHelpText(
+      'after',
+      `
+Examples:
+  phasewright phases "dft(4)"                       phases of an ideal chip for a 4-port Fourier transform
+  phasewright phases target.npy --chip my.chip.json phases of your own chip
+  phasewright help phases                           all options of a command
+
+Exit codes: 0 done, 1 a --require was not met, 2 input or usage at fault, 3 internal fault.`,
+    );
+  addPhasesCommand(program, setExitCode);
+  addVerifyCommand(program, setExitCode);
+  addTargetCommand(program, setExitCode);
+  addChipCommand(program);
+  addFigureCommand(program);
+  for (const command of program.commands) {
+    command.exitOverride().configureOutput({ writeErr: () => undefined });
+  }
+  return program;
+}
+
+/** Prints an error: one line that says what is wrong and where, one that says how to mend it. */
+function reportError(error: unknown, args: readonly string[]): number {
+  if (error instanceof CommanderError && error.exitCode === 0) return EXIT.done;
+  const { what, remedy, code } = inWords(error, args);
+  const colours = createColors(process.stderr.isTTY && !process.env['NO_COLOR']);
+  process.stderr.write(`${colours.red('error')}: ${what}\n${remedy}\n`);
+  if (args.includes('--debug') && error instanceof Error) process.stderr.write(`${error.stack ?? ''}\n`);
+  return code;
+}
+
+interface ErrorInWords {
+  readonly what: string;
+  readonly remedy: string;
+  readonly code: number;
+}
+
+function inWords(error: unknown, args: readonly string[]): ErrorInWords {
+  if (error instanceof InputError) return { what: error.message, remedy: error.remedy, code: EXIT.input };
+  if (error instanceof CommanderError) return { ...usageInWords(error, args), code: EXIT.input };
+  const message = error instanceof Error ? error.message : String(error);
+  return {
+    what: `internal fault: ${message.split('\n')[0]!}`,
+    remedy: 'This is a mistake in phasewright: please report it, with what --debug prints.',
+    code: EXIT.internal,
+  };
+}
+
+function usageInWords(error: CommanderError, args: readonly string[]): { what: string; remedy: string } {
+  const [first = '', second] = error.message.replace(/^error: /, '').split('\n');
+  const suggestion = second === undefined ? undefined : /Did you mean (?:one of )?(.*)\?\)/.exec(second)?.[1];
+  const command = args.find((argument) => !argument.startsWith('-'));
+  const help = `See phasewright help${error.code === 'commander.unknownCommand' || !command ? '' : ` ${command}`}.`;
+  if (error.code === 'commander.unknownOption') {
+    const option = /'(.*)'/.exec(first)?.[1] ?? '';
+    if (/^-[^-]/.test(option) && option !== '-h') {
+      return {
+        what: first,
+        remedy: `If ${option} is a formula, put -- before it: phasewright ${command ?? 'phases'} -- "${option}"`,
+      };
+    }
+  }
+  return { what: first, remedy: suggestion === undefined ? help : `Did you mean ${suggestion}?` };
+}

@@ -1,0 +1,111 @@
+import type { Command } from 'commander';
+import { externalAtOutput } from '../chip/Chip.js';
+import { InputError } from '../errors/InputError.js';
+import { matrixHash, runIdentity } from '../files/contentHash.js';
+import { writeNamedFile } from '../files/writeFile.js';
+import type { Merit } from '../merit/merit.js';
+import { figuresOfMerit } from '../merit/merit.js';
+import { simulate } from '../simulate/simulate.js';
+import type { OutputOptions } from './commandOptions.js';
+import { addChipOptions, addOutputOptions, addTargetOptions } from './commandOptions.js';
+import { createConsole } from './console.js';
+import { captionLines } from './figureText.js';
+import { finish } from './finish.js';
+import { chipHash } from './loadChip.js';
+import type { LoadedTable, TableOptions } from './loadTable.js';
+import { loadTable } from './loadTable.js';
+import { defaultFolder } from './names.js';
+import { chipBlock, reportHead } from './reportParts.js';
+
+interface FigureOptions extends OutputOptions, TableOptions {
+  readonly to?: string;
+  readonly width?: 'one-column' | 'two-column' | number;
+  readonly numbers?: boolean;
+  readonly cellNumbers?: boolean;
+  readonly title?: string;
+}
+
+/** Adds the command `figure TABLE`. */
+export function addFigureCommand(parent: Command): void {
+  const command = parent
+    .command('figure')
+    .argument('<table>', 'phases.csv or phases.json')
+    .summary('draw the mesh with its phases as SVG')
+    .description('Draw the mesh of a phase table as SVG: mesh.svg in the folder of the results, and --to.')
+    .option('--target <target>', 'the target named in the caption instead of the one in the table')
+    .option('--width <width>', 'one-column (85 mm), two-column (178 mm) or millimetres', parseWidth)
+    .option('--numbers', 'write the phases beside the shifters, also on larger meshes')
+    .option('--no-numbers', 'show the phases by colour only')
+    .option('--cell-numbers', 'number the cells')
+    .option('--title <text>', 'title instead of the name of the chip')
+    .option('--to <file>', 'write the figure here too (.svg)');
+  addChipOptions(command);
+  addTargetOptions(command);
+  addOutputOptions(command)
+    .addHelpText(
+      'after',
+      `
+Examples:
+  phasewright figure out/phases-dft-4/phases.csv --width one-column --to mesh.svg
+  phasewright figure phases.csv --chip my.chip.json --no-numbers --title "Chip 7, as programmed"`,
+    )
+    .action(async (argument: string, options: FigureOptions) => {
+      await runFigure(argument, options);
+    });
+}
+
+async function runFigure(path: string, options: FigureOptions): Promise<void> {
+  const console = createConsole(options);
+  if (options.to !== undefined && !options.to.toLowerCase().endsWith('.svg')) {
+    throw new InputError(
+      'figure/ending',
+      'figures are written as .svg',
+      'Write an .svg and convert it, for example with rsvg-convert.',
+      { source: options.to },
+    );
+  }
+  const table = await loadTable(path, options);
+  const { chip } = table.readChip;
+  const { drawMeshFigure } = await import('../figure/drawMeshFigure.js');
+  const { width, numbers, cellNumbers, title } = options;
+  const svg = drawMeshFigure(chip, table.settings, {
+    title: title ?? chip.name,
+    captionLines: captionLines(chip, table.target?.source ?? null, meritOf(table)),
+    ...(width === undefined ? {} : { width }),
+    ...(numbers === undefined ? {} : { numbers }),
+    ...(cellNumbers === undefined ? {} : { cellNumbers }),
+  });
+  const runId = runIdentity(
+    'figure',
+    {
+      table: table.hash,
+      chip: chipHash(table.readChip),
+      target: table.target ? matrixHash(table.target.matrix) : '',
+    },
+    { width, numbers, cellNumbers, title },
+  );
+  if (options.to !== undefined) await writeNamedFile(options.to, svg, options.force === true);
+  await finish(console, options, {
+    folder: options.out ?? defaultFolder('figure', { path, text: path }),
+    files: new Map([['mesh.svg', svg]]),
+    report: { ...reportHead('figure', runId), table: { source: path }, chip: chipBlock(chip) },
+  });
+  if (options.to !== undefined) console.message(`written to ${options.to}`);
+}
+
+function meritOf({ target, settings, readChip: { chip } }: LoadedTable): Merit | null {
+  if (target === null) return null;
+  const free = !chip.portShifters && externalAtOutput(chip.style) ? 'input' : 'output';
+  return figuresOfMerit(target.matrix, simulate(chip, settings), free);
+}
+
+function parseWidth(text: string): 'one-column' | 'two-column' | number {
+  if (text === 'one-column' || text === 'two-column') return text;
+  const width = Number(text);
+  if (text.trim() !== '' && width > 0 && width < Infinity) return width;
+  throw new InputError(
+    'usage/width',
+    `--width ${text}: this is no width`,
+    'Write one-column, two-column or a number of millimetres.',
+  );
+}

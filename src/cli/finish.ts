@@ -1,0 +1,31 @@
+import { writeResults } from '../files/writeResults.js';
+import { REPORT_FILE } from '../files/writeResults.js';
+import type { OutputOptions } from './commandOptions.js';
+import type { Console } from './console.js';
+import type { Report } from './reportParts.js';
+
+/** What a command has found, ready to be written and shown. */
+export interface Outcome {
+  readonly folder: string;
+  /** Contents by file name, without the report. */
+  readonly files: ReadonlyMap<string, string | Uint8Array>;
+  /** The report without `files`, which are added here. */
+  readonly report: Readonly<Record<string, unknown>> & { readonly runId: string };
+}
+
+/** Writes the results, the report last, and prints the report when it is asked for. */
+export async function finish(console: Console, options: OutputOptions, outcome: Outcome): Promise<void> {
+  const { folder, files, report } = outcome;
+  const names = [...files.keys(), REPORT_FILE];
+  const whole: Report = { ...report, files: names };
+  const text = `${JSON.stringify(whole, null, 2)}\n`;
+  await writeResults({ folder, files, report: text, runId: report.runId, force: options.force === true });
+  if (options.json === true) process.stdout.write(text);
+  console.message(`written to ${folder}: ${shownNames(names)}`);
+}
+
+function shownNames(names: readonly string[]): string {
+  return names.length <= 6
+    ? names.join(', ')
+    : `${names.slice(0, 3).join(', ')}, ... ${names.slice(-2).join(', ')} (${names.length} files)`;
+}

@@ -1,0 +1,294 @@
+import type { Command } from 'commander';
+import type { ReadChip } from '../chip/readChip.js';
+import { externalAtOutput } from '../chip/Chip.js';
+import { contentHash, matrixHash, runIdentity } from '../files/contentHash.js';
+import { packageVersion } from '../files/version.js';
+import type { Merit } from '../merit/merit.js';
+import { figuresOfMerit, MERIT_KEYS } from '../merit/merit.js';
+import { missingPortPhases } from '../merit/portPhaseFree.js';
+import type { Program } from '../program/carryingSweep.js';
+import { formatPhaseJson } from '../program/formatPhaseJson.js';
+import type { PhaseRow } from '../program/PhaseTable.js';
+import { formatPhaseCsv, phaseRows } from '../program/PhaseTable.js';
+import { programChip } from '../program/programChip.js';
+import { simulate } from '../simulate/simulate.js';
+import type { AngleUnit } from '../units/angle.js';
+import type {
+  ChipOptions,
+  OutputOptions,
+  RequireOption,
+  TargetOptions,
+  UnitOption,
+} from './commandOptions.js';
+import {
+  addChipOptions,
+  addOutputOptions,
+  addRequireOption,
+  addTargetOptions,
+  addUnitOption,
+} from './commandOptions.js';
+import type { Console } from './console.js';
+import { createConsole } from './console.js';
+import { captionLines } from './figureText.js';
+import { finish } from './finish.js';
+import { chipHash, idealChipFor, loadNamedChip } from './loadChip.js';
+import type { LoadedTarget, RawTarget } from './loadTarget.js';
+import { prepareLoaded, rawTargetHash, readTarget } from './loadTarget.js';
+import { cautions, shownAngleNumber, tellOutOfRange, tellOutOfReach, tellRequirements } from './messages.js';
+import { defaultFolder } from './names.js';
+import {
+  chipBlock,
+  judge,
+  meritLines,
+  missingPortPhasesBlock,
+  outOfRangeBlock,
+  outOfReachBlock,
+  reportHead,
+  shownMerit,
+} from './reportParts.js';
+import { textTable } from './textTable.js';
+
+interface PhasesOptions extends OutputOptions, ChipOptions, TargetOptions, UnitOption, RequireOption {}
+
+/** Larger meshes are not drawn: a figure of them would be a grey field of several megabytes. */
+const LARGEST_FIGURE = 64;
+/** Longer tables are not printed; they are in the file. */
+const LONGEST_TABLE = 160;
+
+/** Adds the command `phases TARGET`. */
+export function addPhasesCommand(parent: Command, setExitCode: (code: number) => void): void {
+  const command = parent
+    .command('phases')
+    .argument('<target>', 'matrix file, formula such as dft(4), or - for standard input')
+    .summary('find the phase of every shifter for a target')
+    .description(
+      'Find the phase of every shifter for a target on a chip, check what the chip then does, and draw it.\n' +
+        'Writes phases.csv, phases.json, mesh.svg (up to 64 ports) and report.json. A .npy of shape (K, N, N) is a batch:\n' +
+        'K numbered tables and merit.csv.',
+    );
+  addChipOptions(command);
+  addTargetOptions(command);
+  addRequireOption(command);
+  addUnitOption(command);
+  addOutputOptions(command)
+    .addHelpText(
+      'after',
+      `
+Examples:
+  phasewright phases "dft(4)"                                  an ideal rectangular mesh
+  phasewright phases target.npy --chip my.chip.json            your own chip
+  phasewright phases target.npy --chip my.chip.json --require fidelity=0.99 --json
+  phasewright phases "splitter(0.3)" --ports 3-4 --chip my.chip.json
+  python3 make_target.py | phasewright phases - --layout triangular`,
+    )
+    .action(async (argument: string, options: PhasesOptions) => {
+      setExitCode(await runPhases(argument, options));
+    });
+}
+
+/** A target programmed on a chip, and how well the chip does it. */
+interface Programmed {
+  readonly target: LoadedTarget;
+  readonly program: Program;
+  readonly rows: PhaseRow[];
+  readonly merit: Merit;
+  readonly meritUncorrected: Merit | null;
+  readonly missing: Float64Array | null;
+}
+
+async function runPhases(argument: string, options: PhasesOptions): Promise<number> {
+  const console = createConsole(options);
+  const [raw, namedChip] = await Promise.all([readTarget(argument), loadNamedChip(options)]);
+  const readChip = namedChip ?? (await idealChipFor(raw.matrices[0]!.rows, options));
+  const modes = namedChip?.chip.mesh.modes;
+  const inputs = { target: rawTargetHash(raw), chip: chipHash(readChip) };
+  const runId = runIdentity('phases', inputs, settledOptions(options));
+  const folder = options.out ?? defaultFolder('phases', { ...raw, text: raw.source });
+  const each = raw.matrices.map((matrix) => programOne(readChip, prepareLoaded(raw, matrix, options, modes)));
+  const run: Run = { console, options, readChip, raw, each, runId, folder };
+  return raw.matrices.length === 1 ? reportOne(run) : reportBatch(run);
+}
+
+interface Run {
+  readonly console: Console;
+  readonly options: PhasesOptions;
+  readonly readChip: ReadChip;
+  readonly raw: RawTarget;
+  readonly each: readonly Programmed[];
+  readonly runId: string;
+  readonly folder: string;
+}
+
+/** The options that change the result. */
+function settledOptions(options: PhasesOptions): Record<string, unknown> {
+  const { transpose, conjugate, ports, nearest, unitaryWithin, require } = options;
+  return { transpose, conjugate, ports, nearest, unitaryWithin, require };
+}
+
+function programOne({ chip }: ReadChip, target: LoadedTarget): Programmed {
+  const { program, uncorrected } = programChip(chip, target.matrix);
+  const achieved = simulate(chip, program.settings);
+  const side = externalAtOutput(chip.style) ? 'input' : 'output';
+  const free = chip.portShifters ? 'output' : side;
+  return {
+    target,
+    program,
+    rows: phaseRows(chip, program.settings),
+    merit: figuresOfMerit(target.matrix, achieved, free),
+    meritUncorrected: uncorrected
+      ? figuresOfMerit(target.matrix, simulate(chip, uncorrected.settings), free)
+      : null,
+    missing: chip.portShifters ? null : missingPortPhases(target.matrix, achieved, side),
+  };
+}
+
+async function reportOne(run: Run): Promise<number> {
+  const { console, options, readChip, runId, folder } = run;
+  const one = run.each[0]!;
+  const { chip } = readChip;
+  const { target, program, rows, merit, meritUncorrected } = one;
+  const files = new Map<string, string>(tableFiles(run, one, ''));
+  if (chip.mesh.modes <= LARGEST_FIGURE) {
+    const { drawMeshFigure } = await import('../figure/drawMeshFigure.js');
+    const caption = captionLines(chip, target.source, merit);
+    files.set(
+      'mesh.svg',
+      drawMeshFigure(chip, program.settings, { title: chip.name, captionLines: caption }),
+    );
+  }
+  const requirements = judge(options.require ?? [], merit);
+  await finish(console, options, {
+    folder,
+    files,
+    report: {
+      ...reportHead('phases', runId),
+      target: {
+        source: target.source,
+        modes: target.matrix.rows,
+        unitarityDefect: target.unitarityDefect,
+        nearestDistance: target.nearestDistance,
+      },
+      chip: chipBlock(chip),
+      ...programmedBlocks(run, one),
+      requirements,
+      cautions: cautions(chip),
+    },
+  });
+  console.result(
+    `${chip.name}: ${target.source} on ${chip.mesh.cells} cells in ${chip.mesh.columns} columns\n`,
+  );
+  console.result(
+    meritLines(merit, meritUncorrected ? { title: 'uncorrected', merit: meritUncorrected } : undefined),
+  );
+  if (!chip.portShifters) {
+    console.result(
+      '\nno port shifters: the figure that detectors of power see is the port-phase-free fidelity',
+    );
+  }
+  console.result(`\n${shownRows(run.readChip, rows, options.unit)}`);
+  tellOutOfReach(console, chip, program.outOfReach);
+  tellOutOfRange(console, program.outOfRange, options.unit);
+  for (const caution of cautions(chip)) console.message(`caution: ${caution}`);
+  return tellRequirements(console, requirements);
+}
+
+/** The blocks of a report that belong to one programmed target. */
+function programmedBlocks({ readChip: { chip } }: Run, one: Programmed): Record<string, unknown> {
+  const { program, merit, meritUncorrected, missing } = one;
+  return {
+    merit,
+    ...(meritUncorrected ? { meritUncorrected } : {}),
+    outOfReach: outOfReachBlock(chip, program.outOfReach),
+    outOfRange: outOfRangeBlock(program.outOfRange),
+    missingPortPhases: missingPortPhasesBlock(missing),
+  };
+}
+
+/** phases.csv and phases.json of one target, their names ending in `suffix`. */
+function tableFiles(
+  run: Run,
+  { target, rows }: Programmed,
+  suffix: string,
+): [name: string, content: string][] {
+  const csv = formatPhaseCsv(rows);
+  const json = formatPhaseJson(rows, {
+    version: packageVersion(),
+    target,
+    chip: run.readChip.file,
+    options: settledOptions(run.options),
+    hashes: { target: matrixHash(target.matrix), chip: chipHash(run.readChip), phases: contentHash(csv) },
+  });
+  return [
+    [`phases${suffix}.csv`, csv],
+    [`phases${suffix}.json`, json],
+  ];
+}
+
+async function reportBatch(run: Run): Promise<number> {
+  const { console, options, readChip, raw, each, runId, folder } = run;
+  const digits = Math.max(3, String(each.length).length);
+  const files = new Map<string, string>();
+  const judged = each.map(({ merit }) => judge(options.require ?? [], merit));
+  let worst = 0;
+  const tables = each.map((one, k) => {
+    const [csv, json] = tableFiles(run, one, `-${String(k + 1).padStart(digits, '0')}`);
+    for (const [name, content] of [csv!, json!]) files.set(name, content);
+    if (!(one.merit.fidelity >= each[worst]!.merit.fidelity)) worst = k;
+    return { matrix: k + 1, table: csv![0], ...programmedBlocks(run, one), requirements: judged[k] };
+  });
+  const meritRows = each.map(({ merit }, k) =>
+    [k + 1, tables[k]!.table, ...MERIT_KEYS.map((key) => merit[key])].join(','),
+  );
+  files.set('merit.csv', `${['matrix', 'table', ...MERIT_KEYS].join(',')}\n${meritRows.join('\n')}\n`);
+  await finish(console, options, {
+    folder,
+    files,
+    report: {
+      ...reportHead('phases', runId),
+      target: {
+        source: raw.source,
+        modes: each[0]!.target.matrix.rows,
+        matrices: each.length,
+        unitarityDefect: Math.max(...each.map(({ target }) => target.unitarityDefect)),
+        nearestDistance:
+          options.nearest === true
+            ? Math.max(...each.map(({ target }) => target.nearestDistance ?? 0))
+            : null,
+      },
+      chip: chipBlock(readChip.chip),
+      worst: worst + 1,
+      ...programmedBlocks(run, each[worst]!),
+      tables,
+      cautions: cautions(readChip.chip),
+    },
+  });
+  const lowest = shownMerit(each[worst]!.merit.fidelity);
+  console.result(
+    `${readChip.chip.name}: ${each.length} targets from ${raw.source}; ` +
+      `the least faithful is number ${worst + 1}, with fidelity ${lowest}`,
+  );
+  const short = each.filter(
+    ({ program }) => program.outOfReach.length + program.outOfRange.length > 0,
+  ).length;
+  if (short > 0)
+    console.warning(`${short} of them ask for more than cells or shifters can do (see the report)`);
+  for (const caution of cautions(readChip.chip)) console.message(`caution: ${caution}`);
+  const codes = judged.map((one, k) => tellRequirements(console, one, ` by matrix ${k + 1}`));
+  return Math.max(...codes);
+}
+
+function shownRows({ chip }: ReadChip, rows: readonly PhaseRow[], unit: AngleUnit): string {
+  if (rows.length > LONGEST_TABLE) return `${rows.length} phases: see phases.csv`;
+  const named = rows.some(({ name }) => name !== '');
+  const header = ['shifter', 'cell', 'role', 'column', 'port', `phase (${unit})`, ...(named ? ['name'] : [])];
+  const cells = rows.map((row) => [
+    String(row.shifter),
+    String(row.cell ?? ''),
+    row.role,
+    String(row.column ?? ''),
+    chip.portNames ? `${row.port} ${chip.portNames[row.port - 1]!}` : String(row.port),
+    shownAngleNumber(row.phaseRad, unit),
+    ...(named ? [row.name] : []),
+  ]);
+  return textTable(header, cells);
+}

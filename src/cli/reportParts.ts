@@ -1,0 +1,93 @@
+import type { Chip } from '../chip/Chip.js';
+import { packageVersion } from '../files/version.js';
+import type { Merit } from '../merit/merit.js';
+import { isUpperLimit, MERIT_KEYS } from '../merit/merit.js';
+import type { OutOfRange, OutOfReach } from '../program/carryingSweep.js';
+import type { Requirement } from './commandOptions.js';
+
+/** The report of a command, as data; `runId` and `files` are what the writer of results needs. */
+export interface Report extends Readonly<Record<string, unknown>> {
+  readonly runId: string;
+  readonly files: readonly string[];
+}
+
+/** First fields of every report. */
+export function reportHead(
+  command: string,
+  runId: string,
+): { version: string; runId: string; command: string } {
+  return { version: packageVersion(), runId, command };
+}
+
+/** The block `chip` of a report. */
+export function chipBlock(chip: Chip): Record<string, unknown> {
+  const { name, mesh } = chip;
+  return { name, modes: mesh.modes, layout: mesh.layout, cells: mesh.cells, columns: mesh.columns };
+}
+
+/** The list `outOfReach` of a report: bar powers, numbers from 1. */
+export function outOfReachBlock(chip: Chip, list: readonly OutOfReach[]): Record<string, unknown>[] {
+  return list.map(({ cellIndex, wanted, low, high }) => ({
+    cell: cellIndex + 1,
+    column: chip.mesh.columnIndex[cellIndex]! + 1,
+    port: chip.mesh.upperPortIndex[cellIndex]! + 1,
+    wanted,
+    reach: [low, high],
+  }));
+}
+
+/** The list `outOfRange` of a report. */
+export function outOfRangeBlock(list: readonly OutOfRange[]): Record<string, unknown>[] {
+  return list.map(({ shifterIndex, wantedRad, setRad }) => ({
+    shifter: shifterIndex + 1,
+    wantedRad,
+    setRad,
+  }));
+}
+
+/** The list `missingPortPhases` of a report. */
+export function missingPortPhasesBlock(phases: Float64Array | null): { port: number; phaseRad: number }[] {
+  return Array.from(phases ?? [], (phaseRad, k) => ({ port: k + 1, phaseRad }));
+}
+
+/** A requirement with what was found. */
+export interface JudgedRequirement extends Requirement {
+  readonly value: number;
+  readonly met: boolean;
+}
+
+/** Judges requirements: errors must not be over their limit, all other figures not under it. NaN meets none. */
+export function judge(requirements: readonly Requirement[], merit: Merit): JudgedRequirement[] {
+  return requirements.map(({ key, limit }) => {
+    const value = merit[key];
+    return { key, limit, value, met: isUpperLimit(key) ? value <= limit : value >= limit };
+  });
+}
+
+const MERIT_NAMES: Readonly<Record<keyof Merit, string>> = {
+  fidelity: 'fidelity',
+  averageGateFidelity: 'average gate fidelity',
+  portPhaseFreeFidelity: 'port-phase-free fidelity',
+  rmsError: 'rms matrix error',
+  worstCaseError: 'worst-case error',
+  powerDistance: 'power distance',
+  transmission: 'transmission',
+  transmissionDb: 'transmission (dB)',
+};
+
+/** Figures of merit as lines of text; a second set, such as that of uncorrected phases, in a column of its own. */
+export function meritLines(merit: Merit, second?: { readonly title: string; readonly merit: Merit }): string {
+  const lines = MERIT_KEYS.map((key) => {
+    const name = MERIT_NAMES[key].padEnd(26);
+    const value = shownMerit(merit[key]);
+    return second ? `${name}${value.padEnd(16)}${shownMerit(second.merit[key])}` : `${name}${value}`;
+  });
+  return (second ? [`${''.padEnd(42)}${second.title}`, ...lines] : lines).join('\n');
+}
+
+/** A figure near 1 shows how far it is from 1, a small one its size. */
+export function shownMerit(value: number): string {
+  if (value > 0.999 && value < 1)
+    return value.toFixed(Math.min(15, Math.max(6, 2 - Math.floor(Math.log10(1 - value)))));
+  return String(Number(value.toPrecision(6)));
+}
