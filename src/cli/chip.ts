@@ -97,8 +97,8 @@ async function runChip(path: string | undefined, options: ChipCommandOptions): P
     folder: options.out ?? defaultFolder('chip', made ? { text: chip.name } : { path, text: path }),
     files,
     report: { ...reportHead('chip', runId), chip: { ...chipBlock(chip), ...fullChipBlock(chip) } },
+    show: () => console.result(describeChip(chip)),
   });
-  console.result(describeChip(chip));
   if (options.to !== undefined) console.message(`written to ${options.to}`);
 }
 

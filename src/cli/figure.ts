@@ -89,6 +89,7 @@ async function runFigure(path: string, options: FigureOptions): Promise<void> {
     folder: options.out ?? defaultFolder('figure', { path, text: path }),
     files: new Map([['mesh.svg', svg]]),
     report: { ...reportHead('figure', runId), table: { source: path }, chip: chipBlock(chip) },
+    show: () => undefined,
   });
   if (options.to !== undefined) console.message(`written to ${options.to}`);
 }

@@ -11,16 +11,19 @@ export interface Outcome {
   readonly files: ReadonlyMap<string, string | Uint8Array>;
   /** The report without `files`, which are added here. */
   readonly report: Readonly<Record<string, unknown>> & { readonly runId: string };
+  /** Prints the result in words. */
+  readonly show: () => void;
 }
 
-/** Writes the results, the report last, and prints the report when it is asked for. */
+/** Writes the results, the report last; then shows them, as words or as the report when it is asked for. */
 export async function finish(console: Console, options: OutputOptions, outcome: Outcome): Promise<void> {
-  const { folder, files, report } = outcome;
+  const { folder, files, report, show } = outcome;
   const names = [...files.keys(), REPORT_FILE];
   const whole: Report = { ...report, files: names };
   const text = `${JSON.stringify(whole, null, 2)}\n`;
   await writeResults({ folder, files, report: text, runId: report.runId, force: options.force === true });
   if (options.json === true) process.stdout.write(text);
+  show();
   console.message(`written to ${folder}: ${shownNames(names)}`);
 }
 

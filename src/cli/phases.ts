@@ -146,7 +146,7 @@ async function reportOne(run: Run): Promise<number> {
   const { console, options, readChip, runId, folder } = run;
   const one = run.each[0]!;
   const { chip } = readChip;
-  const { target, program, rows, merit, meritUncorrected } = one;
+  const { target, program, merit } = one;
   const files = new Map<string, string>(tableFiles(run, one, ''));
   if (chip.mesh.modes <= LARGEST_FIGURE) {
     const { drawMeshFigure } = await import('../figure/drawMeshFigure.js');
@@ -173,23 +173,29 @@ async function reportOne(run: Run): Promise<number> {
       requirements,
       cautions: cautions(chip),
     },
+    show: () => showOne(run, one),
   });
+  tellOutOfReach(console, chip, program.outOfReach);
+  tellOutOfRange(console, program.outOfRange, options.unit);
+  for (const caution of cautions(chip)) console.message(`caution: ${caution}`);
+  return tellRequirements(console, requirements);
+}
+
+function showOne(
+  { console, options, readChip }: Run,
+  { target, rows, merit, meritUncorrected }: Programmed,
+): void {
+  const { chip } = readChip;
   console.result(
     `${chip.name}: ${target.source} on ${chip.mesh.cells} cells in ${chip.mesh.columns} columns\n`,
   );
-  console.result(
-    meritLines(merit, meritUncorrected ? { title: 'uncorrected', merit: meritUncorrected } : undefined),
-  );
+  console.result(meritLines(merit, meritUncorrected));
   if (!chip.portShifters) {
     console.result(
       '\nno port shifters: the figure that detectors of power see is the port-phase-free fidelity',
     );
   }
-  console.result(`\n${shownRows(run.readChip, rows, options.unit)}`);
-  tellOutOfReach(console, chip, program.outOfReach);
-  tellOutOfRange(console, program.outOfRange, options.unit);
-  for (const caution of cautions(chip)) console.message(`caution: ${caution}`);
-  return tellRequirements(console, requirements);
+  console.result(`\n${shownRows(readChip, rows, options.unit)}`);
 }
 
 /** The blocks of a report that belong to one programmed target. */
@@ -261,12 +267,12 @@ async function reportBatch(run: Run): Promise<number> {
       tables,
       cautions: cautions(readChip.chip),
     },
+    show: () =>
+      console.result(
+        `${readChip.chip.name}: ${each.length} targets from ${raw.source}; the least faithful is number ` +
+          `${worst + 1}, with fidelity ${shownMerit(each[worst]!.merit.fidelity)}`,
+      ),
   });
-  const lowest = shownMerit(each[worst]!.merit.fidelity);
-  console.result(
-    `${readChip.chip.name}: ${each.length} targets from ${raw.source}; ` +
-      `the least faithful is number ${worst + 1}, with fidelity ${lowest}`,
-  );
   const short = each.filter(
     ({ program }) => program.outOfReach.length + program.outOfRange.length > 0,
   ).length;

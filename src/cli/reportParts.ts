@@ -75,14 +75,15 @@ const MERIT_NAMES: Readonly<Record<keyof Merit, string>> = {
   transmissionDb: 'transmission (dB)',
 };
 
-/** Figures of merit as lines of text; a second set, such as that of uncorrected phases, in a column of its own. */
-export function meritLines(merit: Merit, second?: { readonly title: string; readonly merit: Merit }): string {
+/** Figures of merit as lines of text, beside them those of the phases of an ideal chip where they differ. */
+export function meritLines(merit: Merit, uncorrected: Merit | null = null): string {
   const lines = MERIT_KEYS.map((key) => {
     const name = MERIT_NAMES[key].padEnd(26);
     const value = shownMerit(merit[key]);
-    return second ? `${name}${value.padEnd(16)}${shownMerit(second.merit[key])}` : `${name}${value}`;
+    return uncorrected ? `${name}${value.padEnd(16)}${shownMerit(uncorrected[key])}` : `${name}${value}`;
   });
-  return (second ? [`${''.padEnd(42)}${second.title}`, ...lines] : lines).join('\n');
+  const header = `${''.padEnd(26)}${'these phases'.padEnd(16)}phases of an ideal chip`;
+  return (uncorrected ? [header, ...lines] : lines).join('\n');
 }
 
 /** A figure near 1 shows how far it is from 1, a small one its size. */

@@ -92,14 +92,18 @@ async function runTarget(argument: string, options: TargetCommandOptions): Promi
       target: { ...loaded, modes: matrix.rows },
       ...(against && merit ? { against: { source: against.source }, merit, requirements } : {}),
     },
+    show: () => {
+      console.result(`${loaded.source}: ${matrix.rows} x ${matrix.rows}, ${describe(matrix)}`);
+      console.result(`unitarity defect ${shortNumber(loaded.unitarityDefect)} (max |U^dagger U - I|)`);
+      if (loaded.nearestDistance !== null) {
+        console.result(
+          `nearest unitary taken, at distance ${shortNumber(loaded.nearestDistance)} (Frobenius)`,
+        );
+      }
+      showMatrix(console, matrix);
+      if (against && merit) console.result(`\n${against.source} against it:\n${meritLines(merit)}`);
+    },
   });
-  console.result(`${loaded.source}: ${matrix.rows} x ${matrix.rows}, ${describe(matrix)}`);
-  console.result(`unitarity defect ${shortNumber(loaded.unitarityDefect)} (max |U^dagger U - I|)`);
-  if (loaded.nearestDistance !== null) {
-    console.result(`nearest unitary taken, at distance ${shortNumber(loaded.nearestDistance)} (Frobenius)`);
-  }
-  showMatrix(console, matrix);
-  if (against && merit) console.result(`\n${against.source} against it:\n${meritLines(merit)}`);
   if (options.to !== undefined) console.message(`written to ${options.to}`);
   return tellRequirements(console, requirements);
 }

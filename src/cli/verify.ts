@@ -112,11 +112,11 @@ async function runVerify(path: string, options: VerifyOptions): Promise<number> 
       ),
       requirements,
     },
+    show: () => {
+      console.result(`${path} on ${chip.name}, against ${target.source}\n`);
+      console.result(meritLines(merit, meritUncorrected));
+    },
   });
-  console.result(`${path} on ${chip.name}, against ${target.source}\n`);
-  console.result(
-    meritLines(merit, meritUncorrected ? { title: 'uncorrected', merit: meritUncorrected } : undefined),
-  );
   tellOutOfReach(console, chip, program.outOfReach);
   tellOutOfRange(console, outOfRange, options.unit);
   return tellRequirements(console, requirements);

@@ -28,7 +28,7 @@ export class InputError extends Error {
   /** The same fault, with the source named: readers of bytes do not know the file's name, their callers do. */
   withSource(source: string): InputError {
     if (this.place.source !== undefined) return this;
-    const bare = this.message.slice(oneLine(describePlace(this.place)).length);
+    const bare = this.message.slice(oneLine(describePlace(this.place)).length).trimStart();
     return new InputError(this.code, bare, this.remedy, { ...this.place, source }, { cause: this });
   }
 }

@@ -1,6 +1,6 @@
 /**
  * The name among `known` that a person most likely meant by `name`, or undefined when none is near: at most a third
- * of the letters may differ (Damerau-Levenshtein distance with adjacent exchanges, case ignored).
+ * of the letters may differ, one of a short name (Damerau-Levenshtein distance with adjacent exchanges, case ignored).
  */
 export function nearestName(name: string, known: Iterable<string>): string | undefined {
   let best: string | undefined;
@@ -8,7 +8,8 @@ export function nearestName(name: string, known: Iterable<string>): string | und
   const wanted = name.toLowerCase().slice(0, 64);
   for (const candidate of known) {
     const distance = editDistance(wanted, candidate.toLowerCase());
-    const allowed = Math.max(1, Math.floor(Math.max(wanted.length, candidate.length) / 3));
+    const longer = Math.max(wanted.length, candidate.length);
+    const allowed = longer < 2 ? 0 : Math.max(1, Math.floor(longer / 3));
     if (distance <= allowed && distance < bestDistance) {
       best = candidate;
       bestDistance = distance;

@@ -1,7 +1,7 @@
 /**
- * A dense complex matrix: real and imaginary parts in two planes, row by row. Entry (row, column), both counted from
- * 0, stands at index `row * columns + column` of `re` and `im`. Treated as immutable, except by functions whose name ends in
- * `InPlace` and by whoever has just made it.
+ * A dense complex matrix: real and imaginary parts in two planes, row by row. Entry (row, column), both
+ * counted from 0, stands at index `row * columns + column` of `re` and `im`. Treated as immutable, except
+ * by functions whose name ends in `InPlace` and by whoever has just made it.
  */
 export interface ComplexMatrix {
   readonly rows: number;

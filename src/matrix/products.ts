@@ -46,7 +46,6 @@ export function multiply(left: ComplexMatrix, right: ComplexMatrix): ComplexMatr
     for (let k = 0; k < inner; k++) {
       const ar = left.re[i * inner + k]!;
       const ai = left.im[i * inner + k]!;
-      if (ar === 0 && ai === 0) continue;
       const from = k * columns;
       for (let j = 0; j < columns; j++) {
         const br = right.re[from + j]!;

@@ -1,0 +1,81 @@
+// Matrices
+export type { ComplexMatrix, Entry } from './matrix/ComplexMatrix.js';
+export { copyMatrix, identityMatrix, matrixFromRows, zeroMatrix } from './matrix/ComplexMatrix.js';
+export { adjoint, conjugate, multiply, reversePorts, subtract, transpose } from './matrix/products.js';
+export { frobeniusNorm, oneNorm, unitarityDefect } from './matrix/norms.js';
+export { spectralNorm } from './matrix/spectralNorm.js';
+export { polarDecomposition, singularValueDecomposition, singularValues } from './matrix/singularValues.js';
+export { haarUnitary } from './matrix/haar.js';
+
+// Targets: from bytes or a formula, made ready, and back to bytes
+export type { MatrixFileKind } from './target/MatrixFileKind.js';
+export { matrixFileKind } from './target/MatrixFileKind.js';
+export type { ReadLimits } from './target/limits.js';
+export { readMatrices } from './target/readMatrices.js';
+export { writeMatrix } from './target/writeMatrix.js';
+export type { ExpressionOptions } from './target/evaluateExpression.js';
+export { evaluateExpression } from './target/evaluateExpression.js';
+export type { PreparedTarget, PrepareOptions } from './target/prepareTarget.js';
+export { prepareTarget } from './target/prepareTarget.js';
+
+// Meshes and chips
+export type { Layout, Mesh, Mirror } from './mesh/Mesh.js';
+export { cellIndexAt, columnCount, createMesh } from './mesh/Mesh.js';
+export type {
+  CellStyle,
+  Chip,
+  ChipLoss,
+  ExternalGuide,
+  InternalArm,
+  PhaseRange,
+  SplitterForm,
+} from './chip/Chip.js';
+export { externalAtOutput } from './chip/Chip.js';
+export type { ChipFile } from './chip/chipSchema.js';
+export { chipJsonSchema } from './chip/chipSchema.js';
+export type { ReadChip } from './chip/readChip.js';
+export { chipFromDocument, readChip } from './chip/readChip.js';
+export { resolveChip } from './chip/resolveChip.js';
+export type { IdealChipOptions } from './chip/idealChip.js';
+export { idealChip } from './chip/idealChip.js';
+export type { Reach } from './chip/reach.js';
+export { cellReach } from './chip/reach.js';
+export type { Settings } from './chip/Settings.js';
+export type { Shifter, ShifterRole } from './chip/shifters.js';
+export { listShifters, phaseOf, shifterCount } from './chip/shifters.js';
+
+// From a target to phases
+export type { Decomposition } from './decompose/Decomposition.js';
+export { reconstruct } from './decompose/Decomposition.js';
+export { decompose } from './decompose/decompose.js';
+export type { OutOfRange, OutOfReach, Program } from './program/carryingSweep.js';
+export { carryingSweep } from './program/carryingSweep.js';
+export type { ChipPrograms } from './program/programChip.js';
+export { programChip } from './program/programChip.js';
+export type { LimitedSettings } from './program/limitSettings.js';
+export { limitSettings } from './program/limitSettings.js';
+
+// What a chip does with them, and how well
+export { simulate } from './simulate/simulate.js';
+export type { Merit } from './merit/merit.js';
+export { figuresOfMerit } from './merit/merit.js';
+export type { PortSide } from './merit/portPhaseFree.js';
+export { missingPortPhases, portPhaseFreeFidelity } from './merit/portPhaseFree.js';
+export { powerDistance } from './merit/powerDistance.js';
+
+// Phase tables
+export type { PhaseRow } from './program/PhaseTable.js';
+export { formatPhaseCsv, PHASE_TABLE_HEADER, phaseRows } from './program/PhaseTable.js';
+export type { TableProvenance } from './program/formatPhaseJson.js';
+export { formatPhaseJson } from './program/formatPhaseJson.js';
+export type { ReadTable, TableOrigin } from './program/readPhaseTable.js';
+export { readPhaseTable } from './program/readPhaseTable.js';
+export { settingsFromRows } from './program/settingsFromRows.js';
+
+// Figures
+export type { MeshFigureOptions } from './figure/drawMeshFigure.js';
+export { drawMeshFigure } from './figure/drawMeshFigure.js';
+
+// Faults in the input
+export type { Place } from './errors/InputError.js';
+export { InputError } from './errors/InputError.js';
