@@ -1,39 +1,59 @@
 import { decodeText } from './decodeText.js';
 import { InputError } from './InputError.js';
 
-/** Brackets within brackets that are followed; real documents have fewer than ten, and deeper ones could overflow the stack. */
-const MAX_DEPTH = 64;
+/** Levels of brackets that are followed: documents of this program have fewer than ten. */
+const MAX_DEPTH = 32;
 
 /**
  * Parses JSON from bytes (UTF-8, a byte order mark allowed).
- * @throws InputError `input/not-text`, `input/empty`, `input/too-deep` or `input/not-json` with row and column (from 1)
+ * @throws InputError `input/not-text`, and what `parseJsonText` throws
  */
 export function parseJson(bytes: Uint8Array): unknown {
-  const text = decodeText(bytes);
+  return parseJsonText(decodeText(bytes));
+}
+
+/**
+ * Parses JSON.
+ * @throws InputError `input/empty`, `input/too-deep`, `input/not-finite` for NaN and Infinity, which JSON cannot write, or
+ * `input/not-json` with the line and the character where the text stops being JSON, when the engine tells them
+ */
+export function parseJsonText(text: string): unknown {
   if (text.trim() === '') {
-    throw new InputError('input/empty', 'the file is empty', 'Give a JSON document.');
+    throw new InputError('input/empty', 'there is nothing in it', 'Give a JSON document.');
   }
   requireShallow(text);
   try {
-    return JSON.parse(text) as unknown;
+    return JSON.parse(text);
   } catch (cause) {
-    const reason = cause instanceof Error ? cause.message : String(cause);
+    if (/[[,:]\s*-?(?:NaN|Infinity)\b/.test(text)) {
+      throw new InputError(
+        'input/not-finite',
+        'a number is NaN or Infinity, which JSON has no way to write',
+        'Every number must be finite.',
+        {},
+        { cause },
+      );
+    }
     throw new InputError(
       'input/not-json',
-      `this is not JSON: ${reason.replace(/ in JSON at position \d+.*$/, '').replace(/, ".*$/s, '')}`,
-      'Look for a missing or superfluous comma, quote or bracket at this place.',
-      placeOf(text, reason),
+      `this is not JSON: ${reason(cause, text)}`,
+      'Look there for a missing or superfluous comma, quotation mark or bracket.',
+      {},
       { cause },
     );
   }
 }
 
-function placeOf(text: string, reason: string): { row: number; column: number } {
-  const position = Number(/at position (\d+)/.exec(reason)?.[1] ?? text.length);
-  const before = text.slice(0, position).split('\n');
-  return { row: before.length, column: before[before.length - 1]!.length + 1 };
+function reason(cause: unknown, text: string): string {
+  const message = cause instanceof Error ? cause.message : String(cause);
+  const position = /at position (\d+)/.exec(message)?.[1];
+  const bare = message.replace(/ in JSON at position \d+.*$|,? "[^]*$| at position \d+.*$/, '').slice(0, 80);
+  if (position === undefined) return bare;
+  const lines = text.slice(0, Number(position)).split('\n');
+  return `${bare} at line ${lines.length}, character ${lines.at(-1)!.length + 1}`;
 }
 
+/** Bounds the nesting by a scan of the text, since the parser itself calls itself for every level. */
 function requireShallow(text: string): void {
   let depth = 0;
   let inString = false;
@@ -43,15 +63,14 @@ function requireShallow(text: string): void {
       if (character === 0x5c) k++;
       else if (character === 0x22) inString = false;
     } else if (character === 0x22) inString = true;
-    else if (character === 0x5b || character === 0x7b) {
-      depth++;
-      if (depth > MAX_DEPTH) {
-        throw new InputError(
-          'input/too-deep',
-          `the JSON is nested more than ${MAX_DEPTH} levels deep`,
-          'A document of this program needs fewer than ten levels.',
-        );
-      }
-    } else if (character === 0x5d || character === 0x7d) depth--;
+    else if (character === 0x5b || character === 0x7b) depth++;
+    else if (character === 0x5d || character === 0x7d) depth--;
+    if (depth > MAX_DEPTH) {
+      throw new InputError(
+        'input/too-deep',
+        `the JSON is nested more than ${MAX_DEPTH} levels deep`,
+        'No document of this program is; a matrix is an array of rows, each an array of entries.',
+      );
+    }
   }
 }

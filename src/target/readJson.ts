@@ -1,23 +1,19 @@
 import { InputError } from '../errors/InputError.js';
+import { parseJsonText } from '../errors/parseJson.js';
 import type { ComplexMatrix } from '../matrix/ComplexMatrix.js';
 import { zeroMatrix } from '../matrix/ComplexMatrix.js';
 import type { Complex } from './Complex.js';
 import { cut, emptyTarget, notFinite, requireSquare } from './limits.js';
 import { parseEntry } from './parseEntry.js';
 
-/** A matrix needs three levels, or four within an object; provenance beside it a few more. */
-const MAX_DEPTH = 32;
-
 /**
  * A matrix from JSON: `{"matrix": [[...]]}` or a bare array of rows; an entry is a number, `[re, im]`,
  * `{"re": .., "im": ..}` or a scalar in quotes as `parseEntry` reads it. Other keys beside `matrix` are ignored.
- * @throws InputError `target/json` (not JSON, with the position), `target/too-deep`, `target/wrong-file` (a chip or a
- * table), `target/empty`, `target/ragged`, `target/not-square`, `target/too-large`, and those of `parseEntry`.
+ * @throws InputError as `parseJsonText`, `target/json` (no matrix in it), `target/wrong-file` (a chip or a table), `target/empty`, `target/ragged`, `target/not-square`, `target/too-large`, and those of `parseEntry`.
  */
 export function readJson(text: string, maxModes: number): ComplexMatrix {
   if (text.trim() === '') throw emptyTarget();
-  requireShallow(text);
-  const rows = rowsOf(parseJson(text));
+  const rows = rowsOf(parseJsonText(text));
   const width = rows.map((row, i) => {
     if (!Array.isArray(row)) throw notARow(row, i);
     return row.length;
@@ -109,61 +105,6 @@ function notARow(row: unknown, i: number): InputError {
       row: i + 1,
     },
   );
-}
-
-function parseJson(text: string): unknown {
-  try {
-    return JSON.parse(text);
-  } catch (cause) {
-    if (/[[,:]\s*-?(?:NaN|Infinity)\b/.test(text)) {
-      throw new InputError(
-        'target/not-finite',
-        'an entry is NaN or Infinity, which JSON has no way to write',
-        'Every entry of a target must be a finite number.',
-        {},
-        { cause },
-      );
-    }
-    throw new InputError(
-      'target/json',
-      `this is not JSON: ${reason(cause, text)}`,
-      'Mend the JSON there.',
-      {},
-      { cause },
-    );
-  }
-}
-
-/** Where the text stops being JSON, as line and column when the engine tells the position. */
-function reason(cause: unknown, text: string): string {
-  const message = cause instanceof Error ? cause.message : String(cause);
-  const position = /at position (\d+)/.exec(message)?.[1];
-  const bare = cut(message.replace(/ in JSON at position \d+.*$|,? "[^]*$| at position \d+.*$/, ''), 80);
-  if (position === undefined) return bare;
-  const lines = text.slice(0, Number(position)).split('\n');
-  return `${bare} at line ${lines.length}, character ${lines.at(-1)!.length + 1}`;
-}
-
-/** Bounds the nesting by a scan of the text, since the parser itself calls itself for every level. */
-function requireShallow(text: string): void {
-  let depth = 0;
-  let inString = false;
-  for (let k = 0; k < text.length; k++) {
-    const character = text.charCodeAt(k);
-    if (inString) {
-      if (character === 0x5c) k++;
-      else if (character === 0x22) inString = false;
-    } else if (character === 0x22) inString = true;
-    else if (character === 0x5b || character === 0x7b) depth++;
-    else if (character === 0x5d || character === 0x7d) depth--;
-    if (depth > MAX_DEPTH) {
-      throw new InputError(
-        'target/too-deep',
-        `the JSON is nested more than ${MAX_DEPTH} levels deep`,
-        'A matrix is an array of rows, each an array of entries.',
-      );
-    }
-  }
 }
 
 function isRecord(value: unknown): value is Record<string, unknown> {

@@ -1,6 +1,6 @@
+import { decodeText } from '../errors/decodeText.js';
 import { InputError } from '../errors/InputError.js';
 import type { ComplexMatrix } from '../matrix/ComplexMatrix.js';
-import { decodeText } from './decodeText.js';
 import type { ReadLimits } from './limits.js';
 import { emptyTarget, maxModesOf } from './limits.js';
 import type { MatrixFileKind } from './MatrixFileKind.js';

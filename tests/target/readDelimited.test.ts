@@ -146,9 +146,9 @@ describe('separated text', () => {
     ['UTF-16', Uint8Array.of(0xff, 0xfe, 0x31, 0x00)],
     ['Latin-1', Uint8Array.of(0x31, 0x2c, 0xe9, 0x0a)],
   ])('refuses %s', (_, bytes) => {
-    faultOf(() => readMatrices(bytes, 'csv'), 'target/not-text');
-    faultOf(() => readMatrices(bytes, 'json'), 'target/not-text');
-    faultOf(() => readMatrices(bytes, 'mtx'), 'target/not-text');
+    faultOf(() => readMatrices(bytes, 'csv'), 'input/not-text');
+    faultOf(() => readMatrices(bytes, 'json'), 'input/not-text');
+    faultOf(() => readMatrices(bytes, 'mtx'), 'input/not-text');
   });
 
   it('bounds the size before it parses', () => {

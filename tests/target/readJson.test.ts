@@ -39,9 +39,9 @@ describe('JSON', () => {
     ['[[1, "y"], [0, 1]]', 'target/unknown-name', /row 1, column 2: "y"/],
     ['[[1, 1e999], [0, 1]]', 'target/not-finite', /row 1, column 2/],
     ['[[1, [0, 1e999]], [0, 1]]', 'target/not-finite', /row 1, column 2/],
-    ['[[1, NaN], [0, 1]]', 'target/not-finite', /NaN or Infinity/],
-    ['[[1, 0], [0, 1', 'target/json', /not JSON/],
-    ['[[1, 0],\n [0 1]]', 'target/json', /line 2, character 5/],
+    ['[[1, NaN], [0, 1]]', 'input/not-finite', /NaN or Infinity/],
+    ['[[1, 0], [0, 1', 'input/not-json', /not JSON/],
+    ['[[1, 0],\n [0 1]]', 'input/not-json', /line 2, character 5/],
     ['"matrix"', 'target/json', /no matrix/],
     ['{"matrix": 3}', 'target/json', /"matrix" holds 3/],
     ['{"rows": []}', 'target/json', /no key "matrix"/],
@@ -54,9 +54,9 @@ describe('JSON', () => {
 
   it('bounds the nesting before it parses, and does not count brackets in quotes', () => {
     const many = 100_000;
-    faultOf(() => readMatrices(bytesOf('['.repeat(many)), 'json'), 'target/too-deep');
-    faultOf(() => readMatrices(bytesOf('['.repeat(many) + ']'.repeat(many)), 'json'), 'target/too-deep');
-    faultOf(() => readMatrices(bytesOf('{"a":'.repeat(many)), 'json'), 'target/too-deep');
+    faultOf(() => readMatrices(bytesOf('['.repeat(many)), 'json'), 'input/too-deep');
+    faultOf(() => readMatrices(bytesOf('['.repeat(many) + ']'.repeat(many)), 'json'), 'input/too-deep');
+    faultOf(() => readMatrices(bytesOf('{"a":'.repeat(many)), 'json'), 'input/too-deep');
     expect(rowsFrom(`{"note": "\\"${'['.repeat(100)}", "matrix": [[1]]}`, 'json')).toEqual([[[1, 0]]]);
   });
 
