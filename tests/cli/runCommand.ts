@@ -1,0 +1,137 @@
+import { spawn } from 'node:child_process';
+import { mkdtempSync, readdirSync, rmSync } from 'node:fs';
+import { mkdir, readFile, writeFile } from 'node:fs/promises';
+import { tmpdir } from 'node:os';
+import { dirname, join } from 'node:path';
+import { fileURLToPath } from 'node:url';
+import { afterAll } from 'vitest';
+
+/** The built command; `npm run build` comes before these tests. */
+export const COMMAND = fileURLToPath(new URL('../../dist/cli/main.js', import.meta.url));
+
+export interface RunOptions {
+  /** Files that stand in the folder before the run, by path within it. */
+  readonly files?: Readonly<Record<string, string | Uint8Array>>;
+  /** Standard input; without it, it is empty. */
+  readonly input?: string | Uint8Array;
+  /** Run in this folder instead of in a fresh one. */
+  readonly folder?: string;
+  readonly environment?: Readonly<Record<string, string>>;
+  /** Arguments for node itself. */
+  readonly nodeArguments?: readonly string[];
+}
+
+export interface CommandRun {
+  readonly code: number | null;
+  readonly stdout: string;
+  readonly stderr: string;
+  /** The folder in which the command ran. */
+  readonly folder: string;
+  /** Every file and (ending in a slash) folder in it afterwards, sorted. */
+  readonly listing: readonly string[];
+  /** The text of a file in it. */
+  readonly read: (path: string) => Promise<string>;
+}
+
+const madeFolders: string[] = [];
+afterAll(() => {
+  for (const folder of madeFolders) rmSync(folder, { recursive: true, force: true });
+});
+
+/** A fresh empty folder, removed when the tests of the file are done. */
+export function freshFolder(): string {
+  const folder = mkdtempSync(join(tmpdir(), 'phasewright-test-'));
+  madeFolders.push(folder);
+  return folder;
+}
+
+/** Runs the built command and waits for its end. */
+export async function runCommand(args: readonly string[], options: RunOptions = {}): Promise<CommandRun> {
+  const folder = options.folder ?? freshFolder();
+  for (const [path, content] of Object.entries(options.files ?? {})) {
+    await mkdir(dirname(join(folder, path)), { recursive: true });
+    await writeFile(join(folder, path), content);
+  }
+  const { code, stdout, stderr } = await runProgram(
+    process.execPath,
+    [...(options.nodeArguments ?? []), COMMAND, ...args],
+    folder,
+    options,
+  );
+  return {
+    code,
+    stdout,
+    stderr,
+    folder,
+    listing: listFolder(folder),
+    read: (path) => readFile(join(folder, path), 'utf8'),
+  };
+}
+
+/** Runs any program in a folder; signals count as the code null. */
+export function runProgram(
+  program: string,
+  args: readonly string[],
+  folder: string,
+  { input = '', environment = {} }: Pick<RunOptions, 'input' | 'environment'> = {},
+): Promise<{ code: number | null; stdout: string; stderr: string }> {
+  return new Promise((resolve, reject) => {
+    const child = spawn(program, args, {
+      cwd: folder,
+      env: { ...plainEnvironment(), ...environment },
+      stdio: ['pipe', 'pipe', 'pipe'],
+    });
+    const [stdout, stderr]: [Buffer[], Buffer[]] = [[], []];
+    child.stdout.on('data', (chunk: Buffer) => stdout.push(chunk));
+    child.stderr.on('data', (chunk: Buffer) => stderr.push(chunk));
+    child.on('error', reject);
+    child.on('close', (code) =>
+      resolve({ code, stdout: Buffer.concat(stdout).toString(), stderr: Buffer.concat(stderr).toString() }),
+    );
+    // A command that fails early does not read its input: the broken pipe is then no fault of the test.
+    child.stdin.on('error', () => undefined);
+    child.stdin.end(input);
+  });
+}
+
+/** The environment without what test runners add for colours. */
+function plainEnvironment(): NodeJS.ProcessEnv {
+  const environment = { ...process.env };
+  for (const name of ['FORCE_COLOR', 'NO_COLOR', 'NODE_OPTIONS']) delete environment[name];
+  return environment;
+}
+
+function listFolder(folder: string, within = ''): string[] {
+  return readdirSync(join(folder, within), { withFileTypes: true })
+    .flatMap((entry) => {
+      const path = `${within}${entry.name}`;
+      return entry.isDirectory() ? [`${path}/`, ...listFolder(folder, `${path}/`)] : [path];
+    })
+    .sort();
+}
+
+/** JSON as a record, for reports. */
+export function asRecord(text: string): Record<string, unknown> {
+  return JSON.parse(text) as Record<string, unknown>;
+}
+
+/** The figures of merit in a report. */
+export function meritOf(report: string, key = 'merit'): Record<string, number> {
+  return asRecord(report)[key] as Record<string, number>;
+}
+
+/** An .npy file, format 1.0, of complex numbers given as pairs in C order (numpy.lib.format, NumPy Enhancement Proposal 1). */
+export function npyFile(shape: readonly number[], pairs: readonly (readonly [number, number])[]): Uint8Array {
+  const sizes = shape.length === 1 ? `${shape[0]},` : shape.join(', ');
+  return npyBytes(
+    `{'descr': '<c16', 'fortran_order': False, 'shape': (${sizes}), }`,
+    new Uint8Array(new Float64Array(pairs.flat()).buffer),
+  );
+}
+
+/** An .npy file with this header and these bytes of data. */
+export function npyBytes(header: string, data: Uint8Array): Uint8Array {
+  const length = Math.ceil((10 + header.length + 1) / 64) * 64 - 10;
+  const start = Buffer.from([0x93, 0x4e, 0x55, 0x4d, 0x50, 0x59, 1, 0, length & 255, length >> 8]);
+  return Buffer.concat([start, Buffer.from(`${header.padEnd(length - 1)}\n`, 'latin1'), data]);
+}
