@@ -53,7 +53,8 @@ describe('conversions between conventions', () => {
   const style = (change: Partial<CellStyle>): CellStyle => ({ ...REFERENCE_STYLE, ...change });
 
   it.each(ANGLES)('theta %d, phi %d', (theta, phi) => {
-    const same = (a: ComplexMatrix, b: ComplexMatrix): void => expect(maxDifference(a, b)).toBeLessThan(1e-15);
+    const same = (a: ComplexMatrix, b: ComplexMatrix): void =>
+      expect(maxDifference(a, b)).toBeLessThan(1e-15);
     same(cell(REFERENCE_STYLE, theta, phi), reference(theta, phi));
     // Lower arm: e^{i theta} M(-theta, phi).
     same(cell(style({ internal: 'lower' }), theta, phi), turnPhase(reference(-theta, phi), theta));

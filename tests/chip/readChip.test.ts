@@ -3,7 +3,12 @@ import { Ajv2020 } from 'ajv/dist/2020.js';
 import { describe, expect, it } from 'vitest';
 import { chipJsonSchema } from '../../src/chip/chipSchema.js';
 import { chipFromDocument, readChip } from '../../src/chip/readChip.js';
-import { listShifters, shifterCount, shifterIndexOfPort, shifterIndicesOfCell } from '../../src/chip/shifters.js';
+import {
+  listShifters,
+  shifterCount,
+  shifterIndexOfPort,
+  shifterIndicesOfCell,
+} from '../../src/chip/shifters.js';
 import { idealChip } from '../../src/chip/idealChip.js';
 import { InputError } from '../../src/errors/InputError.js';
 import { ALL_STYLES } from '../support/styles.js';
@@ -65,7 +70,11 @@ describe('faults name the field and the way to mend it', () => {
     [{ modes: 4, cellStyle: { internl: 'upper' } }, 'cellStyle.internl: unknown key', 'internal'],
     [{ modes: 4, cellStyle: { external: 'upper' } }, 'cellStyle.external: "upper"', 'upper-input'],
     [{ modes: 4, couplingRatio: 1.2 }, 'couplingRatio: 1.2', 'at most 1'],
-    [{ modes: 4, measuredCells: [{ cell: 7, couplingRatio: [0.5, 0.5] }] }, 'measuredCells[0].cell: there is no cell 7', '1 to 6'],
+    [
+      { modes: 4, measuredCells: [{ cell: 7, couplingRatio: [0.5, 0.5] }] },
+      'measuredCells[0].cell: there is no cell 7',
+      '1 to 6',
+    ],
     [
       { modes: 4, measuredCells: [1, 1].map((cell) => ({ cell, couplingRatio: [0.5, 0.5] })) },
       'measuredCells[1].cell: cell 1 is listed twice',
@@ -82,13 +91,25 @@ describe('faults name the field and the way to mend it', () => {
       'Did you mean couplingRatio?',
     ],
     [{ modes: 4, lossDb: { splitter: -1 } }, 'lossDb.splitter: -1', '0 or more'],
-    [{ modes: 4, lossDb: { output: [1, 2, 3] } }, 'lossDb.output: there are 3 entries for 4 ports', '4 ports'],
+    [
+      { modes: 4, lossDb: { output: [1, 2, 3] } },
+      'lossDb.output: there are 3 entries for 4 ports',
+      '4 ports',
+    ],
     [{ modes: 4, lossDb: { input: [1, 'x', 0, 0] } }, 'lossDb.input[1]: "x"', 'number'],
     [{ modes: 4, portNames: ['a'] }, 'portNames: there are 1 entries for 4 ports', '4 ports'],
     [{ modes: 4, shifterLimits: { rangeRad: [3, 1] } }, 'shifterLimits.rangeRad', 'smaller end first'],
-    [{ modes: 4, shifterOverrides: [{ shifter: 17 }] }, 'shifterOverrides[0].shifter: there is no shifter 17', '1 to 16'],
+    [
+      { modes: 4, shifterOverrides: [{ shifter: 17 }] },
+      'shifterOverrides[0].shifter: there is no shifter 17',
+      '1 to 16',
+    ],
     [{ modes: 4, portShifters: false, shifterOverrides: [{ shifter: 13 }] }, 'no shifter 13', '1 to 12'],
-    [{ modes: 4, shifterOverrides: [{ shifter: 2 }, { shifter: 2 }] }, 'shifter 2 is listed twice', 'one entry'],
+    [
+      { modes: 4, shifterOverrides: [{ shifter: 2 }, { shifter: 2 }] },
+      'shifter 2 is listed twice',
+      'one entry',
+    ],
     [
       { modes: 4, shifterOverrides: [1, 2].map((shifter) => ({ shifter, name: 'W1' })) },
       'two shifters are called W1',

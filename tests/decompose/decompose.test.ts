@@ -32,12 +32,15 @@ describe.each(LAYOUTS)('%s: reconstruction', (layout) => {
       const mesh = createMesh(layout, modes, mirror);
       for (const [name, target] of unitaryMatrices(modes)) {
         // LAPACK's habit: 30 N eps; about 2 were the most seen.
-        expect(lapackResidual(target, reconstruct(decompose(target, mesh))), `${name}, ${mirror}`).toBeLessThan(30);
+        expect(
+          lapackResidual(target, reconstruct(decompose(target, mesh))),
+          `${name}, ${mirror}`,
+        ).toBeLessThan(30);
       }
     }
   });
 
-  it.each([64, 128, 256])('stays below LAPACK\'s bound, N = %i', (modes) => {
+  it.each([64, 128, 256])("stays below LAPACK's bound, N = %i", (modes) => {
     for (const [name, target] of unitaryMatrices(modes)) {
       const mesh = createMesh(layout, modes);
       expect(lapackResidual(target, reconstruct(decompose(target, mesh))), name).toBeLessThan(30);
@@ -57,48 +60,51 @@ describe.each(LAYOUTS)('%s: reconstruction', (layout) => {
   });
 });
 
-describe.each(LAYOUTS)('%s: degenerate targets give bar and cross states, not angles of rounding noise', (layout) => {
-  const exact = (decomposition: Decomposition): boolean =>
-    decomposition.cosine.every(
-      (c, k) =>
-        (c === 1 && decomposition.sineRe[k] === 0) || (c === 0 && Math.abs(decomposition.sineRe[k]!) === 1),
-    ) && decomposition.sineIm.every((s) => s === 0);
+describe.each(LAYOUTS)(
+  '%s: degenerate targets give bar and cross states, not angles of rounding noise',
+  (layout) => {
+    const exact = (decomposition: Decomposition): boolean =>
+      decomposition.cosine.every(
+        (c, k) =>
+          (c === 1 && decomposition.sineRe[k] === 0) || (c === 0 && Math.abs(decomposition.sineRe[k]!) === 1),
+      ) && decomposition.sineIm.every((s) => s === 0);
 
-  it('sets every cell to bar for the identity', () => {
-    for (const mirror of MIRRORS) {
-      const { cosine } = decompose(withNoise(identityMatrix(7)), createMesh(layout, 7, mirror));
-      expect(Array.from(cosine)).toEqual(Array.from(cosine, () => 1));
-    }
-  });
+    it('sets every cell to bar for the identity', () => {
+      for (const mirror of MIRRORS) {
+        const { cosine } = decompose(withNoise(identityMatrix(7)), createMesh(layout, 7, mirror));
+        expect(Array.from(cosine)).toEqual(Array.from(cosine, () => 1));
+      }
+    });
 
-  it('sets every cell to cross for the reversal of the ports', () => {
-    for (const mirror of MIRRORS) {
-      const { cosine } = decompose(withNoise(reversal(7)), createMesh(layout, 7, mirror));
-      expect(Array.from(cosine)).toEqual(Array.from(cosine, () => 0));
-    }
-  });
+    it('sets every cell to cross for the reversal of the ports', () => {
+      for (const mirror of MIRRORS) {
+        const { cosine } = decompose(withNoise(reversal(7)), createMesh(layout, 7, mirror));
+        expect(Array.from(cosine)).toEqual(Array.from(cosine, () => 0));
+      }
+    });
 
-  it('finds bar and cross states alone for every permutation of five ports', () => {
-    for (const places of allPermutations(5)) {
-      expect(exact(decompose(withNoise(permutation(places)), createMesh(layout, 5)))).toBe(true);
-    }
-  });
+    it('finds bar and cross states alone for every permutation of five ports', () => {
+      for (const places of allPermutations(5)) {
+        expect(exact(decompose(withNoise(permutation(places)), createMesh(layout, 5)))).toBe(true);
+      }
+    });
 
-  it('keeps the blocks of a block-diagonal target apart', () => {
-    const mesh = createMesh(layout, 5);
-    const target = withNoise(blockDiagonal(haarUnitary(2, 3), haarUnitary(3, 4)));
-    const { cosine } = decompose(target, mesh);
-    // No light passes from ports 1, 2 to ports 3, 4, 5: 1 + 3 cells are at work, the others at bar or in pairs of crosses.
-    const working = Array.from(cosine).filter((c) => c !== 0 && c !== 1);
-    expect(working.length).toBeLessThanOrEqual(4);
-  });
+    it('keeps the blocks of a block-diagonal target apart', () => {
+      const mesh = createMesh(layout, 5);
+      const target = withNoise(blockDiagonal(haarUnitary(2, 3), haarUnitary(3, 4)));
+      const { cosine } = decompose(target, mesh);
+      // No light passes from ports 1, 2 to ports 3, 4, 5: 1 + 3 cells are at work, the others at bar or in pairs of crosses.
+      const working = Array.from(cosine).filter((c) => c !== 0 && c !== 1);
+      expect(working.length).toBeLessThanOrEqual(4);
+    });
 
-  it('has real factors for a real target', () => {
-    const { sineIm, diagonal } = decompose(unitaryMatrices(6)[5]![1], createMesh(layout, 6));
-    expect(Math.max(...sineIm.map(Math.abs))).toBe(0);
-    for (const phase of diagonal) expect(Math.abs(Math.sin(phase))).toBeLessThan(1e-15);
-  });
-});
+    it('has real factors for a real target', () => {
+      const { sineIm, diagonal } = decompose(unitaryMatrices(6)[5]![1], createMesh(layout, 6));
+      expect(Math.max(...sineIm.map(Math.abs))).toBe(0);
+      for (const phase of diagonal) expect(Math.abs(Math.sin(phase))).toBeLessThan(1e-15);
+    });
+  },
+);
 
 // check-values section 5; derived there and checked against an independent program to 1e-9.
 describe('worked examples: bar powers', () => {

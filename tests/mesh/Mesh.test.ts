@@ -4,7 +4,10 @@ import { cellIndexAt, createMesh, LAYOUTS, MIRRORS } from '../../src/mesh/Mesh.j
 
 /** Cells as [column, upper port], both from 1, in the order of their numbers. */
 function places(mesh: Mesh): [number, number][] {
-  return Array.from({ length: mesh.cells }, (_, k) => [mesh.columnIndex[k]! + 1, mesh.upperPortIndex[k]! + 1]);
+  return Array.from({ length: mesh.cells }, (_, k) => [
+    mesh.columnIndex[k]! + 1,
+    mesh.upperPortIndex[k]! + 1,
+  ]);
 }
 
 describe('counts', () => {
@@ -27,12 +30,30 @@ describe('counts', () => {
 
 describe('places', () => {
   it('starts odd columns of a rectangle on port 1, even ones on port 2', () => {
-    expect(places(createMesh('rectangular', 4))).toEqual([[1, 1], [1, 3], [2, 2], [3, 1], [3, 3], [4, 2]]);
-    expect(places(createMesh('rectangular', 3))).toEqual([[1, 1], [2, 2], [3, 1]]);
+    expect(places(createMesh('rectangular', 4))).toEqual([
+      [1, 1],
+      [1, 3],
+      [2, 2],
+      [3, 1],
+      [3, 3],
+      [4, 2],
+    ]);
+    expect(places(createMesh('rectangular', 3))).toEqual([
+      [1, 1],
+      [2, 2],
+      [3, 1],
+    ]);
   });
 
   it('puts the cells on ports (m, m+1) of a triangle in columns m, m+2, ..., 2N-2-m', () => {
-    expect(places(createMesh('triangular', 4))).toEqual([[1, 1], [2, 2], [3, 1], [3, 3], [4, 2], [5, 1]]);
+    expect(places(createMesh('triangular', 4))).toEqual([
+      [1, 1],
+      [2, 2],
+      [3, 1],
+      [3, 3],
+      [4, 2],
+      [5, 1],
+    ]);
     for (const modes of [2, 3, 5, 9]) {
       const expected: [number, number][] = [];
       for (let m = 1; m < modes; m++) for (let c = m; c <= 2 * modes - 2 - m; c += 2) expected.push([c, m]);

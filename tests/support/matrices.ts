@@ -116,7 +116,8 @@ export function unitaryMatrices(modes: number): [name: string, matrix: ComplexMa
     ['nearly the identity', nearIdentity(modes)],
     ['reversal with noise', withNoise(reversal(modes))],
   ];
-  if (modes >= 2) matrices.push(['blocks', blockDiagonal(haarUnitary(half, 5), haarUnitary(modes - half, 6))]);
+  if (modes >= 2)
+    matrices.push(['blocks', blockDiagonal(haarUnitary(half, 5), haarUnitary(modes - half, 6))]);
   return matrices;
 }
 
