@@ -1,7 +1,7 @@
 import tseslint from 'typescript-eslint';
 
 export default tseslint.config(
-  { ignores: ['dist/**', 'node_modules/**', 'out/**', 'coverage/**', '.eslint.config.js', '.vitest.config.ts', '.vitest.debian.config.ts'] },
+  { ignores: ['src/kernel/assembly/**', 'src/kernel/generated/**', 'dist/**', 'node_modules/**', 'out/**', 'coverage/**', '.eslint.config.js', '.vitest.config.ts', '.vitest.debian.config.ts'] },
   ...tseslint.configs.recommendedTypeChecked,
   {
     languageOptions: { parserOptions: { project: './tsconfig.json', tsconfigRootDir: import.meta.dirname } },

@@ -1,5 +1,5 @@
 import { describe, expect, it } from 'vitest';
-import { applyExternalInPlace, writeArms, writeSplitArms } from '../../src/chip/cellTransfer.js';
+import { writeArms, writeSplitArms } from '../../src/chip/cellTransfer.js';
 import type { Chip, PhaseRange } from '../../src/chip/Chip.js';
 import { idealChip } from '../../src/chip/idealChip.js';
 import type { Settings } from '../../src/chip/Settings.js';

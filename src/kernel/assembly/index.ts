@@ -1,0 +1,1 @@
+export { fillNormals } from './normals';

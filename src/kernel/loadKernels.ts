@@ -1,0 +1,62 @@
+import { KERNEL_MODULE } from './generated/kernelModule.js';
+
+const PAGE = 65536;
+/** Below this stand the constants of the compiled kernels. */
+const FIRST_FREE = 65536;
+
+/** The kernels by name. They take addresses in bytes, whole numbers and doubles; they never check anything. */
+export interface Kernels {
+  fillNormals(out: number, count: number, state: number): void;
+}
+
+/**
+ * An instance of the compiled kernels with a memory of its own, in which arrays are laid out once. Not shared between workers.
+ *
+ * The kernel contract: addresses are bytes, multiples of 16; arrays do not overlap; sizes and values have been checked before.
+ */
+export interface KernelInstance {
+  readonly kernels: Kernels;
+  /** Reserves an array of doubles. Views from before a growth of the memory are dead: reserve everything first, then take views. */
+  reserve(doubles: number): number;
+  /** Reserves so many bytes. */
+  reserveBytes(bytes: number): number;
+  /** The doubles at an address. */
+  doubles(address: number, length: number): Float64Array;
+  /** The 32-bit whole numbers at an address. */
+  integers(address: number, length: number): Int32Array;
+  /** The bytes at an address. */
+  bytes(address: number, length: number): Uint8Array;
+}
+
+let compiled: WebAssembly.Module | undefined;
+
+/** Makes an instance; the module is compiled once. Needs WebAssembly with 128-bit SIMD. */
+export function loadKernels(): KernelInstance {
+  compiled ??= new WebAssembly.Module(decodeBase64(KERNEL_MODULE));
+  const memory = new WebAssembly.Memory({ initial: 4 });
+  const abort = (): never => {
+    throw new Error('a kernel has stopped');
+  };
+  const instance = new WebAssembly.Instance(compiled, { env: { memory, abort } });
+  let next = FIRST_FREE;
+  const reserveBytes = (bytes: number): number => {
+    const address = next;
+    // A gap of a cache line keeps arrays of a power of two from falling on the same lines.
+    next += Math.ceil(bytes / 64) * 64 + 64;
+    const missing = next - memory.buffer.byteLength;
+    if (missing > 0) memory.grow(Math.ceil(missing / PAGE));
+    return address;
+  };
+  return {
+    kernels: instance.exports as unknown as Kernels,
+    reserve: (doubles) => reserveBytes(8 * doubles),
+    reserveBytes,
+    doubles: (address, length) => new Float64Array(memory.buffer, address, length),
+    integers: (address, length) => new Int32Array(memory.buffer, address, length),
+    bytes: (address, length) => new Uint8Array(memory.buffer, address, length),
+  };
+}
+
+function decodeBase64(text: string): Uint8Array {
+  return Uint8Array.from(atob(text), (character) => character.charCodeAt(0));
+}
