@@ -32,6 +32,49 @@ export interface ChipLoss {
   readonly output: Float64Array;
 }
 
+/** Distributions of random errors; both are given by their standard deviation. */
+export const ERROR_DISTRIBUTIONS = ['normal', 'uniform'] as const;
+export type ErrorDistribution = (typeof ERROR_DISTRIBUTIONS)[number];
+
+/**
+ * How chips of a process differ from what is nominal or measured: the error sources of yield and tolerance. All 0 is a process without errors.
+ */
+export interface ProcessErrors {
+  /** Standard deviation of the coupling ratio of every splitter, one independent of the other. */
+  readonly sigma: number;
+  /** The same for the splitter's angle a (coupling ratio sin^2 a), in radians. */
+  readonly sigmaAngle: number;
+  /** Shift of all coupling ratios. */
+  readonly bias: number;
+  /** Standard deviation of a shift that all splitters of a die share. */
+  readonly biasSigma: number;
+  /** Correlation of the local errors (sigma, sigmaAngle) of the two splitters of a cell, from -1 to 1. */
+  readonly pairCorrelation: number;
+  /** Distance in cells over which the local errors' correlation falls to 1/e; 0 for none. */
+  readonly correlationLength: number;
+  /** Standard deviation of every phase that is set, in radians. */
+  readonly phaseSigma: number;
+  /** Resolution of the phases: 2^bits steps over a shifter's range (a whole turn where it has none); 0 for continuous phases. */
+  readonly bits: number;
+  /** Standard deviation of each splitter's loss in dB; losses stay at or above 0. */
+  readonly lossSigmaDb: number;
+  readonly distribution: ErrorDistribution;
+}
+
+/** A process without errors. */
+export const NO_ERRORS: ProcessErrors = {
+  sigma: 0,
+  sigmaAngle: 0,
+  bias: 0,
+  biasSigma: 0,
+  pairCorrelation: 0,
+  correlationLength: 0,
+  phaseSigma: 0,
+  bits: 0,
+  lossSigmaDb: 0,
+  distribution: 'normal',
+};
+
 /** Phases in radians that a shifter can be set to, ends included. */
 export type PhaseRange = readonly [low: number, high: number];
 
@@ -46,6 +89,8 @@ export interface Chip {
   /** Power that crosses, two per cell in cell order: at 2k the splitter that the light meets first, at 2k+1 the second. */
   readonly couplingRatios: Float64Array;
   readonly loss: ChipLoss;
+  /** Amplitude factor of the two splitters of each cell together, where splitters differ in loss; null: loss.splitter squared everywhere. */
+  readonly cellLoss: Float64Array | null;
   /** Range of every shifter without one of its own; null when the chip states none. */
   readonly shifterRange: PhaseRange | null;
   /** Own ranges by index (from 0) of the shifter. */
@@ -54,6 +99,8 @@ export interface Chip {
   readonly shifterNames: ReadonlyMap<number, string>;
   /** Names of the ports from the top, or null. */
   readonly portNames: readonly string[] | null;
+  /** How chips of this kind differ from each other. */
+  readonly process: ProcessErrors;
 }
 
 /** True when the external phase stands behind the splitters; the free port phases are then at the mesh's inputs. */

@@ -1,6 +1,6 @@
 import { z } from 'zod';
 import { LAYOUTS, MIRRORS } from '../mesh/Mesh.js';
-import { EXTERNAL_GUIDES, INTERNAL_ARMS, SPLITTER_FORMS } from './Chip.js';
+import { ERROR_DISTRIBUTIONS, EXTERNAL_GUIDES, INTERNAL_ARMS, SPLITTER_FORMS } from './Chip.js';
 
 /** The newest chip-file format that this version reads and the one that it writes. */
 export const CHIP_FORMAT = 1;
@@ -18,6 +18,7 @@ const decibels = z.number().min(0).max(1000).describe('Loss in dB, 0 or more.');
 const decibelsPerPort = z
   .union([decibels, z.array(decibels)])
   .describe('Loss in dB: one number for all ports, or one for each port from the top.');
+const spread = z.number().min(0).max(10);
 const angle = z.number().min(-1e4).max(1e4);
 const range = z
   .tuple([angle, angle])
@@ -70,7 +71,14 @@ export const chipFileSchema = z
     couplingRatio: ratio.exactOptional().describe('Nominal ratio of every splitter; default 0.5.'),
     measuredCells: z
       .array(
-        z.strictObject({ cell: z.int().min(1).describe('Number of the cell.'), couplingRatio: ratioPair }),
+        z.strictObject({
+          cell: z.int().min(1).describe('Number of the cell.'),
+          couplingRatio: ratioPair,
+          lossDb: z
+            .tuple([decibels, decibels])
+            .exactOptional()
+            .describe('Losses of its two splitters in dB, instead of lossDb.splitter.'),
+        }),
       )
       .exactOptional()
       .describe('Measured ratios; cells that are not listed have the nominal one.'),
@@ -99,6 +107,45 @@ export const chipFileSchema = z
       .exactOptional()
       .describe('Shifters with a name or limits of their own.'),
     portNames: z.array(name).exactOptional().describe('Names of the ports from the top.'),
+    process: z
+      .strictObject({
+        sigma: spread.exactOptional().describe('Standard deviation of the coupling ratio of every splitter.'),
+        sigmaAngle: spread
+          .exactOptional()
+          .describe('The same for the angle a of a ratio sin^2 a, in radians.'),
+        bias: z.number().min(-1).max(1).exactOptional().describe('Shift of all coupling ratios.'),
+        biasSigma: spread.exactOptional().describe('Standard deviation of a shift that a die has in common.'),
+        pairCorrelation: z
+          .number()
+          .min(-1)
+          .max(1)
+          .exactOptional()
+          .describe('Correlation of the local errors of the two splitters of a cell.'),
+        correlationLength: z
+          .number()
+          .min(0)
+          .max(1e6)
+          .exactOptional()
+          .describe('Cells over which the correlation of local errors falls to 1/e; 0 for none.'),
+        phaseSigma: spread.exactOptional().describe('Standard deviation of every phase, in radians.'),
+        bits: z
+          .int()
+          .min(0)
+          .max(32)
+          .exactOptional()
+          .describe('Resolution of the phases over their range; 0 for continuous.'),
+        lossSigmaDb: z
+          .number()
+          .min(0)
+          .max(100)
+          .exactOptional()
+          .describe('Standard deviation of each splitter loss in dB.'),
+        distribution: z.enum(ERROR_DISTRIBUTIONS).exactOptional().describe('Of all errors; default normal.'),
+      })
+      .exactOptional()
+      .describe(
+        'How chips of this process differ from what is nominal or measured; for yield and tolerance.',
+      ),
   })
   .describe('A programmable photonic chip: a mesh of Mach-Zehnder interferometers.');
 

@@ -1,6 +1,7 @@
 import type { Layout, Mirror } from '../mesh/Mesh.js';
 import { createMesh } from '../mesh/Mesh.js';
 import type { CellStyle, Chip } from './Chip.js';
+import { NO_ERRORS } from './Chip.js';
 
 /** External phase on the upper input, internal phase on the upper arm, symmetric splitters. */
 export const REFERENCE_STYLE: CellStyle = {
@@ -30,9 +31,11 @@ export function idealChip(modes: number, options: IdealChipOptions = {}): Chip {
     portShifters,
     couplingRatios: new Float64Array(2 * mesh.cells).fill(0.5),
     loss: { splitter: 1, shifter: 1, column: 1, input: noLoss(), output: noLoss() },
+    cellLoss: null,
     shifterRange: null,
     shifterRanges: new Map(),
     shifterNames: new Map(),
     portNames: null,
+    process: NO_ERRORS,
   };
 }

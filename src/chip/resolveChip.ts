@@ -1,6 +1,7 @@
 import { createMesh } from '../mesh/Mesh.js';
 import { amplitudeFromLossDb } from '../units/decibel.js';
 import type { CellStyle, Chip, ChipLoss, PhaseRange } from './Chip.js';
+import { NO_ERRORS } from './Chip.js';
 import { chipFault } from './chipFault.js';
 import type { ChipFile } from './chipSchema.js';
 import { REFERENCE_STYLE } from './idealChip.js';
@@ -41,10 +42,12 @@ export function resolveChip(file: ChipFile): Chip {
     portShifters: file.portShifters ?? true,
     couplingRatios,
     loss: resolveLoss(file, modes),
+    cellLoss: resolveCellLoss(file, mesh.cells),
     shifterRange: range,
     shifterRanges: new Map(),
     shifterNames: new Map(),
     portNames: file.portNames ?? null,
+    process: { ...NO_ERRORS, ...file.process },
   };
   return { ...chip, ...resolveOverrides(file, shifterCount(chip)) };
 }
@@ -62,6 +65,15 @@ function resolveLoss({ lossDb = {} }: ChipFile, modes: number): ChipLoss {
     input: perPort(lossDb.input, 'lossDb.input'),
     output: perPort(lossDb.output, 'lossDb.output'),
   };
+}
+
+function resolveCellLoss({ lossDb, measuredCells = [] }: ChipFile, cells: number): Float64Array | null {
+  if (measuredCells.every((cell) => cell.lossDb === undefined)) return null;
+  const cellLoss = new Float64Array(cells).fill(amplitudeFromLossDb(2 * (lossDb?.splitter ?? 0)));
+  for (const { cell, lossDb: own } of measuredCells) {
+    if (own) cellLoss[cell - 1] = amplitudeFromLossDb(own[0] + own[1]);
+  }
+  return cellLoss;
 }
 
 function resolveOverrides(

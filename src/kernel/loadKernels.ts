@@ -6,8 +6,102 @@ const FIRST_FREE = 65536;
 
 /** The kernels by name. They take addresses in bytes, whole numbers and doubles; they never check anything. */
 export interface Kernels {
+  seedTrial(
+    state: number,
+    lane: number,
+    seedLow: number,
+    seedHigh: number,
+    stream: number,
+    trial: number,
+  ): void;
   fillNormals(out: number, count: number, state: number): void;
+  fillUniforms(out: number, count: number, state: number): void;
+  correlateGrid(grid: number, columns: number, rows: number, columnStep: number, rowStep: number): void;
+  pickPlaces(out: number, stride: number, grid: number, places: number, count: number): void;
+  correlatePairs(numbers: number, pairs: number, correlation: number): void;
+  drawSplitters(
+    out: number,
+    count: number,
+    nominal: number,
+    numbers: number,
+    sigma: number,
+    shift: number,
+    clamped: number,
+  ): void;
+  turnSplitters(splitters: number, count: number, numbers: number, sigma: number): void;
+  turnFactors(factors: number, stride: number, count: number, numbers: number, sigma: number): void;
+  solveCells(
+    cells: number,
+    modes: number,
+    upperPort: number,
+    splitters: number,
+    wanted: number,
+    diagonal: number,
+    diagonalAt: number,
+    carried: number,
+    arms: number,
+    external: number,
+    internalArm: number,
+    onLower: number,
+    againstLight: number,
+    realSplitters: number,
+    shifterLoss: number,
+  ): void;
+  composeCells(
+    cells: number,
+    upperPort: number,
+    splitters: number,
+    arms: number,
+    external: number,
+    gain: number,
+    factors: number,
+    coefficients: number,
+    place: number,
+    realSplitters: number,
+  ): void;
+  propagatePanel(
+    modes: number,
+    columns: number,
+    firstInput: number,
+    lane: number,
+    ranges: number,
+    upperPort: number,
+    coefficients: number,
+    panel: number,
+  ): void;
+  accumulatePanel(modes: number, panel: number, target: number, sums: number): void;
+  judgeTrial(
+    modes: number,
+    columns: number,
+    lane: number,
+    ranges: number,
+    upperPort: number,
+    coefficients: number,
+    panel: number,
+    target: number,
+    sums: number,
+    factors: number,
+    output: number,
+    result: number,
+  ): void;
+  nullRectangular: NullingKernel;
+  nullTriangular: NullingKernel;
 }
+
+/**
+ * Nulls an N x N matrix; its memory layout is that of assembly/nullingMatrix.ts: the address of row 0, behind three rows that are scribbled
+ * on; bytes from row to row. Squares up to `negligibleSquare` count as zero. `sweep` has room for N - 1 rotations of 32 bytes. The results are
+ * c, re s and im s of the cells, N(N-1)/2 doubles each; `diagonalEntries` holds re and im of the N entries that are left.
+ */
+type NullingKernel = (
+  modes: number,
+  matrix: number,
+  rowBytes: number,
+  negligibleSquare: number,
+  sweep: number,
+  results: number,
+  diagonalEntries: number,
+) => void;
 
 /**
  * An instance of the compiled kernels with a memory of its own, in which arrays are laid out once. Not shared between workers.

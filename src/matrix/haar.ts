@@ -26,7 +26,12 @@ export function haarUnitary(modes: number, seed: number): ComplexMatrix {
   if (!(Number.isInteger(modes) && modes >= 1)) {
     throw new RangeError(`modes must be a whole number, at least 1, got ${modes}`);
   }
-  const matrix = complexNormals(modes, randomStream(seed, STREAMS.haarUnitary, modes));
+  return haarFromStream(modes, randomStream(seed, STREAMS.haarUnitary, modes));
+}
+
+/** The same from a stream of random numbers: another matrix with each call. */
+export function haarFromStream(modes: number, stream: RandomStream): ComplexMatrix {
+  const matrix = complexNormals(modes, stream);
   const { re, im } = matrix;
   for (let row = 0; row < modes; row++) {
     const at = row * modes;

@@ -6,4 +6,10 @@
 export const STREAMS = {
   haarUnitary: 1,
   spectralNormStart: 2,
+  trialTarget: 3,
+  splitterRatios: 4,
+  splitterAngles: 5,
+  dieBias: 6,
+  phaseErrors: 7,
+  splitterLosses: 8,
 } as const;

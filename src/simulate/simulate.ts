@@ -12,7 +12,7 @@ import { zeroMatrix } from '../matrix/ComplexMatrix.js';
  * @throws RangeError when the settings are not of the chip's shape
  */
 export function simulate(chip: Chip, settings: Settings): ComplexMatrix {
-  const { mesh, style, couplingRatios, loss } = chip;
+  const { mesh, style, couplingRatios, loss, cellLoss } = chip;
   const { modes, cells, columns, upperPortIndex } = mesh;
   requireShape(chip, settings);
   const result = zeroMatrix(modes, modes);
@@ -43,7 +43,8 @@ export function simulate(chip: Chip, settings: Settings): ComplexMatrix {
       loss.shifter * Math.cos(external),
       loss.shifter * Math.sin(external),
     );
-    for (let k = 0; k < 8; k++) transfer[k]! *= twoSplitters;
+    const splitters = cellLoss ? cellLoss[cell]! : twoSplitters;
+    for (let k = 0; k < 8; k++) transfer[k]! *= splitters;
     const upper = upperPortIndex[cell]!;
     const first = Math.min(firstInput[upper]!, firstInput[upper + 1]!);
     const last = Math.max(lastInput[upper]!, lastInput[upper + 1]!);

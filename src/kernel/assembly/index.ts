@@ -1,1 +1,6 @@
-export { fillNormals } from './normals';
+export { correlateGrid, correlatePairs, drawSplitters, pickPlaces, turnFactors, turnSplitters } from './errors';
+export { fillNormals, fillUniforms, seedTrial } from './normals';
+export { accumulatePanel, composeCells, judgeTrial, propagatePanel } from './propagate';
+export { solveCells } from './solveCells';
+export { nullRectangular } from './nullingRectangular';
+export { nullTriangular } from './nullingTriangular';

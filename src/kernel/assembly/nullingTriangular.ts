@@ -1,0 +1,35 @@
+// Reck's nulling; the readable twin is src/decompose/nullTriangular.ts.
+import { columnOffset, findRotation, putAtCell, readDiagonal, ROTATION, rotateColumnsRight } from './nullingMatrix';
+
+/** Cells before a column: in the columns k below N - 1 there are (k >> 1) + 1, in the others (2N-4-k >> 1) + 1, as from the end. */
+@inline function firstCellOf(modes: i32, column: i32): i32 {
+  if (column < modes) return ((column + 1) >> 1) * ((column >> 1) + 1);
+  const fromEnd = 2 * modes - 3 - column;
+  return ((modes * (modes - 1)) >> 1) - ((fromEnd + 1) >> 1) * ((fromEnd >> 1) + 1);
+}
+
+/**
+ * Nulls an N x N unitary for the triangular mesh that is not mirrored: row N from left to right by rotations of neighbouring columns, then row
+ * N - 1, and so on. Parameters as for nullRectangular.
+ */
+export function nullTriangular(
+  modes: i32, matrix: usize, rowBytes: usize, negligibleSquare: f64, chain: usize, results: usize, diagonalEntries: usize,
+): void {
+  const cells = (modes * (modes - 1)) >> 1;
+  for (let row = modes - 1; row > 0; row--) {
+    let lowest = matrix + usize(row) * rowBytes;
+    let rotation = chain;
+    for (let port = 0; port < row; port++) {
+      findRotation(rotation, lowest + columnOffset(port), lowest + columnOffset(port + 1), negligibleSquare);
+      rotateColumnsRight(lowest, rowBytes, port, rotation, 1);
+      const column = port + 2 * (modes - 1 - row);
+      putAtCell(results, cells, firstCellOf(modes, column) + (port >> 1), rotation);
+      rotation += ROTATION;
+    }
+    for (let above = row - 4; above >= 0; above -= 4) {
+      lowest -= 4 * rowBytes;
+      rotateColumnsRight(lowest, rowBytes, 0, chain, row);
+    }
+  }
+  readDiagonal(modes, matrix, rowBytes, diagonalEntries);
+}

@@ -1,0 +1,120 @@
+import type { Chip } from '../chip/Chip.js';
+import type { KernelInstance } from '../kernel/loadKernels.js';
+import type { ComplexMatrix } from '../matrix/ComplexMatrix.js';
+
+/** Input ports that the kernels propagate at a time. */
+const PANEL = 8;
+
+/** Addresses of the arrays of two trials side by side; what stands in them is said in src/kernel/assembly. */
+export interface TrialMemory {
+  readonly upperPort: number;
+  readonly places: number;
+  readonly nominal: number;
+  readonly state: number;
+  readonly numbers: number;
+  readonly grid: number;
+  readonly shift: number;
+  readonly clamped: number;
+  readonly splitters: number;
+  readonly wanted: number;
+  readonly diagonal: number;
+  readonly diagonalAt: number;
+  readonly carried: number;
+  readonly arms: number;
+  readonly external: number;
+  readonly gain: number;
+  readonly factors: number;
+  readonly output: number;
+  readonly coefficients: number;
+  readonly ranges: number;
+  readonly panel: number;
+  readonly targets: readonly [number, number];
+  readonly sums: number;
+  readonly result: number;
+}
+
+/** Reserves the arrays and fills in those that never change: places of the cells and what light can reach. */
+export function reserveTrialMemory(instance: KernelInstance, chip: Chip, correlated: boolean): TrialMemory {
+  const { modes, cells, columns, upperPortIndex, columnIndex } = chip.mesh;
+  const panels = Math.ceil(modes / PANEL);
+  const { reserve, reserveBytes } = instance;
+  const targetSize = 2 * PANEL * modes * panels;
+  // Two lanes a number. Normals come in pairs, so that one more than asked for may be written.
+  const memory: TrialMemory = {
+    upperPort: reserveBytes(4 * cells),
+    places: reserveBytes(4 * cells),
+    nominal: reserve(2 * cells),
+    state: reserve(4),
+    numbers: reserve(2 * (2 * cells + modes + 2)),
+    grid: reserve(correlated ? 2 * (columns * modes + 2) : 0),
+    shift: reserve(2),
+    clamped: reserve(2),
+    splitters: reserve(8 * cells),
+    wanted: reserve(6 * cells),
+    diagonal: reserve(4 * modes),
+    diagonalAt: reserveBytes(4 * modes),
+    carried: reserve(4 * modes),
+    arms: reserve(8 * cells),
+    external: reserve(4 * cells),
+    gain: reserve(2 * cells),
+    factors: reserve(4 * modes),
+    output: reserve(4 * modes),
+    coefficients: reserve(10 * cells),
+    ranges: reserveBytes(8 * columns * panels),
+    panel: reserve(2 * PANEL * modes),
+    targets: [reserve(targetSize), reserve(targetSize)],
+    sums: reserve(3 * modes),
+    result: reserve(8),
+  };
+  instance.integers(memory.upperPort, cells).set(upperPortIndex);
+  instance
+    .integers(memory.places, cells)
+    .set(upperPortIndex.map((port, cell) => columnIndex[cell]! * modes + port));
+  instance.doubles(memory.nominal, 2 * cells).set(chip.couplingRatios);
+  instance.integers(memory.ranges, 2 * columns * panels).set(reachedCells(chip));
+  return memory;
+}
+
+/**
+ * For each panel of inputs and each column the first cell that their light can have reached and the one behind the last:
+ * starting from a few ports, light spreads by one port a column.
+ */
+function reachedCells({ mesh }: Chip): Int32Array {
+  const { modes, columns, upperPortIndex, firstCellOfColumn } = mesh;
+  const ranges: number[] = [];
+  for (let input = 0; input < modes; input += PANEL) {
+    let top = input;
+    let bottom = Math.min(modes, input + PANEL) - 1;
+    for (let column = 0; column < columns; column++) {
+      const end = firstCellOfColumn[column + 1]!;
+      let first = firstCellOfColumn[column]!;
+      while (first < end && upperPortIndex[first]! + 1 < top) first++;
+      let last = first;
+      while (last < end && upperPortIndex[last]! <= bottom) last++;
+      ranges.push(first, last);
+      if (last > first) {
+        top = Math.min(top, upperPortIndex[first]!);
+        bottom = Math.max(bottom, upperPortIndex[last - 1]! + 1);
+      }
+    }
+  }
+  return Int32Array.from(ranges);
+}
+
+/** Writes a target in panels of eight columns, real parts before imaginary ones in each row. */
+export function writeTarget(
+  instance: KernelInstance,
+  address: number,
+  { rows: modes, re, im }: ComplexMatrix,
+): void {
+  const panels = Math.ceil(modes / PANEL);
+  const out = instance.doubles(address, 2 * PANEL * modes * panels);
+  for (let row = 0; row < modes; row++) {
+    for (let column = 0; column < modes; column++) {
+      const panel = Math.floor(column / PANEL);
+      const at = (panel * modes + row) * 2 * PANEL + (column % PANEL);
+      out[at] = re[row * modes + column]!;
+      out[at + PANEL] = im[row * modes + column]!;
+    }
+  }
+}
