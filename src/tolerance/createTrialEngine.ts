@@ -80,6 +80,7 @@ export function createTrialEngine(plan: TrialPlan, instance: KernelInstance = lo
   const fast = figures.every(
     (key) => FAST_FIGURES.has(key) && (key !== 'portPhaseFreeFidelity' || freePorts === 'output'),
   );
+  const shifterAmplitudes = portAmplitudes(chip, atOutput);
   const targets: ComplexMatrix[] = [];
   const factors: Decomposition[] = [];
   /** Arms, external and port factors of phases that were programmed once; errors are put onto copies. */
@@ -214,12 +215,9 @@ export function createTrialEngine(plan: TrialPlan, instance: KernelInstance = lo
       style.realSplitters,
       chip.loss.shifter,
     );
+    if (!chip.portShifters) return;
     const ports = atOutput ? views.input : views.output;
-    const amplitudes = portAmplitudes(chip, atOutput);
-    for (let k = 0; k < ports.length; k++) {
-      const carried = chip.portShifters ? views.carried[k]! : k % 4 < 2 ? 1 : 0;
-      ports[k] = amplitudes[k >> 2]! * carried;
-    }
+    for (let k = 0; k < ports.length; k++) ports[k] = shifterAmplitudes[k >> 2]! * views.carried[k]!;
   }
 
   function addPhaseErrors(first: number): void {
@@ -414,7 +412,7 @@ function takeViews(instance: KernelInstance, memory: TrialMemory, chip: Chip): T
     numbers: doubles(memory.numbers, 2 * (2 * cells + modes + 2)),
     clampedCounts: instance.integers(memory.clamped, 4),
     splitters: doubles(memory.splitters, 8 * cells),
-    wanted: doubles(memory.wanted, 6 * cells),
+    wanted: doubles(memory.wanted, 8 * cells),
     diagonal: doubles(memory.diagonal, 4 * modes),
     diagonalAt: instance.integers(memory.diagonalAt, modes),
     carried: doubles(memory.carried, 4 * modes),
@@ -489,9 +487,11 @@ function readSettings(views: TrialViews, chip: Chip, lane: Lane): Settings {
 function writeFactors(views: TrialViews, lane: Lane, factors: Decomposition, againstLight: boolean): void {
   const { mesh, cosine, sineRe, sineIm, diagonal, diagonalBefore } = factors;
   for (let cell = 0; cell < mesh.cells; cell++) {
-    views.wanted[6 * cell + lane] = cosine[cell]!;
-    views.wanted[6 * cell + 2 + lane] = sineRe[cell]!;
-    views.wanted[6 * cell + 4 + lane] = sineIm[cell]!;
+    const at = 8 * cell + lane;
+    views.wanted[at] = cosine[cell]!;
+    views.wanted[at + 2] = sineRe[cell]!;
+    views.wanted[at + 4] = sineIm[cell]!;
+    views.wanted[at + 6] = Math.hypot(sineRe[cell]!, sineIm[cell]!);
   }
   diagonal.forEach((phase, port) => {
     views.diagonal[4 * port + lane] = Math.cos(phase);

@@ -50,7 +50,7 @@ export function reserveTrialMemory(instance: KernelInstance, chip: Chip, correla
     shift: reserve(2),
     clamped: reserve(2),
     splitters: reserve(8 * cells),
-    wanted: reserve(6 * cells),
+    wanted: reserve(8 * cells),
     diagonal: reserve(4 * modes),
     diagonalAt: reserveBytes(4 * modes),
     carried: reserve(4 * modes),

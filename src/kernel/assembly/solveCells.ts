@@ -33,7 +33,7 @@ const ARM_DIFFERENTIAL = 2;
  * Finds the phases of all cells of two chips, sweeping with the light (againstLight = 0: external phase at the input) or against it.
  *
  * upperPort: 32-bit index of each cell's upper port. splitters: 4 x 16 bytes a cell, cos a, sin a of the first splitter, then of the second. wanted:
- * 3 x 16 bytes a cell: c, Re s, Im s of the factor [[c, -conj(s)], [s, c]]. diagonal: 2 x 16 bytes a port, the decomposition's diagonal. diagonalAt: 32-bit
+ * 4 x 16 bytes a cell: c, Re s, Im s, |s| of the factor [[c, -conj(s)], [s, c]]. diagonal: 2 x 16 bytes a port, the decomposition's diagonal. diagonalAt: 32-bit
  * index, for each port, of the cell at which the sweep takes it up, -1 for the end. carried: 2 x 16 bytes a port; holds the
  * factors of the port phases at the end. arms: 4 x 16 bytes a cell, written: amplitude factors of the upper and the lower arm.
  * external: 2 x 16 bytes a cell, written: factor of the external phase. internalArm: 0 upper, 1 lower, 2 differential. onLower: external phase on the lower
@@ -55,7 +55,7 @@ export function solveCells(
       if (load<i32>(diagonalAt + usize(port) * 4) == cell) takeUpDiagonal(port, diagonal, carried);
     }
     solveCell(
-      splitters + usize(cell) * 64, wanted + usize(cell) * 48, carried + usize(upper) * 32,
+      splitters + usize(cell) * 64, wanted + usize(cell) * 64, carried + usize(upper) * 32,
       arms + usize(cell) * 64, external + usize(cell) * 32,
       internalArm, onLower, againstLight, realSplitters, both(shifterLoss),
     );
@@ -84,7 +84,7 @@ export function solveCells(
   // sin^2(theta/2) : cos^2(theta/2) = |W11|^2 - cos^2(a+b) : |W12|^2 - sin^2(a-b), exchanged for real splitters.
   const leastBar = f64x2.abs(subtract(cc, ss));
   const leastCross = f64x2.abs(subtract(cs, sc));
-  const crossAmplitude = root(square(sr, si));
+  const crossAmplitude = v128.load(wanted, 48);
   const bar = positivePart(multiply(subtract(c, leastBar), add(c, leastBar)));
   const cross = positivePart(multiply(subtract(crossAmplitude, leastCross), add(crossAmplitude, leastCross)));
   const fixed = v128.or(isZero(multiply(cc, ss)), isZero(add(bar, cross)));
