@@ -187,7 +187,7 @@ export function createTrialEngine(plan: TrialPlan, instance: KernelInstance = lo
   /** Puts phases into both lanes: those programmed once, or new ones for these splitters or targets. */
   function setPhases(): void {
     if (programmedOnce) {
-      if (errors.phaseSigma > 0) views.phases.forEach((view, k) => view.set(programmedOnce![k]!));
+      if (errors.phaseSigma > 0) views.phases.forEach((view, k) => view.set(programmedOnce[k]!));
     } else if (solvedByKernel) {
       solveByKernel();
     } else {

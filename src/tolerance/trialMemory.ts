@@ -37,7 +37,8 @@ export interface TrialMemory {
 export function reserveTrialMemory(instance: KernelInstance, chip: Chip, correlated: boolean): TrialMemory {
   const { modes, cells, columns, upperPortIndex, columnIndex } = chip.mesh;
   const panels = Math.ceil(modes / PANEL);
-  const { reserve, reserveBytes } = instance;
+  const reserve = (doubles: number): number => instance.reserve(doubles);
+  const reserveBytes = (bytes: number): number => instance.reserveBytes(bytes);
   const targetSize = 2 * PANEL * modes * panels;
   // Two lanes a number. Normals come in pairs, so that one more than asked for may be written.
   const memory: TrialMemory = {

@@ -1,0 +1,108 @@
+import type { Chip, ProcessErrors } from '../chip/Chip.js';
+import type { Layout } from '../mesh/Mesh.js';
+import type { TrialPlan } from './TrialPlan.js';
+
+/** What theory says of the mean infidelity, and how far it may be off for reasons other than sampling. */
+export interface InfidelityTheory {
+  readonly meanInfidelity: number;
+  /** Size of what the theory leaves out. */
+  readonly uncertainty: number;
+}
+
+/**
+ * Mean 1 - F of chips with small independent splitter errors, or null when the theory does not hold: other sources are on, the errors are correlated, or
+ * chips are retuned for a target that is not Haar-random.
+ *
+ * Without retuning E[1-F] = L (1 - c L), L = (2/N) sum of the variances of all splitter angles, for any target on either layout (conventions section 7); c
+ * is the Haar mean, so that for one given target a part of c L^2 is uncertain. An error e of the ratio k is one of e / (2 sqrt(k (1 - k))) of the angle. With cells retuned,
+ * for splitters of nominally 1/2, the mean square of the matrix error is s^4 (2/3 (N^2 - 1) + 4 (N - 1)/N) (check-values section 2).
+ * @param infidelityWithoutErrors 1 - F of the chip itself
+ */
+export function infidelityTheory(plan: TrialPlan, infidelityWithoutErrors: number): InfidelityTheory | null {
+  const { chip, errors, retune, target } = plan;
+  const others = errors.bias !== 0 || errors.biasSigma > 0 || errors.phaseSigma > 0 || errors.bits > 0;
+  const correlated = errors.pairCorrelation !== 0 || errors.correlationLength > 0;
+  if (others || correlated || errors.lossSigmaDb > 0 || !(errors.sigma > 0 || errors.sigmaAngle > 0))
+    return null;
+  const { modes, layout } = chip.mesh;
+  const leading = leadingInfidelity(chip, errors);
+  if (leading === null || modes < 2) return null;
+  if (retune === 'cell') {
+    const nominal = chip.couplingRatios.every((ratio) => ratio === 0.5);
+    if (target !== 'haar' || !nominal) return null;
+    const variance = leading / (2 * (modes - 1));
+    const corrected = variance ** 2 * ((2 / 3) * (modes ** 2 - 1) + (4 * (modes - 1)) / modes);
+    // The distribution has a heavy tail and the source allows 15 %.
+    return { meanInfidelity: total(infidelityWithoutErrors, corrected), uncertainty: 0.15 * corrected };
+  }
+  const second = nextOrder(layout, modes) * leading ** 2;
+  return {
+    meanInfidelity: total(infidelityWithoutErrors, leading - second),
+    uncertainty:
+      leading ** 3 + (target === 'haar' ? 0.1 : 1) * second + 2 * infidelityWithoutErrors * leading,
+  };
+}
+
+function total(without: number, added: number): number {
+  return 1 - (1 - without) * (1 - added);
+}
+
+/** L = (2/N) times the sum of the variances of all splitter angles; null where a ratio is 0 or 1 and has no small-error theory. */
+function leadingInfidelity(
+  { mesh, couplingRatios }: Chip,
+  { sigma, sigmaAngle }: ProcessErrors,
+): number | null {
+  let sum = 0;
+  for (const ratio of couplingRatios) {
+    const slope = 4 * ratio * (1 - ratio);
+    if (sigma > 0 && !(slope > 0)) return null;
+    sum += sigmaAngle ** 2 + (sigma > 0 ? sigma ** 2 / slope : 0);
+  }
+  return (2 / mesh.modes) * sum;
+}
+
+/** Haar means of c by [N, triangular, rectangular]; check-values section 2, exact superoperator averages; 1/2 for large N. */
+const NEXT_ORDER = [
+  [2, 5 / 6, 5 / 6],
+  [3, 0.65, 0.65],
+  [4, 0.59, 0.58],
+  [8, 0.549, 0.523],
+  [16, 0.54, 0.507],
+  [Infinity, 0.5, 0.5],
+] as const;
+
+/** c for N ports, interpolated in 1/N. */
+function nextOrder(layout: Layout, modes: number): number {
+  const column = layout === 'triangular' ? 1 : 2;
+  const above = NEXT_ORDER.findIndex(([n]) => n >= modes);
+  const [n1, ...low] = NEXT_ORDER[Math.max(0, above - 1)]!;
+  const [n2, ...high] = NEXT_ORDER[above]!;
+  if (n1 === n2 || modes === n2) return high[column - 1]!;
+  const share = (1 / n1 - 1 / modes) / (1 / n1 - 1 / n2);
+  return low[column - 1]! + share * (high[column - 1]! - low[column - 1]!);
+}
+
+/** Relative scatter of 1 - F from chip to chip: about 2.2/N (0.53, 0.28, 0.145 for N = 4, 8, 16; check-values section 2). */
+const CHIP_SCATTER = 2.2;
+
+/**
+ * The closed-form estimate of the largest spread of a source for which the share `yieldWanted` of chips keeps the fidelity: the mean
+ * infidelity of a chip, with its scatter from chip to chip taken as normal, stays below 1 - limit. Null for other sources, retuned
+ * chips or other figures.
+ * @param quantile the normal quantile of the yield wanted
+ */
+export function toleranceTheory(
+  plan: TrialPlan,
+  source: string,
+  fidelityLimit: number,
+  quantile: number,
+): number | null {
+  const { chip, errors, retune } = plan;
+  if (retune !== 'none' || (source !== 'sigma' && source !== 'sigmaAngle') || chip.mesh.modes < 2)
+    return null;
+  const unit = leadingInfidelity(chip, { ...errors, sigma: 0, sigmaAngle: 0, [source]: 1 });
+  const others = infidelityTheory({ ...plan, errors: { ...errors, [source]: 1e-9 } }, 0) === null;
+  if (unit === null || others || !(fidelityLimit < 1)) return null;
+  const factor = 1 + (CHIP_SCATTER / chip.mesh.modes) * quantile;
+  return factor > 0 ? Math.sqrt((1 - fidelityLimit) / (unit * factor)) : null;
+}
