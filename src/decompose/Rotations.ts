@@ -1,4 +1,4 @@
-/** Growing list of the nulling's factors [[c, -conj(s)], [s, c]], in the order of the cells of the mesh. */
+/** The nulling's factors [[c, -conj(s)], [s, c]]; in a result, in the order of the cells of the mesh. */
 export interface Rotations {
   readonly cosine: Float64Array;
   readonly sineRe: Float64Array;
@@ -14,9 +14,10 @@ export function createRotations(count: number): Rotations {
 }
 
 /**
- * Sets rotation `at` so that c * nulled = s * kept, with s = nulled * conj(kept) / (|kept| r) and c = |kept| / r, r^2 =
- * |nulled|^2 + |kept|^2. Entries no larger than `negligible` count as zero, or angles would be computed from
- * rounding noise: nothing to null (or nothing at all) is the exact bar state, nothing to keep the exact cross state.
+ * Sets rotation `at` so that c * nulled = s * kept, with s = nulled * conj(kept) / (|kept| r) and c = |kept|
+ * / r, r^2 = |nulled|^2 + |kept|^2. Entries whose squares are at most `negligibleSquare` count as zero, or
+ * angles would be computed from rounding noise: nothing to null (or nothing at all) is the exact bar state,
+ * nothing to keep the exact cross state.
  */
 export function setNullingRotation(
   rotations: Rotations,
@@ -25,22 +26,21 @@ export function setNullingRotation(
   nulledIm: number,
   keptRe: number,
   keptIm: number,
-  negligible: number,
+  negligibleSquare: number,
 ): void {
-  const nulled = Math.sqrt(nulledRe * nulledRe + nulledIm * nulledIm);
-  const kept = Math.sqrt(keptRe * keptRe + keptIm * keptIm);
-  if (nulled <= negligible) {
+  const nulledSquare = nulledRe * nulledRe + nulledIm * nulledIm;
+  const keptSquare = keptRe * keptRe + keptIm * keptIm;
+  if (nulledSquare <= negligibleSquare) {
     rotations.cosine[at] = 1;
     rotations.sineRe[at] = 0;
     rotations.sineIm[at] = 0;
-  } else if (kept <= negligible) {
+  } else if (keptSquare <= negligibleSquare) {
     rotations.cosine[at] = 0;
     rotations.sineRe[at] = 1;
     rotations.sineIm[at] = 0;
   } else {
-    const length = Math.sqrt(nulled * nulled + kept * kept);
-    const scale = 1 / (kept * length);
-    rotations.cosine[at] = kept / length;
+    const scale = 1 / Math.sqrt(keptSquare * (nulledSquare + keptSquare));
+    rotations.cosine[at] = keptSquare * scale;
     rotations.sineRe[at] = (nulledRe * keptRe + nulledIm * keptIm) * scale;
     rotations.sineIm[at] = (nulledIm * keptRe - nulledRe * keptIm) * scale;
   }

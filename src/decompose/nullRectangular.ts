@@ -4,54 +4,47 @@ import { cellIndexAt } from '../mesh/Mesh.js';
 import type { Rotations } from './Rotations.js';
 import { createRotations, setNullingRotation } from './Rotations.js';
 
-/** Rotations at their cells, and for each cell whether it stands behind the diagonal (1) or before it (0). */
-export interface RectangularNulling {
-  readonly rotations: Rotations;
-  readonly behindDiagonal: Uint8Array;
-}
-
 /**
- * Clements' nulling for the rectangular mesh that is not mirrored: the lower left triangle is nulled diagonal by diagonal from the corner,
- * odd diagonals by rotations of neighbouring columns (cells before the diagonal), even ones by rotations of
- * neighbouring rows (cells behind it). Clements et al., Optica 3, 1460 (2016).
+ * Clements' nulling for the rectangular mesh that is not mirrored: the lower left triangle is nulled diagonal
+ * by diagonal from the corner, odd diagonals by rotations of neighbouring columns (cells before the
+ * diagonal), even ones by rotations of neighbouring rows (cells behind it). Clements et al., Optica 3, 1460
+ * (2016).
  *
- * Afterwards `work` is diagonal up to rounding and U = (row rotations) D (column rotations), in the order of the
- * light from the right. Cost (20/3) N^3 flops.
+ * Afterwards `work` is diagonal up to rounding and U = (row rotations) D (column rotations), in the order of
+ * the light from the right; the rotations W stand at their cells. Cost (20/3) N^3 flops. The readable twin of
+ * the kernel in src/kernel/assembly/nullingRectangular.ts: the same arithmetic in the same order, so the same
+ * result to the last bit.
+ * @param negligibleSquare entries whose squares are at most that count as zero
  */
-export function nullRectangularInPlace(
-  work: ComplexMatrix,
-  mesh: Mesh,
-  negligible: number,
-): RectangularNulling {
+export function nullRectangularInPlace(work: ComplexMatrix, mesh: Mesh, negligibleSquare: number): Rotations {
   const modes = work.rows;
   const sweep = createRotations(Math.max(0, modes - 1));
   const rotations = createRotations(mesh.cells);
-  const behindDiagonal = new Uint8Array(mesh.cells);
   for (let diagonal = 0; diagonal < modes - 1; diagonal++) {
     const byRows = diagonal % 2 === 1;
-    if (byRows) nullByRowsInPlace(work, diagonal, sweep, negligible);
-    else nullByColumnsInPlace(work, diagonal, sweep, negligible);
+    if (byRows) nullByRowsInPlace(work, diagonal, sweep, negligibleSquare);
+    else nullByColumnsInPlace(work, diagonal, sweep, negligibleSquare);
     for (let step = 0; step <= diagonal; step++) {
       const port = byRows ? modes - 2 - diagonal + step : diagonal - step;
       const cell = cellIndexAt(mesh, byRows ? modes - 1 - step : step, port);
       rotations.cosine[cell] = sweep.cosine[step]!;
       rotations.sineRe[cell] = sweep.sineRe[step]!;
       rotations.sineIm[cell] = sweep.sineIm[step]!;
-      behindDiagonal[cell] = byRows ? 1 : 0;
     }
   }
-  return { rotations, behindDiagonal };
+  return rotations;
 }
 
 /**
- * Step k rotates columns (d-k, d-k+1) so that entry (N-1-k, d-k) vanishes. Rows are taken from the bottom, each one
- * passing through all the steps that are known when it comes: the memory is then read in its own order.
+ * Step k rotates columns (d-k, d-k+1) so that entry (N-1-k, d-k) vanishes. Rows are taken from the bottom,
+ * each one passing through all the steps that are known when it comes: the memory is then read in its own
+ * order.
  */
 function nullByColumnsInPlace(
   { rows: modes, re, im }: ComplexMatrix,
   diagonal: number,
   sweep: Rotations,
-  negligible: number,
+  negligibleSquare: number,
 ): void {
   const { cosine, sineRe, sineIm } = sweep;
   for (let row = modes - 1; row >= 0; row--) {
@@ -81,7 +74,7 @@ function nullByColumnsInPlace(
     }
     const xr = re[at]!;
     const xi = im[at]!;
-    setNullingRotation(sweep, ownStep, xr, xi, carryRe, carryIm, negligible);
+    setNullingRotation(sweep, ownStep, xr, xi, carryRe, carryIm, negligibleSquare);
     const c = cosine[ownStep]!;
     const sr = sineRe[ownStep]!;
     const si = sineIm[ownStep]!;
@@ -92,18 +85,21 @@ function nullByColumnsInPlace(
   }
 }
 
-/** Step k rotates rows (N-2-d+k, N-1-d+k) so that entry (N-1-d+k, k) vanishes; columns left of k are zero already. */
+/**
+ * Step k rotates rows (N-2-d+k, N-1-d+k) so that entry (N-1-d+k, k) vanishes; columns left of k are zero
+ * already.
+ */
 function nullByRowsInPlace(
   { rows: modes, re, im }: ComplexMatrix,
   diagonal: number,
   sweep: Rotations,
-  negligible: number,
+  negligibleSquare: number,
 ): void {
   for (let step = 0; step <= diagonal; step++) {
     const upper = (modes - 2 - diagonal + step) * modes;
     const lower = upper + modes;
     const at = lower + step;
-    setNullingRotation(sweep, step, re[at]!, im[at]!, re[upper + step]!, im[upper + step]!, negligible);
+    setNullingRotation(sweep, step, re[at]!, im[at]!, re[upper + step]!, im[upper + step]!, negligibleSquare);
     const c = sweep.cosine[step]!;
     const sr = sweep.sineRe[step]!;
     const si = sweep.sineIm[step]!;

@@ -5,18 +5,21 @@ import type { Rotations } from './Rotations.js';
 import { createRotations, setNullingRotation } from './Rotations.js';
 
 /**
- * Reck's nulling for the triangular mesh that is not mirrored: row N is nulled from left to right by rotations of neighbouring
- * columns, then row N-1, and so on. Reck et al., Phys. Rev. Lett. 73, 58 (1994).
+ * Reck's nulling for the triangular mesh that is not mirrored: row N is nulled from left to right by
+ * rotations of neighbouring columns, then row N-1, and so on. Reck et al., Phys. Rev. Lett. 73, 58 (1994).
  *
- * Afterwards `work` is diagonal up to rounding (entries of nulled rows are not written back except the diagonal one), and U = D W_M ... W_2 W_1 with the
- * rotations W at their cells. Cost (20/3) N^3 flops.
+ * Afterwards `work` is diagonal up to rounding (entries of nulled rows are not written back except the
+ * diagonal one), and U = D W_M ... W_2 W_1 with the rotations W at their cells. Cost (20/3) N^3 flops. The
+ * readable twin of the kernel in src/kernel/assembly/nullingTriangular.ts: the same arithmetic in the same
+ * order, so the same result to the last bit.
+ * @param negligibleSquare entries whose squares are at most that count as zero
  */
-export function nullTriangularInPlace(work: ComplexMatrix, mesh: Mesh, negligible: number): Rotations {
+export function nullTriangularInPlace(work: ComplexMatrix, mesh: Mesh, negligibleSquare: number): Rotations {
   const { rows: modes, re, im } = work;
   const chain = createRotations(Math.max(0, modes - 1));
   const rotations = createRotations(mesh.cells);
   for (let row = modes - 1; row >= 1; row--) {
-    findChainInPlace(work, row, chain, negligible);
+    findChainInPlace(work, row, chain, negligibleSquare);
     for (let above = 0; above < row; above++) applyChainInPlace(re, im, above * modes, row, chain);
     const chainNumber = modes - 1 - row;
     for (let port = 0; port < row; port++) {
@@ -34,7 +37,7 @@ function findChainInPlace(
   { rows: modes, re, im }: ComplexMatrix,
   row: number,
   chain: Rotations,
-  negligible: number,
+  negligibleSquare: number,
 ): void {
   const start = row * modes;
   let carryRe = re[start]!;
@@ -42,7 +45,7 @@ function findChainInPlace(
   for (let port = 0; port < row; port++) {
     const nextRe = re[start + port + 1]!;
     const nextIm = im[start + port + 1]!;
-    setNullingRotation(chain, port, carryRe, carryIm, nextRe, nextIm, negligible);
+    setNullingRotation(chain, port, carryRe, carryIm, nextRe, nextIm, negligibleSquare);
     const c = chain.cosine[port]!;
     const sr = chain.sineRe[port]!;
     const si = chain.sineIm[port]!;

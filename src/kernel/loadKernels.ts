@@ -84,14 +84,29 @@ export interface Kernels {
     output: number,
     result: number,
   ): void;
+  /**
+   * Lays an N x N matrix out as the nulling kernels want it: see assembly/nullingMatrix.ts. Entry (i, j) is
+   * double number `first` + i `rowStep` + j `columnStep` of the plane at `source`, N^2 doubles for re, then as
+   * many for im.
+   */
+  layOutMatrix(
+    modes: number,
+    source: number,
+    first: number,
+    rowStep: number,
+    columnStep: number,
+    matrix: number,
+    rowBytes: number,
+  ): void;
   nullRectangular: NullingKernel;
   nullTriangular: NullingKernel;
 }
 
 /**
- * Nulls an N x N matrix; its memory layout is that of assembly/nullingMatrix.ts: the address of row 0, behind three rows that are scribbled
- * on; bytes from row to row. Squares up to `negligibleSquare` count as zero. `sweep` has room for N - 1 rotations of 32 bytes. The results are
- * c, re s and im s of the cells, N(N-1)/2 doubles each; `diagonalEntries` holds re and im of the N entries that are left.
+ * Nulls an N x N matrix; its memory layout is that of assembly/nullingMatrix.ts: the address of row 0, behind
+ * three rows that are scribbled on; bytes from row to row. Squares up to `negligibleSquare` count as zero.
+ * `sweep` has room for N - 1 rotations of 32 bytes. The results are c, re s and im s of the cells, N(N-1)/2
+ * doubles each; `diagonalEntries` holds re and im of the N entries that are left.
  */
 type NullingKernel = (
   modes: number,

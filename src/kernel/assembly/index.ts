@@ -2,5 +2,6 @@ export { correlateGrid, correlatePairs, drawSplitters, pickPlaces, turnFactors, 
 export { fillNormals, fillUniforms, seedTrial } from './normals';
 export { accumulatePanel, composeCells, judgeTrial, propagatePanel } from './propagate';
 export { solveCells } from './solveCells';
+export { layOutMatrix } from './nullingMatrix';
 export { nullRectangular } from './nullingRectangular';
 export { nullTriangular } from './nullingTriangular';

@@ -1,16 +1,22 @@
-// What both nullings share: how the matrix lies in memory, how a rotation is found, and how rows and columns pass through rotations.
+// What both nullings share: how the matrix lies in memory, how a rotation is found, and how rows and columns
+// pass through rotations.
 //
-// A row is a sequence of tiles of four doubles, re re' im im' of two neighbouring columns. Two columns are then one vector wherever rows are
-// rotated, real and imaginary part have one address, and four columns fill a cache line. Rows are taken four at a time where columns are
-// rotated, from the bottom: up to three rows above the first one are read and written, but nothing depends on them, as nothing depends on the
-// columns between N and the next multiple of four. No nulled entry is ever set to zero: no rotation is found from it.
+// A row is a sequence of tiles of four doubles, re re' im im' of two neighbouring columns. Two columns are
+// then one vector wherever rows are rotated, real and imaginary part have one address, and four columns fill
+// a cache line. Rows are taken four at a time where columns are rotated, from the bottom: up to three rows
+// above the first one are read and written, but nothing depends on them, as nothing depends on the columns
+// between N and the next multiple of four. No nulled entry is ever set to zero: no rotation is found from it.
 //
 // A rotation [[c, -conj(s)], [s, c]] is four doubles: c, re s, im s, and one that is not used.
+
+import { add, multiply, subtract } from './lanes';
 
 /** Bytes of a rotation; also of a tile. */
 export const ROTATION: usize = 32;
 /** From the real part of an entry to the imaginary one. */
 const IMAGINARY: usize = 16;
+/** Rows above the first one that may be written. */
+const ROWS_ABOVE: usize = 3;
 /** Bytes of a column on the average: four columns are 64. */
 export const COLUMN: usize = 16;
 
@@ -18,10 +24,6 @@ export const COLUMN: usize = 16;
 @inline export function columnOffset(column: i32): usize {
   return (usize(column >> 1) << 5) + (usize(column & 1) << 3);
 }
-
-@inline function multiply(a: v128, b: v128): v128 { return f64x2.mul(a, b); }
-@inline function add(a: v128, b: v128): v128 { return f64x2.add(a, b); }
-@inline function subtract(a: v128, b: v128): v128 { return f64x2.sub(a, b); }
 
 // The rotation turns the entries (kept, nulled) into (c kept + conj(s) nulled, c nulled - s kept).
 @inline function keptRe(c: v128, sr: v128, si: v128, kept: v128, nulledRe: v128, nulledIm: v128): v128 {
@@ -38,10 +40,13 @@ export const COLUMN: usize = 16;
 }
 
 /**
- * Writes the rotation that nulls the entry at `nulled` against the one at `kept`. Entries whose squares are at most `negligibleSquare` count as
- * zero: nothing to null is the exact bar state, nothing to keep the exact cross state.
+ * Writes the rotation that nulls the entry at `nulled` against the one at `kept`. Entries whose squares are
+ * at most `negligibleSquare` count as zero: nothing to null is the exact bar state, nothing to keep the exact
+ * cross state.
  */
-@inline export function findRotation(rotation: usize, nulled: usize, kept: usize, negligibleSquare: f64): void {
+@inline export function findRotation(
+  rotation: usize, nulled: usize, kept: usize, negligibleSquare: f64,
+): void {
   const nr = load<f64>(nulled);
   const ni = load<f64>(nulled, IMAGINARY);
   const kr = load<f64>(kept);
@@ -67,13 +72,37 @@ export const COLUMN: usize = 16;
   store<f64>(rotation, si, 16);
 }
 
-/** Copies a rotation to the place of a cell in the results: planes of `cells` doubles for c, re s and im s. */
+/**
+ * Copies a rotation to the place of a cell in the results: planes of `cells` doubles for c, re s and im s.
+ */
 @inline export function putAtCell(results: usize, cells: i32, cell: i32, rotation: usize): void {
   const place = results + (usize(cell) << 3);
   const plane = usize(cells) << 3;
   store<f64>(place, load<f64>(rotation));
   store<f64>(place + plane, load<f64>(rotation, 8));
   store<f64>(place + 2 * plane, load<f64>(rotation, 16));
+}
+
+/**
+ * Lays a matrix out in tiles, zeros in the places around it. Entry (i, j) stands at `first` + i `rowStep` + j
+ * `columnStep` of the plane at `source` (N^2 doubles for re, then as many for im); steps may be negative, so
+ * that the matrix can be transposed or turned round on the way.
+ */
+export function layOutMatrix(
+  modes: i32, source: usize, first: i32, rowStep: i32, columnStep: i32, matrix: usize, rowBytes: usize,
+): void {
+  const plane = usize(modes * modes) << 3;
+  memory.fill(matrix - ROWS_ABOVE * rowBytes, 0, (usize(modes) + ROWS_ABOVE) * rowBytes);
+  for (let row = 0; row < modes; row++) {
+    let entry = source + (usize(first + row * rowStep) << 3);
+    for (let column = 0; column < modes; column++) {
+      const place = matrix + columnOffset(column);
+      store<f64>(place, load<f64>(entry));
+      store<f64>(place, load<f64>(entry + plane), IMAGINARY);
+      entry += usize(columnStep) << 3;
+    }
+    matrix += rowBytes;
+  }
 }
 
 /** Writes re and im of the diagonal entries one after another. */
@@ -87,8 +116,8 @@ export function readDiagonal(modes: i32, matrix: usize, rowBytes: usize, diagona
 }
 
 /**
- * Passes a strip of four columns through `count` rotations of neighbouring rows, downwards from the row at `upper` (the kept one of the first
- * rotation); the row that two rotations have in common stays in registers.
+ * Passes a strip of four columns through `count` rotations of neighbouring rows, downwards from the row at
+ * `upper` (the kept one of the first rotation); the row that two rotations have in common stays in registers.
  */
 @inline export function rotateRowsDown(upper: usize, rowBytes: usize, rotation: usize, count: i32): void {
   let re0 = v128.load(upper);
@@ -133,10 +162,12 @@ export function readDiagonal(modes: i32, matrix: usize, rowBytes: usize, diagona
 }
 
 /**
- * Passes four rows, the lowest at `row`, through `count` rotations of neighbouring columns, leftwards from column `kept` (the kept one of the
- * first rotation). The lanes of a vector are two rows.
+ * Passes four rows, the lowest at `row`, through `count` rotations of neighbouring columns, leftwards from
+ * column `kept` (the kept one of the first rotation). The lanes of a vector are two rows.
  */
-@inline export function rotateColumnsLeft(row: usize, rowBytes: usize, kept: i32, rotation: usize, count: i32): void {
+@inline export function rotateColumnsLeft(
+  row: usize, rowBytes: usize, kept: i32, rotation: usize, count: i32,
+): void {
   let at0 = row + columnOffset(kept);
   let at1 = at0 - rowBytes;
   let at2 = at1 - rowBytes;
@@ -179,10 +210,12 @@ export function readDiagonal(modes: i32, matrix: usize, rowBytes: usize, diagona
 }
 
 /**
- * Passes four rows, the lowest at `row`, through `count` rotations of neighbouring columns, rightwards from column `nulled` (the nulled one of
- * the first rotation). The lanes of a vector are two rows.
+ * Passes four rows, the lowest at `row`, through `count` rotations of neighbouring columns, rightwards from
+ * column `nulled` (the nulled one of the first rotation). The lanes of a vector are two rows.
  */
-@inline export function rotateColumnsRight(row: usize, rowBytes: usize, nulled: i32, rotation: usize, count: i32): void {
+@inline export function rotateColumnsRight(
+  row: usize, rowBytes: usize, nulled: i32, rotation: usize, count: i32,
+): void {
   let at0 = row + columnOffset(nulled);
   let at1 = at0 - rowBytes;
   let at2 = at1 - rowBytes;

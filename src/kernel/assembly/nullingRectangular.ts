@@ -1,13 +1,19 @@
 // Clements' nulling; the readable twin is src/decompose/nullRectangular.ts.
-import { COLUMN, columnOffset, findRotation, putAtCell, readDiagonal, ROTATION, rotateColumnsLeft, rotateRowsDown } from './nullingMatrix';
+import { COLUMN, columnOffset, findRotation, putAtCell, readDiagonal, ROTATION } from './nullingMatrix';
+import { rotateColumnsLeft, rotateRowsDown } from './nullingMatrix';
 
-/** Cell with the upper port `port` in a column: there are N - 1 cells in two columns, N >> 1 of them in the first. */
+/**
+ * Cell with the upper port `port` in a column: there are N - 1 cells in two columns, N >> 1 of them in the
+ * first.
+ */
 @inline function cellAt(modes: i32, column: i32, port: i32): i32 {
   return (column >> 1) * (modes - 1) + (column & 1) * (modes >> 1) + (port >> 1);
 }
 
 /** Step k rotates columns (d-k, d-k+1) so that entry (N-1-k, d-k) vanishes. */
-function nullByColumns(modes: i32, matrix: usize, rowBytes: usize, diagonal: i32, sweep: usize, negligibleSquare: f64): void {
+function nullByColumns(
+  modes: i32, matrix: usize, rowBytes: usize, diagonal: i32, sweep: usize, negligibleSquare: f64,
+): void {
   let row = matrix + usize(modes - 1) * rowBytes;
   for (let group = 0; group < modes; group += 4) {
     const known = min(group, diagonal + 1);
@@ -16,15 +22,18 @@ function nullByColumns(modes: i32, matrix: usize, rowBytes: usize, diagonal: i32
     for (let step = known; step < all; step++) {
       const rotation = sweep + usize(step) * ROTATION;
       const ownRow = row - usize(step - group) * rowBytes;
-      findRotation(rotation, ownRow + columnOffset(diagonal - step), ownRow + columnOffset(diagonal - step + 1), negligibleSquare);
-      rotateColumnsLeft(row, rowBytes, diagonal - step + 1, rotation, 1);
+      const left = diagonal - step;
+      findRotation(rotation, ownRow + columnOffset(left), ownRow + columnOffset(left + 1), negligibleSquare);
+      rotateColumnsLeft(row, rowBytes, left + 1, rotation, 1);
     }
     row -= 4 * rowBytes;
   }
 }
 
 /** Step k rotates rows (N-2-d+k, N-1-d+k) so that entry (N-1-d+k, k) vanishes. */
-function nullByRows(modes: i32, matrix: usize, rowBytes: usize, diagonal: i32, sweep: usize, negligibleSquare: f64): void {
+function nullByRows(
+  modes: i32, matrix: usize, rowBytes: usize, diagonal: i32, sweep: usize, negligibleSquare: f64,
+): void {
   const firstRow = matrix + usize(modes - 2 - diagonal) * rowBytes;
   for (let strip = 0; strip < modes; strip += 4) {
     const top = firstRow + usize(strip) * COLUMN;
@@ -49,7 +58,8 @@ function nullByRows(modes: i32, matrix: usize, rowBytes: usize, diagonal: i32, s
  * @param diagonalEntries re and im of the N entries that are left on the diagonal
  */
 export function nullRectangular(
-  modes: i32, matrix: usize, rowBytes: usize, negligibleSquare: f64, sweep: usize, results: usize, diagonalEntries: usize,
+  modes: i32, matrix: usize, rowBytes: usize, negligibleSquare: f64,
+  sweep: usize, results: usize, diagonalEntries: usize,
 ): void {
   const cells = (modes * (modes - 1)) >> 1;
   for (let diagonal = 0; diagonal < modes - 1; diagonal++) {

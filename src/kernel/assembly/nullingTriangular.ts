@@ -1,7 +1,11 @@
 // Reck's nulling; the readable twin is src/decompose/nullTriangular.ts.
-import { columnOffset, findRotation, putAtCell, readDiagonal, ROTATION, rotateColumnsRight } from './nullingMatrix';
+import { columnOffset, findRotation, putAtCell, readDiagonal, ROTATION } from './nullingMatrix';
+import { rotateColumnsRight } from './nullingMatrix';
 
-/** Cells before a column: in the columns k below N - 1 there are (k >> 1) + 1, in the others (2N-4-k >> 1) + 1, as from the end. */
+/**
+ * Cells before a column: in the columns k below N - 1 there are (k >> 1) + 1, in the others (2N-4-k >> 1) +
+ * 1, as from the end.
+ */
 @inline function firstCellOf(modes: i32, column: i32): i32 {
   if (column < modes) return ((column + 1) >> 1) * ((column >> 1) + 1);
   const fromEnd = 2 * modes - 3 - column;
@@ -9,11 +13,12 @@ import { columnOffset, findRotation, putAtCell, readDiagonal, ROTATION, rotateCo
 }
 
 /**
- * Nulls an N x N unitary for the triangular mesh that is not mirrored: row N from left to right by rotations of neighbouring columns, then row
- * N - 1, and so on. Parameters as for nullRectangular.
+ * Nulls an N x N unitary for the triangular mesh that is not mirrored: row N from left to right by rotations
+ * of neighbouring columns, then row N - 1, and so on. Parameters as for nullRectangular.
  */
 export function nullTriangular(
-  modes: i32, matrix: usize, rowBytes: usize, negligibleSquare: f64, chain: usize, results: usize, diagonalEntries: usize,
+  modes: i32, matrix: usize, rowBytes: usize, negligibleSquare: f64,
+  chain: usize, results: usize, diagonalEntries: usize,
 ): void {
   const cells = (modes * (modes - 1)) >> 1;
   for (let row = modes - 1; row > 0; row--) {

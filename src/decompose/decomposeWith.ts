@@ -1,0 +1,84 @@
+import type { ComplexMatrix } from '../matrix/ComplexMatrix.js';
+import type { Mesh } from '../mesh/Mesh.js';
+import { cellIndexAt } from '../mesh/Mesh.js';
+import type { Decomposition } from './Decomposition.js';
+import type { Mirrored, Nulling } from './Nulling.js';
+import type { Rotations } from './Rotations.js';
+import { createRotations } from './Rotations.js';
+
+/** Entries up to NEGLIGIBLE N eps count as zero: rounding in the nulling itself was seen to stay below 2 N eps. */
+const NEGLIGIBLE = 4;
+
+/**
+ * What `decompose` does, by a nulling of one's choice.
+ * @throws RangeError when the target's shape is not that of the mesh
+ */
+export function decomposeWith(nulling: Nulling, target: ComplexMatrix, mesh: Mesh): Decomposition {
+  const { modes, layout, mirror } = mesh;
+  if (target.rows !== modes || target.columns !== modes) {
+    throw new RangeError(`the mesh has ${modes} ports, the target is ${target.rows} x ${target.columns}`);
+  }
+  const mirrored: Mirrored = {
+    ports: mirror === 'ports' || mirror === 'both',
+    columns: mirror === 'columns' || mirror === 'both',
+  };
+  const negligible = NEGLIGIBLE * modes * Number.EPSILON;
+  const { rotations, diagonal } = nulling(target, layout, mirrored, negligible * negligible);
+  const { cosine, sineRe, sineIm } = mirror === 'none' ? rotations : placeOnMesh(rotations, mesh, mirrored);
+  if (mirrored.ports) diagonal.reverse();
+  return { mesh, cosine, sineRe, sineIm, diagonal, diagonalBefore: placeDiagonal(mesh, mirrored) };
+}
+
+/** Carries the factors of the plain mesh to the cells of the mirrored one. */
+function placeOnMesh(
+  plain: Rotations,
+  { cells, columns, firstCellOfColumn }: Mesh,
+  mirrored: Mirrored,
+): Rotations {
+  const placed = createRotations(cells);
+  // X W X and W^T both turn s into -conj(s); together they leave it as it was.
+  const conjugated = mirrored.ports !== mirrored.columns;
+  let cell = 0;
+  for (let plainColumn = 0; plainColumn < columns; plainColumn++) {
+    const column = mirrored.columns ? columns - 1 - plainColumn : plainColumn;
+    const first = firstCellOfColumn[column]!;
+    const last = firstCellOfColumn[column + 1]! - 1;
+    for (let inColumn = 0; inColumn <= last - first; inColumn++) {
+      const place = mirrored.ports ? last - inColumn : first + inColumn;
+      placed.cosine[place] = plain.cosine[cell]!;
+      placed.sineRe[place] = conjugated ? -plain.sineRe[cell]! : plain.sineRe[cell]!;
+      placed.sineIm[place] = plain.sineIm[cell]!;
+      cell++;
+    }
+  }
+  return placed;
+}
+
+/**
+ * Per port, index of the first cell on it that the light meets behind the diagonal; the number of cells if
+ * none.
+ *
+ * On a plain rectangle the cells behind the diagonal are those that nulling finds by rows: step k of diagonal
+ * d gives column N-1-k, port N-2-d+k (from 0), with a sum of at least N-1, whereas column k and port d-k of
+ * those found by columns have a sum of at most N-2. Sums are even. So the first cells behind lie on one
+ * oblique line, the last ones before on the line next to it; with the columns in reverse order the latter are
+ * the first behind. A plain triangle has no cell behind the diagonal, and one in reverse order none before
+ * it.
+ */
+function placeDiagonal(mesh: Mesh, mirrored: Mirrored): Int32Array {
+  const { modes, layout, cells, columns } = mesh;
+  const diagonalBefore = new Int32Array(modes).fill(cells);
+  if (layout === 'triangular' && !mirrored.columns) return diagonalBefore;
+  const leastSumBehind = modes - (modes % 2);
+  for (let port = 0; port < modes; port++) {
+    const plainPort = mirrored.ports ? modes - 1 - port : port;
+    // Of the two cells of the line on the port, the one that the light meets first; at its ends there is one.
+    const upper = mirrored.columns ? Math.max(plainPort - 1, 0) : Math.min(plainPort, modes - 2);
+    const behindOnPlain = leastSumBehind - upper;
+    let column = mirrored.columns ? columns - 1 - (behindOnPlain - 2) : behindOnPlain;
+    if (layout === 'triangular') column = upper;
+    if (column < 0 || column >= columns) continue;
+    diagonalBefore[port] = cellIndexAt(mesh, column, mirrored.ports ? modes - 2 - upper : upper);
+  }
+  return diagonalBefore;
+}

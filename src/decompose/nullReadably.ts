@@ -1,0 +1,26 @@
+import type { ComplexMatrix } from '../matrix/ComplexMatrix.js';
+import { copyMatrix } from '../matrix/ComplexMatrix.js';
+import { reversePorts, transpose } from '../matrix/products.js';
+import type { Layout } from '../mesh/Mesh.js';
+import { createMesh } from '../mesh/Mesh.js';
+import type { Mirrored, NullingResult } from './Nulling.js';
+import { nullRectangularInPlace } from './nullRectangular.js';
+import { nullTriangularInPlace } from './nullTriangular.js';
+
+/** The nulling in plain TypeScript: the twin of `nullOnKernels`. */
+export function nullReadably(
+  target: ComplexMatrix,
+  layout: Layout,
+  mirrored: Mirrored,
+  negligibleSquare: number,
+): NullingResult {
+  let work = mirrored.ports ? reversePorts(target) : copyMatrix(target);
+  if (mirrored.columns) work = transpose(work);
+  const modes = work.rows;
+  const nullInPlace = layout === 'rectangular' ? nullRectangularInPlace : nullTriangularInPlace;
+  const rotations = nullInPlace(work, createMesh(layout, modes), negligibleSquare);
+  const diagonal = Float64Array.from({ length: modes }, (_, i) =>
+    Math.atan2(work.im[i * modes + i]!, work.re[i * modes + i]!),
+  );
+  return { rotations, diagonal };
+}
