@@ -2,14 +2,17 @@ import type { Mesh } from '../mesh/Mesh.js';
 
 /** The guide arm on which the internal phase sits: `differential` is +theta/2 above and -theta/2 below. */
 export const INTERNAL_ARMS = ['upper', 'lower', 'differential'] as const;
+/** Where the internal phase sits. */
 export type InternalArm = (typeof INTERNAL_ARMS)[number];
 
 /** The guide on which the external phase sits, before or behind the two splitters. */
 export const EXTERNAL_GUIDES = ['upper-input', 'lower-input', 'upper-output', 'lower-output'] as const;
+/** Where the external phase sits. */
 export type ExternalGuide = (typeof EXTERNAL_GUIDES)[number];
 
 /** `symmetric`: [[cos a, i sin a], [i sin a, cos a]]; `real`: [[cos a, sin a], [sin a, -cos a]]. */
 export const SPLITTER_FORMS = ['symmetric', 'real'] as const;
+/** The form of a splitter's matrix. */
 export type SplitterForm = (typeof SPLITTER_FORMS)[number];
 
 /** How every cell of a chip is built, as it stands on the chip. */
@@ -34,6 +37,7 @@ export interface ChipLoss {
 
 /** Distributions of random errors; both are given by their standard deviation. */
 export const ERROR_DISTRIBUTIONS = ['normal', 'uniform'] as const;
+/** A distribution of random errors. */
 export type ErrorDistribution = (typeof ERROR_DISTRIBUTIONS)[number];
 
 /**

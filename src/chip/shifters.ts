@@ -2,6 +2,7 @@ import type { Chip } from './Chip.js';
 import { externalAtOutput } from './Chip.js';
 import type { Settings } from './Settings.js';
 
+/** What a shifter is for: a phase of a cell, or one of a port. */
 export type ShifterRole = 'input' | 'external' | 'internal' | 'output';
 
 /** One phase shifter of a chip. All fields count from 0. */

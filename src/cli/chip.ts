@@ -7,13 +7,13 @@ import type { ReadChip } from '../chip/readChip.js';
 import { cellReach } from '../chip/reach.js';
 import { shifterCount } from '../chip/shifters.js';
 import { InputError } from '../errors/InputError.js';
+import { printableText } from '../figure/printableText.js';
 import { runIdentity } from '../files/contentHash.js';
-import { writeNamedFile } from '../files/writeFile.js';
 import type { Layout, Mirror } from '../mesh/Mesh.js';
 import { LAYOUTS, MIRRORS } from '../mesh/Mesh.js';
 import { decibelFromPowerRatio } from '../units/decibel.js';
 import type { OutputOptions } from './commandOptions.js';
-import { addOutputOptions } from './commandOptions.js';
+import { addOutputOptions, numberFor, pathFor } from './commandOptions.js';
 import { createConsole } from './console.js';
 import { finish } from './finish.js';
 import { chipHash, loadChipFile } from './loadChip.js';
@@ -47,7 +47,7 @@ export function addChipCommand(parent: Command): void {
       'Check a chip file and say what it describes, or make one with --modes and the options below.\n' +
         'A chip that is made is written as NAME.chip.json into the folder of the results, and to --to.',
     )
-    .option('--modes <number>', 'make a chip with so many ports', (text) => Number(text))
+    .option('--modes <number>', 'make a chip with so many ports', numberFor('--modes'))
     .addOption(new Option('--layout <name>', 'layout of the mesh (default: rectangular)').choices(LAYOUTS))
     .addOption(new Option('--mirror <way>', 'how the mesh is mirrored (default: none)').choices(MIRRORS))
     .addOption(
@@ -64,11 +64,13 @@ export function addChipCommand(parent: Command): void {
       ),
     )
     .option('--no-port-shifters', 'the chip has no phase shifters at its ports')
-    .option('--coupling-ratio <ratio>', 'nominal ratio of every splitter (default: 0.5)', (text) =>
-      Number(text),
+    .option(
+      '--coupling-ratio <ratio>',
+      'nominal ratio of every splitter (default: 0.5)',
+      numberFor('--coupling-ratio'),
     )
     .option('--name <name>', 'name of the chip')
-    .option('--to <file>', 'write the chip file here too');
+    .option('--to <file>', 'write the chip file here too', pathFor('--to'));
   addOutputOptions(command)
     .addHelpText(
       'after',
@@ -92,14 +94,13 @@ async function runChip(path: string | undefined, options: ChipCommandOptions): P
   const text = `${JSON.stringify(read.file, null, 2)}\n`;
   if (made) files.set(`${slug(chip.name)}.chip.json`, text);
   const runId = runIdentity('chip', { chip: chipHash(read) }, { made });
-  if (options.to !== undefined) await writeNamedFile(options.to, text, options.force === true);
   await finish(console, options, {
     folder: options.out ?? defaultFolder('chip', made ? { text: chip.name } : { path, text: path }),
     files,
+    named: options.to === undefined ? undefined : { path: options.to, content: text },
     report: { ...reportHead('chip', runId), chip: { ...chipBlock(chip), ...fullChipBlock(chip) } },
     show: () => console.result(describeChip(chip)),
   });
-  if (options.to !== undefined) console.message(`written to ${options.to}`);
 }
 
 function refuseBoth(path: string | undefined, options: ChipCommandOptions): void {
@@ -142,7 +143,6 @@ async function makeChip(options: MakingOptions): Promise<ReadChip> {
 
 /** Through JSON: what is undefined is not there. */
 function withoutUndefined(document: unknown): ChipFile {
-  // NaN, from a word where a number belongs, must reach the schema as what it is not: a number.
   return JSON.parse(JSON.stringify(document)) as ChipFile;
 }
 
@@ -193,7 +193,7 @@ function reachCount(
 function describeChip(chip: Chip): string {
   const { mesh, style, couplingRatios, loss } = chip;
   const lines = [
-    `${chip.name}: ${mesh.layout} mesh${mesh.mirror === 'none' ? '' : ` (mirror ${mesh.mirror})`}, ${mesh.modes} ports, ` +
+    `${printableText(chip.name)}: ${mesh.layout} mesh${mesh.mirror === 'none' ? '' : ` (mirror ${mesh.mirror})`}, ${mesh.modes} ports, ` +
       `${mesh.cells} cells in ${mesh.columns} columns, ${shifterCount(chip)} shifters`,
     `cells: internal phase ${style.internal}, external phase ${style.external}, ${style.splitterForm} splitters`,
     `port shifters: ${chip.portShifters ? 'yes' : 'no'}`,

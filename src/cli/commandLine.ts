@@ -1,8 +1,11 @@
 import { Command, CommanderError } from 'commander';
 import { createColors } from 'picocolors';
 import { InputError } from '../errors/InputError.js';
+import { nearestName } from '../errors/nearestName.js';
+import { printableText } from '../figure/printableText.js';
 import { packageVersion } from '../files/version.js';
 import { addChipCommand } from './chip.js';
+import { withoutControls } from './console.js';
 import { addFigureCommand } from './figure.js';
 import { addPhasesCommand } from './phases.js';
 import { addTargetCommand } from './target.js';
@@ -26,7 +29,7 @@ export async function runCommandLine(args: readonly string[]): Promise<number> {
     await program.parseAsync([...args], { from: 'user' });
     return exitCode;
   } catch (error) {
-    return reportError(error, args);
+    return reportError(error, args, program);
   }
 }
 
@@ -60,11 +63,11 @@ Exit codes: 0 done, 1 a --require was not met, 2 input or usage at fault, 3 inte
 }
 
 /** Prints an error: one line that says what is wrong and where, one that says how to mend it. */
-function reportError(error: unknown, args: readonly string[]): number {
+function reportError(error: unknown, args: readonly string[], program: Command): number {
   if (error instanceof CommanderError && error.exitCode === 0) return EXIT.done;
-  const { what, remedy, code } = inWords(error, args);
+  const { what, remedy, code } = inWords(error, args, program);
   const colours = createColors(process.stderr.isTTY && !process.env['NO_COLOR']);
-  process.stderr.write(`${colours.red('error')}: ${what}\n${remedy}\n`);
+  process.stderr.write(`${colours.red('error')}: ${withoutControls(what)}\n${withoutControls(remedy)}\n`);
   if (args.includes('--debug') && error instanceof Error) process.stderr.write(`${error.stack ?? ''}\n`);
   return code;
 }
@@ -75,9 +78,9 @@ interface ErrorInWords {
   readonly code: number;
 }
 
-function inWords(error: unknown, args: readonly string[]): ErrorInWords {
+function inWords(error: unknown, args: readonly string[], program: Command): ErrorInWords {
   if (error instanceof InputError) return { what: error.message, remedy: error.remedy, code: EXIT.input };
-  if (error instanceof CommanderError) return { ...usageInWords(error, args), code: EXIT.input };
+  if (error instanceof CommanderError) return { ...usageInWords(error, args, program), code: EXIT.input };
   const message = error instanceof Error ? error.message : String(error);
   return {
     what: `internal fault: ${message.split('\n')[0]!}`,
@@ -86,7 +89,12 @@ function inWords(error: unknown, args: readonly string[]): ErrorInWords {
   };
 }
 
-function usageInWords(error: CommanderError, args: readonly string[]): { what: string; remedy: string } {
+function usageInWords(
+  error: CommanderError,
+  args: readonly string[],
+  program: Command,
+): { what: string; remedy: string } {
+  if (error.code === 'commander.help') return helpUnknown(args, program);
   const [first = '', second] = error.message.replace(/^error: /, '').split('\n');
   const suggestion = second === undefined ? undefined : /Did you mean (?:one of )?(.*)\?\)/.exec(second)?.[1];
   const command = args.find((argument) => !argument.startsWith('-'));
@@ -96,9 +104,28 @@ function usageInWords(error: CommanderError, args: readonly string[]): { what: s
     if (/^-[^-]/.test(option) && option !== '-h') {
       return {
         what: first,
-        remedy: `If ${option} is a formula, put -- before it: phasewright ${command ?? 'phases'} -- "${option}"`,
+        remedy:
+          `If ${option} is a formula, put -- before it, behind all options: ` +
+          `phasewright ${command ?? 'phases'} -- "${option}"`,
       };
     }
   }
+  if (error.code === 'commander.excessArguments') {
+    return {
+      what: first.replace(/\.$/, ''),
+      remedy: 'Put quotes around a formula or name with blanks in it, and options before --.',
+    };
+  }
   return { what: first, remedy: suggestion === undefined ? help : `Did you mean ${suggestion}?` };
+}
+
+/** `help` was asked for something that is no command. */
+function helpUnknown(args: readonly string[], program: Command): { what: string; remedy: string } {
+  const asked = args.filter((argument) => !argument.startsWith('-'))[1] ?? '';
+  const known = program.commands.map((command) => command.name());
+  const near = nearestName(asked, known);
+  return {
+    what: `unknown command '${printableText(asked)}'`,
+    remedy: near === undefined ? `Commands are ${known.join(', ')}.` : `Did you mean ${near}?`,
+  };
 }

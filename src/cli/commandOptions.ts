@@ -47,7 +47,11 @@ export interface RequireOption {
 
 export function addOutputOptions(command: Command): Command {
   return command
-    .option('--out <folder>', 'folder for the results (default: out/ and the name of command and input)')
+    .option(
+      '--out <folder>',
+      'folder for the results (default: out/ and the name of command and input)',
+      pathFor('--out'),
+    )
     .option('--json', 'print the report as JSON')
     .option('--quiet', 'print nothing but errors, and the report with --json')
     .option('--force', 'replace the results of another run')
@@ -56,7 +60,7 @@ export function addOutputOptions(command: Command): Command {
 
 export function addChipOptions(command: Command): Command {
   return command
-    .option('--chip <file>', 'chip file (*.chip.json)')
+    .option('--chip <file>', 'chip file (*.chip.json)', pathFor('--chip'))
     .addOption(
       new Option(
         '--layout <name>',
@@ -79,7 +83,7 @@ export function addTargetOptions(command: Command): Command {
     .option(
       '--unitary-within <number>',
       'refuse a target whose max |U^dagger U - I| is larger (default: 1e-6)',
-      parsePositive,
+      positiveNumberFor('--unitary-within'),
     );
 }
 
@@ -99,17 +103,42 @@ export function addRequireOption(command: Command): Command {
   );
 }
 
-/** A positive number, for commander. @throws InputError `usage/number` */
-export function parsePositive(text: string): number {
-  const value = Number(text);
-  if (!(text.trim() !== '' && value > 0 && value < Infinity)) {
+/** Reads the number behind an option, for commander. @throws InputError `usage/number` from the reader that it returns */
+export function numberFor(option: string): (text: string) => number {
+  return (text) => {
+    const value = text.trim() === '' ? NaN : Number(text);
+    if (Number.isFinite(value)) return value;
+    throw notANumber(option, text, 'a number');
+  };
+}
+
+/** The same for a number over 0. */
+export function positiveNumberFor(option: string): (text: string) => number {
+  return (text) => {
+    const value = numberFor(option)(text);
+    if (value > 0) return value;
+    throw notANumber(option, text, 'a positive number');
+  };
+}
+
+function notANumber(option: string, text: string, wanted: string): InputError {
+  return new InputError(
+    'usage/number',
+    `${option} ${text}: this is not ${wanted}`,
+    'Write a number with a point, such as 4, 0.5 or 1e-6.',
+  );
+}
+
+/** Reads the path behind an option, for commander: an empty one comes from a shell variable that is not set. */
+export function pathFor(option: string): (text: string) => string {
+  return (text) => {
+    if (text !== '') return text;
     throw new InputError(
-      'usage/number',
-      `"${text}" is not a positive number`,
-      'Write a number such as 1e-6.',
+      'usage/path',
+      `${option} is empty`,
+      `Write a path behind ${option}, or leave it out.`,
     );
-  }
-  return value;
+  };
 }
 
 function parseRequirement(text: string, earlier: readonly Requirement[] = []): readonly Requirement[] {

@@ -9,15 +9,23 @@ export interface Console {
   message(text: string): void;
   /** A message that something is not as wanted. */
   warning(text: string): void;
+  /** Whether a line of progress may be drawn: on a terminal, without --quiet. */
+  readonly showsProgress: boolean;
+}
+
+/** A line without control characters: names and paths come from files, and must not steer the terminal. */
+export function withoutControls(line: string): string {
+  return line.replace(/[\p{Cc}\p{Bidi_Control}\u2028\u2029]+/gu, ' ');
 }
 
 /** With --json words give way to the report; with --quiet nothing but errors and the report is printed. */
 export function createConsole({ json, quiet }: OutputOptions): Console {
   const colours = createColors(process.stderr.isTTY && !process.env['NO_COLOR']);
-  const print = (stream: NodeJS.WriteStream, text: string): void => {
-    stream.write(`${text}\n`);
+  const print = (stream: NodeJS.WriteStream, text: string, before = ''): void => {
+    stream.write(`${before}${text.split('\n').map(withoutControls).join('\n')}\n`);
   };
   return {
+    showsProgress: process.stderr.isTTY && quiet !== true,
     result: (text) => {
       if (json !== true && quiet !== true) print(process.stdout, text);
     },
@@ -25,7 +33,7 @@ export function createConsole({ json, quiet }: OutputOptions): Console {
       if (quiet !== true) print(process.stderr, text);
     },
     warning: (text) => {
-      if (quiet !== true) print(process.stderr, `${colours.yellow('note')}: ${text}`);
+      if (quiet !== true) print(process.stderr, text, `${colours.yellow('note')}: `);
     },
   };
 }

@@ -2,12 +2,11 @@ import type { Command } from 'commander';
 import { externalAtOutput } from '../chip/Chip.js';
 import { InputError } from '../errors/InputError.js';
 import { matrixHash, runIdentity } from '../files/contentHash.js';
-import { writeNamedFile } from '../files/writeFile.js';
 import type { Merit } from '../merit/merit.js';
 import { figuresOfMerit } from '../merit/merit.js';
 import { simulate } from '../simulate/simulate.js';
 import type { OutputOptions } from './commandOptions.js';
-import { addChipOptions, addOutputOptions, addTargetOptions } from './commandOptions.js';
+import { addChipOptions, addOutputOptions, addTargetOptions, pathFor } from './commandOptions.js';
 import { createConsole } from './console.js';
 import { captionLines } from './figureText.js';
 import { finish } from './finish.js';
@@ -38,7 +37,7 @@ export function addFigureCommand(parent: Command): void {
     .option('--no-numbers', 'show the phases by colour only')
     .option('--cell-numbers', 'number the cells')
     .option('--title <text>', 'title instead of the name of the chip')
-    .option('--to <file>', 'write the figure here too (.svg)');
+    .option('--to <file>', 'write the figure here too (.svg)', pathFor('--to'));
   addChipOptions(command);
   addTargetOptions(command);
   addOutputOptions(command)
@@ -84,14 +83,13 @@ async function runFigure(path: string, options: FigureOptions): Promise<void> {
     },
     { width, numbers, cellNumbers, title },
   );
-  if (options.to !== undefined) await writeNamedFile(options.to, svg, options.force === true);
   await finish(console, options, {
     folder: options.out ?? defaultFolder('figure', { path, text: path }),
     files: new Map([['mesh.svg', svg]]),
+    named: options.to === undefined ? undefined : { path: options.to, content: svg },
     report: { ...reportHead('figure', runId), table: { source: path }, chip: chipBlock(chip) },
     show: () => undefined,
   });
-  if (options.to !== undefined) console.message(`written to ${options.to}`);
 }
 
 function meritOf({ target, settings, readChip: { chip } }: LoadedTable): Merit | null {

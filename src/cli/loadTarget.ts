@@ -1,4 +1,4 @@
-import { existsSync } from 'node:fs';
+import { existsSync, statSync } from 'node:fs';
 import { InputError } from '../errors/InputError.js';
 import { matrixHash } from '../files/contentHash.js';
 import { readInputFile, readStandardInput } from '../files/readInput.js';
@@ -46,6 +46,7 @@ export async function readTarget(argument: string): Promise<RawTarget> {
     const bytes = await readInputFile(argument);
     return { source: argument, path: argument, matrices: named(argument, () => readMatrices(bytes, kind)) };
   }
+  refuseBareArgument(argument);
   if (existsSync(argument) || looksLikePath(argument)) {
     throw new InputError(
       'target/unknown-ending',
@@ -117,9 +118,31 @@ export function named<T>(source: string, read: () => T): T {
   }
 }
 
-/** A word with an ending is meant as a file, even if there is none; formulas have brackets or operators. */
+/** @throws InputError for an empty argument, and for a folder */
+function refuseBareArgument(argument: string): void {
+  if (argument.trim() === '') {
+    throw new InputError(
+      'target/empty',
+      'the target is empty',
+      'Name a matrix file, or write a formula such as "dft(4)".',
+    );
+  }
+  if (existsSync(argument) && statSync(argument).isDirectory()) {
+    throw new InputError('file/unreadable', 'this is a folder', 'Name the matrix file in it.', {
+      source: argument,
+    });
+  }
+}
+
+/**
+ * A word with an ending is meant as a file, even if there is none: formulas have brackets or operators. So is anything with
+ * an ending that other programs give to matrices and tables.
+ */
 function looksLikePath(argument: string): boolean {
-  return /^[\w./\\: ~-]+\.[A-Za-z]\w{0,7}$/.test(argument);
+  return (
+    /^[\p{L}\p{M}\w./\\: ~-]+\.[A-Za-z]\w{0,7}$/u.test(argument) ||
+    /\.(?:mat|npz|pkl|h5|hdf5|xlsx?|ods|dat|parquet)$/i.test(argument)
+  );
 }
 
 function cut(text: string): string {

@@ -7,6 +7,8 @@ const LONGEST = 48;
 export function slug(text: string): string {
   const plain = text
     .normalize('NFKD')
+    .replaceAll(/\p{M}/gu, '')
+    .replaceAll('ß', 'ss')
     .toLowerCase()
     .replaceAll(/[^a-z0-9]+/g, '-')
     .replaceAll(/^-+|-+$/g, '');

@@ -1,6 +1,7 @@
 import type { Command } from 'commander';
 import type { ReadChip } from '../chip/readChip.js';
 import { externalAtOutput } from '../chip/Chip.js';
+import { printableText } from '../figure/printableText.js';
 import { contentHash, matrixHash, runIdentity } from '../files/contentHash.js';
 import { packageVersion } from '../files/version.js';
 import type { Merit } from '../merit/merit.js';
@@ -187,7 +188,7 @@ function showOne(
 ): void {
   const { chip } = readChip;
   console.result(
-    `${chip.name}: ${target.source} on ${chip.mesh.cells} cells in ${chip.mesh.columns} columns\n`,
+    `${printableText(chip.name)}: ${printableText(target.source)} on ${chip.mesh.cells} cells in ${chip.mesh.columns} columns\n`,
   );
   console.result(meritLines(merit, meritUncorrected));
   if (!chip.portShifters) {
@@ -269,7 +270,7 @@ async function reportBatch(run: Run): Promise<number> {
     },
     show: () =>
       console.result(
-        `${readChip.chip.name}: ${each.length} targets from ${raw.source}; the least faithful is number ` +
+        `${printableText(readChip.chip.name)}: ${each.length} targets from ${printableText(raw.source)}; the least faithful is number ` +
           `${worst + 1}, with fidelity ${shownMerit(each[worst]!.merit.fidelity)}`,
       ),
   });
@@ -292,9 +293,9 @@ function shownRows({ chip }: ReadChip, rows: readonly PhaseRow[], unit: AngleUni
     String(row.cell ?? ''),
     row.role,
     String(row.column ?? ''),
-    chip.portNames ? `${row.port} ${chip.portNames[row.port - 1]!}` : String(row.port),
+    chip.portNames ? `${row.port} ${printableText(chip.portNames[row.port - 1]!)}` : String(row.port),
     shownAngleNumber(row.phaseRad, unit),
-    ...(named ? [row.name] : []),
+    ...(named ? [printableText(row.name)] : []),
   ]);
   return textTable(header, cells);
 }

@@ -1,13 +1,13 @@
 import type { Command } from 'commander';
 import { InputError } from '../errors/InputError.js';
+import { printableText } from '../figure/printableText.js';
 import { matrixHash, runIdentity } from '../files/contentHash.js';
-import { writeNamedFile } from '../files/writeFile.js';
 import type { ComplexMatrix } from '../matrix/ComplexMatrix.js';
 import { figuresOfMerit } from '../merit/merit.js';
 import { MATRIX_FILE_KINDS, matrixFileKind } from '../target/MatrixFileKind.js';
 import { writeMatrix } from '../target/writeMatrix.js';
 import type { OutputOptions, RequireOption, TargetOptions } from './commandOptions.js';
-import { addOutputOptions, addRequireOption, addTargetOptions } from './commandOptions.js';
+import { addOutputOptions, addRequireOption, addTargetOptions, pathFor } from './commandOptions.js';
 import type { Console } from './console.js';
 import { createConsole } from './console.js';
 import { finish } from './finish.js';
@@ -40,8 +40,9 @@ export function addTargetCommand(parent: Command, setExitCode: (code: number) =>
     .option(
       '--to <file>',
       `write the target to this file (${MATRIX_FILE_KINDS.map((kind) => `.${kind}`).join(', ')})`,
+      pathFor('--to'),
     )
-    .option('--chip <file>', 'the chip whose ports --ports counts');
+    .option('--chip <file>', 'the chip whose ports --ports counts', pathFor('--chip'));
   addTargetOptions(command);
   addRequireOption(command);
   addOutputOptions(command)
@@ -81,19 +82,17 @@ async function runTarget(argument: string, options: TargetCommandOptions): Promi
     { target: matrixHash(matrix), against: against ? matrixHash(against.matrix) : '' },
     { transpose, conjugate, ports, nearest, unitaryWithin, require },
   );
-  if (options.to !== undefined) {
-    await writeNamedFile(options.to, writeMatrix(matrix, kind!), options.force === true);
-  }
   await finish(console, options, {
     folder: options.out ?? defaultFolder('target', { ...raw, text: raw.source }),
     files: new Map(),
+    named: options.to === undefined ? undefined : { path: options.to, content: writeMatrix(matrix, kind!) },
     report: {
       ...reportHead('target', runId),
       target: { ...loaded, modes: matrix.rows },
       ...(against && merit ? { against: { source: against.source }, merit, requirements } : {}),
     },
     show: () => {
-      console.result(`${loaded.source}: ${matrix.rows} x ${matrix.rows}, ${describe(matrix)}`);
+      console.result(`${printableText(loaded.source)}: ${matrix.rows} x ${matrix.rows}, ${describe(matrix)}`);
       console.result(`unitarity defect ${shortNumber(loaded.unitarityDefect)} (max |U^dagger U - I|)`);
       if (loaded.nearestDistance !== null) {
         console.result(
@@ -101,10 +100,10 @@ async function runTarget(argument: string, options: TargetCommandOptions): Promi
         );
       }
       showMatrix(console, matrix);
-      if (against && merit) console.result(`\n${against.source} against it:\n${meritLines(merit)}`);
+      if (against && merit)
+        console.result(`\n${printableText(against.source)} against it:\n${meritLines(merit)}`);
     },
   });
-  if (options.to !== undefined) console.message(`written to ${options.to}`);
   return tellRequirements(console, requirements);
 }
 

@@ -1,6 +1,7 @@
 import type { Command } from 'commander';
 import { externalAtOutput } from '../chip/Chip.js';
 import { InputError } from '../errors/InputError.js';
+import { printableText } from '../figure/printableText.js';
 import { matrixHash, runIdentity } from '../files/contentHash.js';
 import { unitarityDefect } from '../matrix/norms.js';
 import { figuresOfMerit } from '../merit/merit.js';
@@ -113,7 +114,9 @@ async function runVerify(path: string, options: VerifyOptions): Promise<number> 
       requirements,
     },
     show: () => {
-      console.result(`${path} on ${chip.name}, against ${target.source}\n`);
+      console.result(
+        `${printableText(path)} on ${printableText(chip.name)}, against ${printableText(target.source)}\n`,
+      );
       console.result(meritLines(merit, meritUncorrected));
     },
   });

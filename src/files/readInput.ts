@@ -17,6 +17,14 @@ const REASONS: Readonly<Record<string, string>> = {
   ENAMETOOLONG: 'the name is too long',
 };
 
+const CHECK_PATH = 'Check the path and the folder that you are in.';
+
+const REMEDIES: Readonly<Record<string, string>> = {
+  EISDIR: 'Name a file in it.',
+  EACCES: 'Ask for the right to read it, or copy it to a place of your own.',
+  EPERM: 'Ask for the right to read it, or copy it to a place of your own.',
+};
+
 /**
  * All bytes of a file.
  * @throws InputError `file/unreadable` (with the nearest name in the folder) or `file/too-large`
@@ -75,7 +83,7 @@ function unreadable(path: string, error: unknown): InputError {
   return new InputError(
     'file/unreadable',
     REASONS[code] ?? `it cannot be read (${code || String(error)})`,
-    near === undefined ? 'Check the path and the folder that you are in.' : `Did you mean ${near}?`,
+    near === undefined ? (REMEDIES[code] ?? CHECK_PATH) : `Did you mean ${near}?`,
     { source: path },
     { cause: error },
   );

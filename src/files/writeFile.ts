@@ -1,21 +1,7 @@
-import { existsSync } from 'node:fs';
-import { mkdir, open, rename, rm } from 'node:fs/promises';
-import { basename, dirname, join } from 'node:path';
+import { existsSync, statSync } from 'node:fs';
+import { mkdir, open, readFile, rm, rmdir } from 'node:fs/promises';
+import { basename, dirname, join, resolve } from 'node:path';
 import { InputError } from '../errors/InputError.js';
-
-/**
- * Writes a file whole or not at all: into a temporary file beside it, which then takes its name.
- * @throws InputError `file/unwritable`
- */
-export async function writeWhole(path: string, content: string | Uint8Array): Promise<void> {
-  const temporary = await writeTemporary(path, content);
-  try {
-    await rename(temporary, path);
-  } catch (error) {
-    await rm(temporary, { force: true });
-    throw unwritable(path, error);
-  }
-}
 
 /** Writes the content beside the path and returns the temporary file's path; nothing stays behind on failure. */
 export async function writeTemporary(path: string, content: string | Uint8Array): Promise<string> {
@@ -36,38 +22,53 @@ export async function writeTemporary(path: string, content: string | Uint8Array)
 }
 
 /**
- * Writes one file that the user named, unless something stands there.
- * @throws InputError `output/exists` without `force`, `file/unwritable`
+ * Makes sure that a file that the user named may be written: nothing stands there, or the same content does already.
+ * @throws InputError `output/exists` without `force`, `file/unwritable` for a folder of this name
  */
-export async function writeNamedFile(
-  path: string,
-  content: string | Uint8Array,
-  force: boolean,
-): Promise<void> {
-  if (!force && existsSync(path)) {
-    throw new InputError(
-      'output/exists',
-      'there is such a file already',
-      'Choose another name, or replace it with --force.',
-      {
-        source: path,
-      },
-    );
-  }
-  await makeFolder(dirname(path));
-  await writeWhole(path, content);
+export async function requireFree(path: string, content: string | Uint8Array, force: boolean): Promise<void> {
+  if (!existsSync(path)) return;
+  if (statSync(path).isDirectory()) throw unwritable(path, systemError('EISDIR'));
+  if (force || (await readFile(path)).equals(Buffer.from(content))) return;
+  throw new InputError(
+    'output/exists',
+    'there is such a file already',
+    'Choose another name, or replace it with --force.',
+    { source: path },
+  );
 }
 
 /**
- * Makes a folder and those above it. Returns the topmost one that is new, or undefined when all were there.
- * @throws InputError `file/unwritable`
+ * Makes a folder and those above it. Returns the topmost one that is new, or undefined when all were there. Step by step:
+ * the recursive call of Node never ends where folders cannot be made, as in /proc.
+ * @throws InputError `file/unwritable`; what was made by then is removed
  */
 export async function makeFolder(path: string): Promise<string | undefined> {
+  const missing: string[] = [];
+  for (let folder = resolve(path); !existsSync(folder); folder = dirname(folder)) missing.unshift(folder);
+  const made: string[] = [];
   try {
-    return await mkdir(path, { recursive: true });
+    if (missing.length === 0 && !statSync(path).isDirectory()) throw systemError('EEXIST');
+    for (const folder of missing) if (await makeOneFolder(folder)) made.push(folder);
+    return made[0];
   } catch (error) {
+    for (const folder of made.reverse()) await rmdir(folder).catch(() => undefined);
     throw unwritable(path, error);
   }
+}
+
+/** Returns false when another run has made the folder meanwhile. */
+async function makeOneFolder(path: string): Promise<boolean> {
+  try {
+    await mkdir(path);
+    return true;
+  } catch (error) {
+    if ((error as NodeJS.ErrnoException).code === 'EEXIST' && statSync(path).isDirectory()) return false;
+    throw error;
+  }
+}
+
+function systemError(code: string): NodeJS.ErrnoException {
+  return Object.assign(new Error(code), { code });
 }
 
 /** The fault of a place that cannot be written to. */
@@ -76,7 +77,7 @@ export function unwritable(path: string, error: unknown): InputError {
   return new InputError(
     'file/unwritable',
     REASONS[code] ?? `it cannot be written (${code || String(error)})`,
-    'Choose another place with --out, or make room there.',
+    'Choose another place for the results, or make room there.',
     { source: path },
     { cause: error },
   );

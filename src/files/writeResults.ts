@@ -1,8 +1,8 @@
 import { existsSync } from 'node:fs';
 import { readFile, rename, rm } from 'node:fs/promises';
-import { basename, join } from 'node:path';
+import { basename, dirname, join, resolve } from 'node:path';
 import { InputError } from '../errors/InputError.js';
-import { makeFolder, unwritable, writeTemporary } from './writeFile.js';
+import { makeFolder, requireFree, unwritable, writeTemporary } from './writeFile.js';
 
 /** Name of the file that holds the whole result of a command; it is written last. */
 export const REPORT_FILE = 'report.json';
@@ -15,8 +15,16 @@ export interface Results {
   /** The report's text; it holds `runId` and `files`. */
   readonly report: string;
   readonly runId: string;
-  /** Replace results of another run. */
+  /** Replace results of another run, and a file of the user's name. */
   readonly force: boolean;
+  /** A file that the user named, written with the results or not at all. */
+  readonly named?: NamedFile;
+}
+
+/** A file that the user named with an option of his own. */
+export interface NamedFile {
+  readonly path: string;
+  readonly content: string | Uint8Array;
 }
 
 /**
@@ -25,33 +33,69 @@ export interface Results {
  * folder is left behind.
  * @throws InputError `output/exists` when other results are in the way, `file/unwritable`
  */
-export async function writeResults({ folder, files, report, runId, force }: Results): Promise<void> {
-  const contents = [...files, [REPORT_FILE, report] as const];
-  const earlier = await readEarlierReport(folder);
-  const inTheWay = contents.map(([name]) => name).filter((name) => existsSync(join(folder, name)));
-  if (inTheWay.length > 0 && earlier?.runId !== runId && !force) {
-    throw new InputError(
-      'output/exists',
-      `the results of another run are there (${inTheWay.join(', ')})`,
-      'Choose another folder with --out, or replace them with --force.',
-      { source: folder },
-    );
+export async function writeResults(results: Results): Promise<void> {
+  const { folder, force } = results;
+  const contents: [path: string, content: string | Uint8Array][] = [...results.files].map(
+    ([name, content]) => [join(folder, name), content],
+  );
+  const { named } = results;
+  if (named !== undefined) {
+    refuseReportName(named, folder);
+    await requireFree(named.path, named.content, force);
+    // It may be one of the results under its own name: once is enough.
+    if (!contents.some(([path]) => resolve(path) === resolve(named.path))) {
+      contents.unshift([named.path, named.content]);
+    }
   }
-  const madeFolder = await makeFolder(folder);
+  contents.push([join(folder, REPORT_FILE), results.report]);
+  await requireNoOtherRun(results);
+  const madeFolders: (string | undefined)[] = [];
   const temporaries: string[] = [];
   try {
-    for (const [name, content] of contents)
-      temporaries.push(await writeTemporary(join(folder, name), content));
-    if (earlier !== undefined && earlier.runId !== runId) {
+    for (const path of [folder, ...(named ? [dirname(named.path)] : [])])
+      madeFolders.push(await makeFolder(path));
+    for (const [path, content] of contents) temporaries.push(await writeTemporary(path, content));
+    // Once more, now that only renaming is left: another run may have written there meanwhile.
+    const earlier = await requireNoOtherRun(results);
+    if (earlier !== undefined && earlier.runId !== results.runId) {
       // The old report goes first and the new one comes last: at no moment does a report stand beside another run's files.
       for (const name of [REPORT_FILE, ...earlier.files]) await rm(join(folder, name), { force: true });
     }
-    for (const [k, [name]] of contents.entries()) await rename(temporaries[k]!, join(folder, name));
+    for (const [k, [path]] of contents.entries()) await rename(temporaries[k]!, path);
   } catch (error) {
     for (const temporary of temporaries) await rm(temporary, { force: true });
-    if (madeFolder !== undefined) await rm(madeFolder, { recursive: true, force: true });
+    for (const made of madeFolders) if (made !== undefined) await rm(made, { recursive: true, force: true });
     throw error instanceof InputError ? error : unwritable(folder, error);
   }
+}
+
+/** What an earlier run left in the folder. @throws InputError `output/exists` when that is another run's, without `force` */
+async function requireNoOtherRun({
+  folder,
+  files,
+  runId,
+  force,
+}: Results): Promise<EarlierReport | undefined> {
+  const earlier = await readEarlierReport(folder);
+  const inTheWay = [...files.keys(), REPORT_FILE].filter((name) => existsSync(join(folder, name)));
+  if (inTheWay.length === 0 || earlier?.runId === runId || force) return earlier;
+  const shown = inTheWay.length <= 6 ? inTheWay.join(', ') : `${inTheWay.slice(0, 5).join(', ')}, ...`;
+  throw new InputError(
+    'output/exists',
+    `the results of another run are there (${shown})`,
+    'Choose another folder with --out, or replace them with --force.',
+    { source: folder },
+  );
+}
+
+function refuseReportName({ path }: NamedFile, folder: string): void {
+  if (resolve(path) !== resolve(folder, REPORT_FILE)) return;
+  throw new InputError(
+    'output/exists',
+    'this is the name of the report of this run',
+    'Choose another name.',
+    { source: path },
+  );
 }
 
 interface EarlierReport {

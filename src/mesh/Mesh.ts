@@ -1,9 +1,11 @@
 /** Where the cells stand: `rectangular` as Clements et al. 2016, `triangular` as Reck et al. 1994. */
 export const LAYOUTS = ['rectangular', 'triangular'] as const;
+/** A layout of cells. */
 export type Layout = (typeof LAYOUTS)[number];
 
 /** `ports`: port p at the place of port N+1-p. `columns`: the columns in reverse order. */
 export const MIRRORS = ['none', 'ports', 'columns', 'both'] as const;
+/** A way in which a mesh is mirrored. */
 export type Mirror = (typeof MIRRORS)[number];
 
 /**

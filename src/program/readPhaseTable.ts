@@ -19,6 +19,7 @@ export interface TableOrigin {
   readonly chip: ReadChip;
 }
 
+/** A phase table as it was read. */
 export interface ReadTable {
   readonly rows: readonly PhaseRow[];
   readonly origin: TableOrigin | null;

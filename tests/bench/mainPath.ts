@@ -26,7 +26,7 @@ function shown(milliseconds: number): string {
 
 const print = (line: string): void => void process.stdout.write(`${line}\n`);
 print(
-  `${cpus()[0]?.model ?? 'unknown processor'}, Node ${process.version}; medians in ms; one core, plain TypeScript`,
+  `${cpus()[0]?.model ?? 'unknown processor'}, Node ${process.version}; medians in ms; one core; nulling by kernels, the rest in TypeScript`,
 );
 print('yardstick: one product of two complex N x N matrices, in plain TypeScript, in the same run');
 print('   N  layout        decompose   program  simulate       sum   product  sum / product');

@@ -3,7 +3,7 @@ import { mkdtempSync, readdirSync, rmSync } from 'node:fs';
 import { mkdir, readFile, writeFile } from 'node:fs/promises';
 import { tmpdir } from 'node:os';
 import { dirname, join } from 'node:path';
-import { fileURLToPath } from 'node:url';
+import { fileURLToPath, pathToFileURL } from 'node:url';
 import { afterAll } from 'vitest';
 
 /** The built command; `npm run build` comes before these tests. */
@@ -48,24 +48,54 @@ export function freshFolder(): string {
 /** Runs the built command and waits for its end. */
 export async function runCommand(args: readonly string[], options: RunOptions = {}): Promise<CommandRun> {
   const folder = options.folder ?? freshFolder();
-  for (const [path, content] of Object.entries(options.files ?? {})) {
-    await mkdir(dirname(join(folder, path)), { recursive: true });
-    await writeFile(join(folder, path), content);
-  }
+  await writeFiles(folder, options.files);
   const { code, stdout, stderr } = await runProgram(
     process.execPath,
     [...(options.nodeArguments ?? []), COMMAND, ...args],
     folder,
     options,
   );
-  return {
-    code,
-    stdout,
-    stderr,
-    folder,
-    listing: listFolder(folder),
-    read: (path) => readFile(join(folder, path), 'utf8'),
-  };
+  return { code, stdout, stderr, ...inFolder(folder) };
+}
+
+/**
+ * Runs the built program once for each call, all in one process, each in a fresh folder of its own: for tables of faults, where
+ * starting it anew would take most of the time. Exit codes are those that the program returns; standard input is not served.
+ */
+export async function runMany(
+  calls: readonly { readonly args: readonly string[]; readonly files: RunOptions['files'] }[],
+): Promise<CommandRun[]> {
+  const folders = await Promise.all(
+    calls.map(async ({ files }) => {
+      const folder = freshFolder();
+      await writeFiles(folder, files);
+      return folder;
+    }),
+  );
+  const input = JSON.stringify(calls.map(({ args }, k) => ({ args, folder: folders[k] })));
+  const script = fileURLToPath(new URL('manyRuns.ts', import.meta.url));
+  const commandLine = pathToFileURL(join(dirname(COMMAND), 'commandLine.js')).href;
+  // Run from here, where node finds tsx.
+  const { stdout, stderr } = await runProgram(
+    process.execPath,
+    ['--import', 'tsx', script, commandLine],
+    dirname(script),
+    { input },
+  );
+  if (stdout === '') throw new Error(`the runs came to no end: ${stderr}`);
+  const results = JSON.parse(stdout) as Pick<CommandRun, 'code' | 'stdout' | 'stderr'>[];
+  return results.map((result, k) => ({ ...result, ...inFolder(folders[k]!) }));
+}
+
+function inFolder(folder: string): Pick<CommandRun, 'folder' | 'listing' | 'read'> {
+  return { folder, listing: listFolder(folder), read: (path) => readFile(join(folder, path), 'utf8') };
+}
+
+async function writeFiles(folder: string, files: RunOptions['files'] = {}): Promise<void> {
+  for (const [path, content] of Object.entries(files)) {
+    await mkdir(dirname(join(folder, path)), { recursive: true });
+    await writeFile(join(folder, path), content);
+  }
 }
 
 /** Runs any program in a folder; signals count as the code null. */
