@@ -9,7 +9,7 @@ export default tseslint.config(
       // noUncheckedIndexedAccess makes every typed-array read "possibly undefined"; "!" is how a loop with known bounds says so.
       '@typescript-eslint/no-non-null-assertion': 'off',
       '@typescript-eslint/consistent-type-imports': 'error',
-      '@typescript-eslint/no-unused-vars': ['error', { argsIgnorePattern: '^_' }],
+      '@typescript-eslint/no-unused-vars': ['error', { argsIgnorePattern: '^_', ignoreRestSiblings: true }],
       'eqeqeq': 'error',
       'no-console': 'error',
       'prefer-const': 'error',

@@ -9,7 +9,9 @@ import { withoutControls } from './console.js';
 import { addFigureCommand } from './figure.js';
 import { addPhasesCommand } from './phases.js';
 import { addTargetCommand } from './target.js';
+import { addToleranceCommand } from './tolerance.js';
 import { addVerifyCommand } from './verify.js';
+import { addYieldCommand } from './yield.js';
 
 /** Exit codes of the program. */
 export const EXIT = { done: 0, notMet: 1, input: 2, internal: 3 } as const;
@@ -49,10 +51,12 @@ Examples:
   phasewright phases target.npy --chip my.chip.json phases of your own chip
   phasewright help phases                           all options of a command
 
-Exit codes: 0 done, 1 a --require was not met, 2 input or usage at fault, 3 internal fault.`,
+Exit codes: 0 done, 1 a --require was not met, 2 input or usage at fault, 3 internal fault, 130 interrupted.`,
     );
   addPhasesCommand(program, setExitCode);
   addVerifyCommand(program, setExitCode);
+  addYieldCommand(program, setExitCode);
+  addToleranceCommand(program, setExitCode);
   addTargetCommand(program, setExitCode);
   addChipCommand(program);
   addFigureCommand(program);

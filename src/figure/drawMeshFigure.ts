@@ -20,12 +20,13 @@ import type { SvgPart } from './SvgPage.js';
 import { rounded, svgText } from './SvgPage.js';
 import { guardedTextWidth, wrapText } from './textWidth.js';
 
-const FONTS = "Helvetica, Arial, 'Liberation Sans', 'DejaVu Sans', sans-serif";
-const TITLE_TEXT = 8 * POINT;
-const CAPTION_TEXT = 7 * POINT;
+export const FONTS = "Helvetica, Arial, 'Liberation Sans', 'DejaVu Sans', sans-serif";
+export const TITLE_TEXT = 8 * POINT;
+export const CAPTION_TEXT = 7 * POINT;
 /** The widest number of phases in [0, 2 pi); columns do not depend on the settings as long as phases are wrapped. */
 const USUAL_NUMBER = '0.000π';
 
+/** What may be chosen of a mesh figure. */
 export interface MeshFigureOptions {
   readonly title?: string;
   /** Lines below the figure, such as target, layout and fidelity; each is wrapped to the width. */
@@ -140,7 +141,7 @@ function hasRoomForCellNumbers(chip: Chip, layout: MeshFigureLayout): boolean {
   return tall && guardedTextWidth(String(chip.mesh.cells), SMALL_TEXT) + 0.4 <= between - bend * 0.6;
 }
 
-function drawLines(
+export function drawLines(
   page: SvgPart,
   id: string,
   lines: readonly string[],

@@ -115,7 +115,7 @@ export function meshFigureLayout(chip: Chip, wishes: LayoutWishes): MeshFigureLa
   return layoutOfWidth(chip, wishes, numbers, width);
 }
 
-function askedWidth(width: FigureWidth): number {
+export function askedWidth(width: FigureWidth): number {
   if (width === 'one-column') return ONE_COLUMN;
   if (width === 'two-column') return TWO_COLUMN;
   if (!(width >= NARROWEST && width <= WIDEST)) {

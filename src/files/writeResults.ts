@@ -70,14 +70,18 @@ export async function writeResults(results: Results): Promise<void> {
 }
 
 /** What an earlier run left in the folder. @throws InputError `output/exists` when that is another run's, without `force` */
-async function requireNoOtherRun({
+export async function requireNoOtherRun({
   folder,
   files,
   runId,
   force,
-}: Results): Promise<EarlierReport | undefined> {
+}: Pick<Results, 'folder' | 'runId' | 'force'> & {
+  readonly files: Iterable<readonly [name: string, content: unknown]>;
+}): Promise<EarlierReport | undefined> {
   const earlier = await readEarlierReport(folder);
-  const inTheWay = [...files.keys(), REPORT_FILE].filter((name) => existsSync(join(folder, name)));
+  const inTheWay = [...Array.from(files, ([name]) => name), REPORT_FILE].filter((name) =>
+    existsSync(join(folder, name)),
+  );
   if (inTheWay.length === 0 || earlier?.runId === runId || force) return earlier;
   const shown = inTheWay.length <= 6 ? inTheWay.join(', ') : `${inTheWay.slice(0, 5).join(', ')}, ...`;
   throw new InputError(

@@ -1,0 +1,31 @@
+import type { Console } from './console.js';
+
+/** A line on a terminal that says how far a run is. */
+export interface Progress {
+  advance(by: number): void;
+  end(): void;
+}
+
+const BETWEEN_LINES = 200;
+
+/** Progress of `total` trials with their rate and the time left; silent where standard error is no terminal or --quiet was given. */
+export function createProgress(console: Console | undefined, total: number): Progress {
+  if (console === undefined || !console.showsProgress)
+    return { advance: () => undefined, end: () => undefined };
+  const started = performance.now();
+  let done = 0;
+  let shown = -Infinity;
+  return {
+    advance: (by) => {
+      done += by;
+      const now = performance.now();
+      if (now - shown < BETWEEN_LINES) return;
+      shown = now;
+      const rate = (1000 * done) / (now - started);
+      const left = Math.ceil((total - done) / rate);
+      const percent = Math.floor((100 * done) / total);
+      process.stderr.write(`\r\u001b[K${percent} %  ${Math.round(rate)} trials/s  ${left} s left`);
+    },
+    end: () => process.stderr.write('\r\u001b[K'),
+  };
+}

@@ -1,0 +1,97 @@
+import { externalAtOutput } from '../chip/Chip.js';
+import type { ChipFile } from '../chip/chipSchema.js';
+import { contentHash, matrixHash, runIdentity } from '../files/contentHash.js';
+import { packageVersion } from '../files/version.js';
+import { figuresOfMerit } from '../merit/merit.js';
+import { formatPhaseJson } from '../program/formatPhaseJson.js';
+import { formatPhaseCsv, phaseRows } from '../program/PhaseTable.js';
+import { simulate } from '../simulate/simulate.js';
+import type { SampledChip } from '../tolerance/createTrialEngine.js';
+import { createTrialEngine } from '../tolerance/createTrialEngine.js';
+import type { TrialPlan } from '../tolerance/TrialPlan.js';
+import { decibelFromPowerRatio } from '../units/decibel.js';
+import { createConsole } from './console.js';
+import { finish } from './finish.js';
+import { chipHash } from './loadChip.js';
+import { chipBlock, judge, meritLines, reportHead } from './reportParts.js';
+import { thresholdsOf } from './trialOptions.js';
+import type { Scenario } from './trialScenario.js';
+import type { YieldOptions } from './yield.js';
+import { scenarioBlocks, settledOptions, yieldFolder } from './yield.js';
+
+/**
+ * Writes the chip of one trial (number from 1) as a chip file of its own, its phases as they really are (errors and resolution included), and
+ * what it is worth: `verify` gives the same.
+ */
+export async function replayTrial(
+  scenario: Scenario,
+  plan: TrialPlan,
+  number: number,
+  options: YieldOptions,
+): Promise<number> {
+  const console = createConsole(options);
+  const sampled = createTrialEngine(plan).sample(number - 1);
+  const file = chipFileOf(scenario.readChip.file, sampled, plan, number);
+  const { chipFromDocument } = await import('../chip/readChip.js');
+  const readChip = chipFromDocument(file);
+  const { chip } = readChip;
+  const { target, settings } = sampled;
+  const free = !chip.portShifters && externalAtOutput(chip.style) ? 'input' : 'output';
+  const merit = figuresOfMerit(target, simulate(chip, settings), free);
+  const thresholds = judge(thresholdsOf(options), merit);
+  const rows = phaseRows(chip, settings);
+  const csv = formatPhaseCsv(rows);
+  const json = formatPhaseJson(rows, {
+    version: packageVersion(),
+    target: { source: scenario.source, matrix: target },
+    chip: file,
+    options: { trial: number, seed: plan.seed, retune: plan.retune },
+    hashes: { target: matrixHash(target), chip: chipHash(readChip), phases: contentHash(csv) },
+  });
+  const identity = { ...settledOptions(options), errors: plan.errors, trial: number };
+  await finish(console, options, {
+    folder: options.out ?? `${yieldFolder(scenario.source, scenario)}-trial-${number}`,
+    files: new Map([
+      [`trial-${number}.chip.json`, `${JSON.stringify(file, null, 2)}\n`],
+      ['phases.csv', csv],
+      ['phases.json', json],
+    ]),
+    report: {
+      ...reportHead('yield', runIdentity('yield', scenario.inputs, identity)),
+      ...scenarioBlocks(scenario),
+      chip: chipBlock(chip),
+      errors: plan.errors,
+      retune: plan.retune,
+      seed: plan.seed,
+      trial: number,
+      merit,
+      thresholds,
+    },
+    show: () => {
+      console.result(`trial ${number} of seed ${plan.seed}, retuning: ${plan.retune}\n`);
+      console.result(meritLines(merit));
+      console.result(`\n${thresholds.every(({ met }) => met) ? 'keeps' : 'does not keep'} the thresholds`);
+    },
+  });
+  return 0;
+}
+
+/** The chip file of a sampled chip: every cell measured, and no process any more. */
+function chipFileOf(base: ChipFile, { chip }: SampledChip, plan: TrialPlan, number: number): ChipFile {
+  const { process, ...rest } = base;
+  const { couplingRatios, cellLoss, mesh } = chip;
+  const hasLosses = plan.errors.lossSigmaDb > 0 || plan.chip.cellLoss !== null;
+  return {
+    ...rest,
+    name: `${base.name ?? `${mesh.layout} ${mesh.modes}`}, trial ${number}`.slice(0, 200),
+    measuredCells: Array.from({ length: mesh.cells }, (_, cell) => {
+      // What counts is the loss of both splitters together, and that is all that is kept of it.
+      const eachDb = hasLosses ? Math.max(0, -decibelFromPowerRatio(cellLoss![cell]! ** 2) / 2) : 0;
+      return {
+        cell: cell + 1,
+        couplingRatio: [couplingRatios[2 * cell]!, couplingRatios[2 * cell + 1]!] as [number, number],
+        ...(hasLosses ? { lossDb: [eachDb, eachDb] as [number, number] } : {}),
+      };
+    }),
+  };
+}

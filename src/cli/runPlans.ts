@@ -1,0 +1,96 @@
+import type { ChunkStore } from '../files/chunkStore.js';
+import { runChunks } from '../files/workerPool.js';
+import { chunkTrials } from '../tolerance/chunking.js';
+import type { TrialPlan } from '../tolerance/TrialPlan.js';
+import type { Console } from './console.js';
+import { createProgress } from './progress.js';
+import type { TrialChunk, TrialJob } from './trialWorker.js';
+
+/** What the trials of one plan gave, as far as they went. */
+export interface PlanResults {
+  /** One row per trial in trial order. */
+  readonly rows: Float64Array;
+  readonly trials: number;
+  readonly clamped: number;
+}
+
+export interface PlanRun {
+  readonly plans: readonly TrialPlan[];
+  /** Trials of each plan. */
+  readonly trials: number;
+  readonly workers: number;
+  readonly signal?: AbortSignal;
+  /** Where finished chunks are kept, if they are. */
+  readonly store?: ChunkStore;
+  /** Judged after each chunk, in the order of the trials; true ends the run. */
+  readonly enough?: (results: PlanResults) => boolean;
+  readonly console?: Console;
+}
+
+export interface PlanOutcome {
+  readonly results: readonly PlanResults[];
+  readonly interrupted: boolean;
+  /** Trials that were run now, not taken from the store, by the second. */
+  readonly trialsPerSecond: number;
+}
+
+/**
+ * Runs the trials of plans on worker threads. Chunks are of a size that depends on the plan alone and are taken in order, so the results are the same bytes
+ * for any number of workers and after a resume.
+ */
+export async function runPlans(run: PlanRun): Promise<PlanOutcome> {
+  const { plans, trials, store } = run;
+  const jobs = jobsOf(plans, trials);
+  const columns = plans[0]!.figures.length;
+  const rows = plans.map(() => new Float64Array(trials * columns));
+  const done = plans.map(() => 0);
+  const clamped = plans.map(() => 0);
+  const resultsOf = (plan: number): PlanResults => ({
+    rows: rows[plan]!.subarray(0, done[plan]! * columns),
+    trials: done[plan]!,
+    clamped: clamped[plan]!,
+  });
+  const progress = createProgress(run.console, trials * plans.length);
+  const started = performance.now();
+  let fresh = 0;
+  const outcome = await runChunks<TrialJob, TrialChunk>({
+    workers: run.workers,
+    entry: new URL('./trialWorker.js', import.meta.url),
+    setup: plans,
+    jobs,
+    nameOf: ({ first, count }) => `trials ${first + 1} to ${first + count}`,
+    ...(run.signal === undefined ? {} : { signal: run.signal }),
+    known: ({ number }) =>
+      store?.has(number) === true
+        ? store.read(number).then((chunk) => ({ rows: chunk.rows, clamped: chunk.counters[0]! }))
+        : undefined,
+    onResult: async (chunk, { plan, number, first, count }) => {
+      rows[plan]!.set(chunk.rows, first * columns);
+      done[plan] = first + count;
+      clamped[plan]! += chunk.clamped;
+      if (store?.has(number) !== true) {
+        fresh += count;
+        await store?.save({ number, firstTrial: first + 1, rows: chunk.rows, counters: [chunk.clamped] });
+      }
+      progress.advance(count);
+      return run.enough?.(resultsOf(plan)) === true ? 'stop' : undefined;
+    },
+  }).finally(() => progress.end());
+  const seconds = (performance.now() - started) / 1000;
+  return {
+    results: plans.map((_, plan) => resultsOf(plan)),
+    interrupted: outcome.ended === 'aborted',
+    trialsPerSecond: Math.round(fresh / seconds),
+  };
+}
+
+function jobsOf(plans: readonly TrialPlan[], trials: number): TrialJob[] {
+  const jobs: TrialJob[] = [];
+  plans.forEach((plan, index) => {
+    const size = chunkTrials(plan);
+    for (let first = 0; first < trials; first += size) {
+      jobs.push({ plan: index, number: jobs.length + 1, first, count: Math.min(size, trials - first) });
+    }
+  });
+  return jobs;
+}

@@ -1,0 +1,188 @@
+import { Option } from 'commander';
+import type { Command } from 'commander';
+import type { ProcessErrors } from '../chip/Chip.js';
+import { InputError } from '../errors/InputError.js';
+import { nearestName } from '../errors/nearestName.js';
+import type { Merit } from '../merit/merit.js';
+import { isUpperLimit, MERIT_KEYS } from '../merit/merit.js';
+import type { ErrorSource } from '../tolerance/errorSources.js';
+import { errorSource, hasErrors, requireConsistent, withSource } from '../tolerance/errorSources.js';
+import type { Threshold } from '../tolerance/thresholds.js';
+import type { Retuning } from '../tolerance/TrialPlan.js';
+import { RETUNINGS } from '../tolerance/TrialPlan.js';
+
+/** Options of the commands that sample chips. */
+export interface TrialOptions {
+  readonly trials: number;
+  readonly threshold: readonly Threshold[];
+  readonly confidence: number;
+  readonly retune: Retuning;
+  readonly sigma?: number;
+  readonly error?: readonly (readonly [ErrorSource, number])[];
+  readonly seed: number;
+  readonly workers?: number;
+}
+
+/** The seed when none is given: any fixed number would do. */
+const USUAL_SEED = 2026;
+const MOST_TRIALS = 100_000_000;
+
+export function addTrialOptions(command: Command, usualTrials: number): Command {
+  return command
+    .option('--trials <number>', 'chips to sample', wholeNumberFor('--trials', 1, MOST_TRIALS), usualTrials)
+    .option(
+      '--threshold <figure=limit>',
+      'what makes a chip good; several must all hold (default: fidelity=0.99)',
+      parseThreshold,
+    )
+    .option('--confidence <share>', 'confidence of all intervals', parseShare('--confidence'), 0.95)
+    .addOption(
+      new Option(
+        '--retune <how>',
+        'none: one program for all chips; cell: each corrected with its own ratios',
+      )
+        .choices(RETUNINGS)
+        .default('none'),
+    )
+    .option('--sigma <spread>', 'independent normal error of every coupling ratio', realNumber('--sigma'))
+    .option(
+      '--error <source=value>',
+      "set an error source of the chip file's process block, such as bits=8; may be repeated",
+      parseError,
+    )
+    .option(
+      '--seed <number>',
+      'seed of the random numbers',
+      wholeNumberFor('--seed', 0, Number.MAX_SAFE_INTEGER),
+      USUAL_SEED,
+    )
+    .option(
+      '--workers <number>',
+      'worker threads (default: one per core); results do not depend on it',
+      realNumber('--workers'),
+    );
+}
+
+/** The thresholds in force. */
+export function thresholdsOf({
+  threshold,
+}: {
+  readonly threshold?: readonly Threshold[];
+}): readonly Threshold[] {
+  return threshold ?? [{ key: 'fidelity', limit: 0.99 }];
+}
+
+/**
+ * The process of the chip file with the sources of the command line.
+ * @param swept a source that will get its values later, so that it need not be there yet
+ * @throws InputError `process/none` when nothing makes chips differ
+ */
+export function processOf(
+  inFile: ProcessErrors,
+  { sigma, error = [] }: Pick<TrialOptions, 'sigma' | 'error'>,
+  swept?: string,
+): ProcessErrors {
+  let errors = inFile;
+  if (sigma !== undefined) errors = withSource(errors, 'sigma', sigma);
+  for (const [source, value] of error) errors = withSource(errors, source, value);
+  if (swept === undefined) {
+    if (!hasErrors(errors)) {
+      throw new InputError(
+        'process/none',
+        'nothing makes the chips differ: there is no error source',
+        'Give --sigma 0.02, --error SOURCE=VALUE, or a process block in the chip file.',
+      );
+    }
+    requireConsistent(errors);
+  }
+  return errors;
+}
+
+function parseError(
+  text: string,
+  earlier: readonly (readonly [ErrorSource, number])[] = [],
+): readonly (readonly [ErrorSource, number])[] {
+  const [name, value] = assignment('--error', text, '--error bits=8');
+  return [...earlier, [errorSource(name), value]];
+}
+
+function parseThreshold(text: string, earlier: readonly Threshold[] = []): readonly Threshold[] {
+  const [name, limit] = assignment('--threshold', text, '--threshold fidelity=0.99');
+  const key = MERIT_KEYS.find((known) => known === name);
+  if (key === undefined) {
+    const near = nearestName(name, MERIT_KEYS);
+    throw new InputError(
+      'usage/threshold',
+      `--threshold ${text}: there is no figure of merit ${name}`,
+      near === undefined ? `Figures of merit are ${MERIT_KEYS.join(', ')}.` : `Did you mean ${near}?`,
+    );
+  }
+  requirePossible(key, limit, text);
+  return [...earlier, { key, limit }];
+}
+
+/** A threshold that no chip, or every chip, keeps is a slip of the pen. */
+function requirePossible(key: keyof Merit, limit: number, text: string): void {
+  const impossible = key === 'transmissionDb' ? limit > 0 : isUpperLimit(key) ? limit < 0 : limit > 1;
+  if (!impossible) return;
+  throw new InputError(
+    'usage/threshold',
+    `--threshold ${text}: no chip can keep that`,
+    isUpperLimit(key)
+      ? `${key} is an error, and 0 at best.`
+      : `${key} is ${key === 'transmissionDb' ? 0 : 1} at best.`,
+  );
+}
+
+/** `name=number`. @throws InputError `usage/assignment` */
+export function assignment(option: string, text: string, example: string): [name: string, value: number] {
+  const [, name, valueText] = /^\s*(\w+)\s*=\s*(\S+)\s*$/.exec(text) ?? [];
+  const value = Number(valueText);
+  if (name === undefined || !Number.isFinite(value)) {
+    throw new InputError(
+      'usage/assignment',
+      `${option} ${text}: this is not a name and a number`,
+      `Write for example ${example}`,
+    );
+  }
+  return [name, value];
+}
+
+/** A whole number within limits, for commander. @throws InputError `usage/number` */
+export function wholeNumberFor(option: string, low: number, high: number): (text: string) => number {
+  return (text) => {
+    const value = Number(text);
+    if (text.trim() !== '' && Number.isSafeInteger(value) && value >= low && value <= high) return value;
+    throw new InputError(
+      'usage/number',
+      `${option} ${text}: this number cannot be`,
+      `Give a whole number from ${low} to ${high}.`,
+    );
+  };
+}
+
+/** A share between 0 and 1, both excluded, for commander. @throws InputError `usage/number` */
+export function parseShare(option: string): (text: string) => number {
+  return (text) => {
+    const value = Number(text);
+    if (text.trim() !== '' && value > 0 && value < 1) return value;
+    throw new InputError(
+      'usage/number',
+      `${option} ${text}: this is not a share between 0 and 1`,
+      `Write for example ${option} 0.95`,
+    );
+  };
+}
+
+/** Any finite number, for commander; its limits are checked where it is used. @throws InputError `usage/number` */
+export function realNumber(option: string): (text: string) => number {
+  return (text) => {
+    const value = Number(text);
+    if (text.trim() !== '' && Number.isFinite(value)) return value;
+    throw new InputError(
+      'usage/number',
+      `${option} ${text}: this is not a number`,
+      `Write for example ${option} 0.02`,
+    );
+  };
+}

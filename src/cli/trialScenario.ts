@@ -1,0 +1,153 @@
+import type { ProcessErrors } from '../chip/Chip.js';
+import type { ChipFile } from '../chip/chipSchema.js';
+import type { ReadChip } from '../chip/readChip.js';
+import { InputError } from '../errors/InputError.js';
+import type { Merit } from '../merit/merit.js';
+import { simulate } from '../simulate/simulate.js';
+import { programChip } from '../program/programChip.js';
+import { figuresOfMerit } from '../merit/merit.js';
+import type { ErrorSource } from '../tolerance/errorSources.js';
+import { ERROR_SOURCES, requireConsistent, withSource } from '../tolerance/errorSources.js';
+import type { Retuning, TrialPlan } from '../tolerance/TrialPlan.js';
+import type { ChipOptions, TargetOptions } from './commandOptions.js';
+import { chipHash, idealChipFor, loadNamedChip } from './loadChip.js';
+import type { LoadedTarget } from './loadTarget.js';
+import { prepareLoaded, rawTargetHash, readTarget, theOnlyMatrix } from './loadTarget.js';
+
+/** Quantities of the design that may be swept, beside the error sources. */
+export const DESIGN_QUANTITIES = ['modes', 'couplingRatio', 'lossDb'] as const;
+export type DesignQuantity = (typeof DESIGN_QUANTITIES)[number];
+/** What a sweep runs over. */
+export type Quantity = ErrorSource | DesignQuantity;
+export const QUANTITIES: readonly Quantity[] = [...ERROR_SOURCES, ...DESIGN_QUANTITIES];
+
+/** A chip and a target, and how both change with a quantity. */
+export interface Scenario {
+  /** As the user named the target. */
+  readonly source: string;
+  readonly path?: string;
+  readonly readChip: ReadChip;
+  /** The target, or null for a new Haar-random one in each trial. */
+  readonly target: LoadedTarget | null;
+  /** Content hashes for the run's identity. */
+  readonly inputs: Readonly<Record<string, string>>;
+  /** The same with the design quantity at another value. */
+  at(quantity: DesignQuantity, value: number): Promise<Scenario>;
+}
+
+/** `haar(8)`: a target for each trial. `haar(8, 1)` has a seed and is one matrix. */
+const HAAR_EACH_TRIAL = /^\s*haar\s*\(\s*(\d+|N)\s*\)\s*$/;
+/** The number of ports, where a formula leaves it open. */
+const OPEN_MODES = /\bN\b/g;
+
+/**
+ * Reads target and chip of a command that samples chips. A formula may leave the number of ports open as `N`, to be swept, or taken from the chip.
+ * @param modes number of ports for a formula with `N`
+ */
+export async function loadScenario(
+  argument: string,
+  options: ChipOptions & TargetOptions,
+  modes?: number,
+  changed?: ReadChip,
+): Promise<Scenario> {
+  const namedChip = changed ?? (await loadNamedChip(options));
+  const ports = modes ?? namedChip?.chip.mesh.modes;
+  const each = HAAR_EACH_TRIAL.exec(argument)?.[1];
+  const formula = ports === undefined ? argument : argument.replaceAll(OPEN_MODES, String(ports));
+  const raw = each === undefined ? await readTarget(formula) : null;
+  const own = each === undefined ? theOnlyMatrix(raw!).rows : each === 'N' ? ports : Number(each);
+  if (own === undefined) throw openModes();
+  const readChip = namedChip ?? (await idealChipFor(requirePorts(own), options));
+  const chipModes = readChip.chip.mesh.modes;
+  if (raw === null && own !== chipModes) {
+    throw new InputError(
+      'target/size',
+      `the targets have ${own} ports, the chip ${chipModes}`,
+      'Give both the same number of ports.',
+      {
+        source: argument,
+      },
+    );
+  }
+  const target = raw && prepareLoaded(raw, theOnlyMatrix(raw), options, namedChip ? chipModes : undefined);
+  return {
+    source: argument,
+    ...(raw?.path === undefined ? {} : { path: raw.path }),
+    readChip,
+    target,
+    inputs: { target: raw ? rawTargetHash(raw) : argument, chip: chipHash(readChip) },
+    at: async (quantity, value) => {
+      if (quantity !== 'modes') {
+        return loadScenario(argument, options, modes, await changedChip(readChip.file, quantity, value));
+      }
+      if (raw !== null && !OPEN_MODES.test(argument)) throw openModes();
+      const file = namedChip && (await changedChip(namedChip.file, 'modes', value));
+      return loadScenario(each === undefined ? argument : 'haar(N)', options, value, file);
+    },
+  };
+}
+
+/** The plan of trials of a scenario. */
+export function planOf(
+  { readChip, target }: Scenario,
+  errors: ProcessErrors,
+  settled: { readonly retune: Retuning; readonly seed: number; readonly figures: readonly (keyof Merit)[] },
+): TrialPlan {
+  return { chip: readChip.chip, target: target === null ? 'haar' : target.matrix, errors, ...settled };
+}
+
+/** The plan with a quantity at a value: an error source, or a design quantity. */
+export async function planAt(
+  scenario: Scenario,
+  errors: ProcessErrors,
+  settled: Parameters<typeof planOf>[2],
+  quantity: Quantity,
+  value: number,
+): Promise<TrialPlan> {
+  const source = ERROR_SOURCES.find((known) => known === quantity);
+  if (source === undefined)
+    return planOf(await scenario.at(quantity as DesignQuantity, value), errors, settled);
+  const changed = withSource(errors, source, value);
+  requireConsistent(changed);
+  return planOf(scenario, changed, settled);
+}
+
+/** 1 - F of the chip as it stands, without errors; 0 for Haar-random targets on a chip without flaws is taken as it is. */
+export function infidelityWithoutErrors({ readChip: { chip }, target }: Scenario): number {
+  if (target === null) return 0;
+  const { settings } = programChip(chip, target.matrix).program;
+  return Math.max(0, 1 - figuresOfMerit(target.matrix, simulate(chip, settings)).fidelity);
+}
+
+async function changedChip(file: ChipFile, quantity: DesignQuantity, value: number): Promise<ReadChip> {
+  const { chipFromDocument } = await import('../chip/readChip.js');
+  if (quantity === 'couplingRatio') {
+    const { measuredCells, ...rest } = file;
+    return chipFromDocument({ ...rest, couplingRatio: value });
+  }
+  if (quantity === 'lossDb')
+    return chipFromDocument({ ...file, lossDb: { ...file.lossDb, splitter: value } });
+  for (const key of ['measuredCells', 'shifterOverrides', 'portNames'] as const) {
+    if (file[key] !== undefined) {
+      throw new InputError(
+        'usage/sweep',
+        `the chip has ${key}, which belong to ${file.modes} ports`,
+        'Sweep modes with --layout, or with a chip file that lists nothing port by port or cell by cell.',
+      );
+    }
+  }
+  return chipFromDocument({ ...file, modes: value });
+}
+
+function requirePorts(modes: number): number {
+  if (modes >= 1 && modes <= 1024) return modes;
+  throw new InputError('target/size', `${modes} ports`, 'Give from 1 to 1024 ports.');
+}
+
+function openModes(): InputError {
+  return new InputError(
+    'usage/sweep',
+    'the number of ports is not open, or not known',
+    'Write N for it, such as haar(N) or dft(N), and sweep modes, or name a chip.',
+  );
+}

@@ -1,0 +1,365 @@
+import type { Command } from 'commander';
+import { InputError } from '../errors/InputError.js';
+import { printableText } from '../figure/printableText.js';
+import { openChunkStore } from '../files/chunkStore.js';
+import { runIdentity } from '../files/contentHash.js';
+import { npyTable } from '../files/npyTable.js';
+import { sensibleWorkers } from '../files/sensibleWorkers.js';
+import { INTERRUPTED, withInterrupt } from '../files/withInterrupt.js';
+import { requireNoOtherRun } from '../files/writeResults.js';
+import type { Merit } from '../merit/merit.js';
+import { isUpperLimit } from '../merit/merit.js';
+import { clopperPearson } from '../statistics/binomialInterval.js';
+import type { Summary } from '../statistics/summary.js';
+import { summarise } from '../statistics/summary.js';
+import { infidelityTheory } from '../tolerance/smallErrorTheory.js';
+import type { Threshold } from '../tolerance/thresholds.js';
+import { columnOf, countPassed, judgedFigures } from '../tolerance/thresholds.js';
+import type { TrialPlan } from '../tolerance/TrialPlan.js';
+import type { ChipOptions, OutputOptions, TargetOptions } from './commandOptions.js';
+import { addChipOptions, addOutputOptions, addTargetOptions } from './commandOptions.js';
+import type { Console } from './console.js';
+import { createConsole } from './console.js';
+import { finish } from './finish.js';
+import { shortNumber } from './messages.js';
+import { defaultFolder } from './names.js';
+import { chipBlock, reportHead, shownMerit } from './reportParts.js';
+import type { PlanOutcome, PlanResults } from './runPlans.js';
+import { runPlans } from './runPlans.js';
+import { replayTrial } from './replayTrial.js';
+import { runBudget } from './yieldBudget.js';
+import { runSweep } from './yieldSweep.js';
+import type { TrialOptions } from './trialOptions.js';
+import { addTrialOptions, parseShare, processOf, thresholdsOf, wholeNumberFor } from './trialOptions.js';
+import type { Scenario } from './trialScenario.js';
+import { infidelityWithoutErrors, loadScenario, planOf } from './trialScenario.js';
+
+/** Options of the command yield. */
+export interface YieldOptions extends OutputOptions, ChipOptions, TargetOptions, TrialOptions {
+  readonly within?: number;
+  readonly resume?: boolean;
+  readonly trial?: number;
+  readonly sweep?: string;
+  readonly budget?: boolean;
+}
+
+/** Adds the command `yield TARGET`. */
+export function addYieldCommand(parent: Command, setExitCode: (code: number) => void): void {
+  const command = parent
+    .command('yield')
+    .argument('<target>', 'matrix file, formula, or haar(8) for a new random target in each trial')
+    .summary('find what share of fabricated chips will be good')
+    .description(
+      'Sample chips with the errors of a process, program and simulate each, and say what share keeps the thresholds.\n' +
+        'Writes report.json, trials.npy (a row per trial, a column per judged figure), histogram.svg and cumulative.svg;\n' +
+        'with --sweep sweep.csv and sweep.svg, with --budget budget.csv and budget.svg.\n' +
+        'Finished chunks are kept: after Ctrl-C or a crash --resume goes on to the same bytes.',
+    );
+  addTrialOptions(command, 10_000)
+    .option('--within <width>', 'stop when the interval of the yield is no wider', parseShare('--within'))
+    .option('--resume', 'go on with an interrupted run')
+    .option('--trial <number>', 'write the chip of one trial instead', wholeNumberFor('--trial', 1, 2 ** 31))
+    .option(
+      '--sweep <quantity=from:to:points>',
+      'the yield against one quantity, such as sigma=0.005:0.05:10',
+    )
+    .option('--budget', 'what each error source costs, alone and together');
+  addChipOptions(command);
+  addTargetOptions(command);
+  addOutputOptions(command)
+    .addHelpText(
+      'after',
+      `
+Error sources: sigma (spread of the coupling ratios), sigmaAngle (of the splitter angles), bias, biasSigma (die-wide), pairCorrelation (the two
+splitters of a cell), correlationLength (in cells), phaseSigma (radians), bits (of the phases), lossSigmaDb. To sweep also: modes,
+couplingRatio (nominal), lossDb (of each splitter).
+
+Examples:
+  phasewright yield "haar(8)" --sigma 0.02
+  phasewright yield target.npy --chip my.chip.json --threshold fidelity=0.98 --threshold powerDistance=0.05
+  phasewright yield "haar(8)" --sweep sigma=0.005:0.05:10 --retune cell
+  phasewright yield "dft(8)" --sigma 0.01 --error phaseSigma=0.02 --error bits=8 --budget`,
+    )
+    .action(async (argument: string, options: YieldOptions) => {
+      setExitCode(await runYield(argument, options));
+    });
+}
+
+async function runYield(argument: string, options: YieldOptions): Promise<number> {
+  refuseTogether(options);
+  if (options.sweep !== undefined) return runSweep(argument, options);
+  const scenario = await loadScenario(argument, options);
+  if (options.budget === true) return runBudget(argument, scenario, options);
+  const errors = processOf(scenario.readChip.chip.process, options);
+  const thresholds = thresholdsOf(options);
+  const figures = judgedFigures(thresholds);
+  const plan = planOf(scenario, errors, { retune: options.retune, seed: options.seed, figures });
+  if (options.trial !== undefined) return replayTrial(scenario, plan, options.trial, options);
+
+  const console = createConsole(options);
+  const folder = options.out ?? yieldFolder(argument, scenario);
+  const identity = { ...settledOptions(options), errors, thresholds };
+  const runId = runIdentity('yield', scenario.inputs, identity);
+  const workers = sensibleWorkers(options.workers);
+  const names = ['trials.npy', 'histogram.svg', 'cumulative.svg'].map((name) => [name, ''] as const);
+  await requireNoOtherRun({ folder, files: names, runId, force: options.force === true });
+  const store = await openChunkStore(
+    folder,
+    { runId, columns: figures.length, description: identity },
+    { resume: options.resume === true, force: options.force === true },
+  );
+  for (const note of store.notes) console.message(note);
+  const enough = (results: PlanResults): boolean => {
+    if (options.within === undefined) return false;
+    const passed = countPassed(results.rows, figures, thresholds);
+    const { low, high } = clopperPearson(passed, results.trials, options.confidence);
+    return high - low <= options.within;
+  };
+  let finished = false;
+  try {
+    const { value, interrupted } = await withInterrupt((signal) =>
+      runPlans({ plans: [plan], trials: options.trials, workers, signal, store, enough, console }),
+    );
+    if (value === undefined || value.results[0]!.trials === 0) {
+      console.warning('interrupted before the first chunk of trials was done');
+      return INTERRUPTED;
+    }
+    await reportYield({
+      console,
+      options,
+      scenario,
+      plan,
+      thresholds,
+      outcome: value,
+      runId,
+      folder,
+      interrupted,
+    });
+    finished = !interrupted;
+    if (!interrupted) return 0;
+    console.warning(
+      `interrupted after ${value.results[0]!.trials} of ${options.trials} trials; go on with --resume`,
+    );
+    return INTERRUPTED;
+  } finally {
+    await store.close({ discard: finished });
+  }
+}
+
+function refuseTogether({ sweep, budget, trial, within, resume }: YieldOptions): void {
+  const modes = { '--sweep': sweep, '--budget': budget, '--trial': trial };
+  const given = Object.entries(modes).filter(([, value]) => value !== undefined);
+  if (given.length > 1) {
+    throw new InputError(
+      'usage/yield',
+      `${given.map(([name]) => name).join(' and ')} do not go together`,
+      'Run them one after the other.',
+    );
+  }
+  if (given.length === 1 && within !== undefined) {
+    throw new InputError(
+      'usage/yield',
+      `--within does not go with ${given[0]![0]}`,
+      'Give a number of --trials instead.',
+    );
+  }
+  if (trial !== undefined && resume === true) {
+    throw new InputError('usage/yield', 'one trial cannot be resumed', 'Leave out --resume.');
+  }
+}
+
+/** The options that change the result, besides errors and thresholds. */
+export function settledOptions(options: YieldOptions): Record<string, unknown> {
+  const { trials, confidence, retune, seed, within, transpose, conjugate, ports, nearest, unitaryWithin } =
+    options;
+  return { trials, confidence, retune, seed, within, transpose, conjugate, ports, nearest, unitaryWithin };
+}
+
+/** The default folder of a run that samples chips. */
+export function yieldFolder(argument: string, { path }: Scenario, command = 'yield'): string {
+  return defaultFolder(command, { text: argument, ...(path === undefined ? {} : { path }) });
+}
+
+/** The share of chips that keep the thresholds, with its interval. */
+export function yieldBlock(
+  { rows, trials }: PlanResults,
+  figures: readonly (keyof Merit)[],
+  thresholds: readonly Threshold[],
+  confidence: number,
+): { passed: number; trials: number; share: number; low: number; high: number; confidence: number } {
+  const passed = countPassed(rows, figures, thresholds);
+  return {
+    passed,
+    trials,
+    share: passed / trials,
+    ...clopperPearson(passed, trials, confidence),
+    confidence,
+  };
+}
+
+interface YieldRun {
+  readonly console: Console;
+  readonly options: YieldOptions;
+  readonly scenario: Scenario;
+  readonly plan: TrialPlan;
+  readonly thresholds: readonly Threshold[];
+  readonly outcome: PlanOutcome;
+  readonly runId: string;
+  readonly folder: string;
+  readonly interrupted: boolean;
+}
+
+async function reportYield(run: YieldRun): Promise<void> {
+  const { console, options, scenario, plan, thresholds, outcome, runId, folder, interrupted } = run;
+  const { figures } = plan;
+  const results = outcome.results[0]!;
+  const share = yieldBlock(results, figures, thresholds, options.confidence);
+  const columns = figures.map((_, k) => columnOf(results.rows, figures.length, k));
+  const summaries = figures.map((key, k) =>
+    summarise(columns[k]!, {
+      confidence: options.confidence,
+      worst: isUpperLimit(key) ? 'greatest' : 'least',
+    }),
+  );
+  const theory = infidelityTheory(plan, infidelityWithoutErrors(scenario));
+  const files = new Map<string, string | Uint8Array>();
+  files.set('trials.npy', npyTable(results.trials, figures.length, results.rows));
+  const shown = thresholds[0]!;
+  const values = columns[figures.indexOf(shown.key)]!;
+  const figure = figureOptions(
+    scenario,
+    thresholds,
+    options.trials === results.trials ? null : results.trials,
+  );
+  const [{ drawHistogram }, { drawCumulativeCurve }] = await Promise.all([
+    import('../figure/drawHistogram.js'),
+    import('../figure/drawCumulativeCurve.js'),
+  ]);
+  files.set('histogram.svg', drawHistogram(values, figure));
+  files.set('cumulative.svg', drawCumulativeCurve(values, { ...figure, confidence: options.confidence }));
+  await finish(console, options, {
+    folder,
+    files,
+    report: {
+      ...reportHead('yield', runId),
+      ...scenarioBlocks(scenario),
+      errors: plan.errors,
+      retune: plan.retune,
+      yield: { thresholds, ...share },
+      ...Object.fromEntries(figures.map((key, k) => [key, summaries[k]])),
+      theory: { meanInfidelity: theory?.meanInfidelity ?? null },
+      columns: figures,
+      seed: plan.seed,
+      clamped: results.clamped,
+      ...(interrupted ? { interrupted: true } : {}),
+      seconds: performance.now() / 1000,
+      trialsPerSecond: outcome.trialsPerSecond,
+    },
+    show: () => showYield(run, share, figures, summaries),
+  });
+  tellTheory(console, summaries[0]!, theory);
+  if (results.clamped > 0) console.warning(`${results.clamped} coupling ratios were clamped to [0, 1]`);
+}
+
+/** The blocks `target` and `chip` of a report. */
+export function scenarioBlocks({ source, target, readChip: { chip } }: Scenario): Record<string, unknown> {
+  return {
+    target: {
+      source,
+      modes: chip.mesh.modes,
+      unitarityDefect: target?.unitarityDefect ?? 0,
+      nearestDistance: target?.nearestDistance ?? null,
+    },
+    chip: chipBlock(chip),
+  };
+}
+
+function figureOptions(
+  { source, readChip: { chip } }: Scenario,
+  thresholds: readonly Threshold[],
+  soFar: number | null,
+): {
+  label: string;
+  threshold: number;
+  thresholdIsUpperLimit: boolean;
+  title: string;
+  captionLines: string[];
+} {
+  const [{ key, limit }] = thresholds as readonly [Threshold];
+  const rest = thresholds.slice(1).map(thresholdWords);
+  return {
+    label: FIGURE_LABELS[key] ?? key,
+    threshold: limit,
+    thresholdIsUpperLimit: isUpperLimit(key),
+    title: chip.name,
+    captionLines: [
+      `target: ${source}; ${chip.mesh.layout} mesh of ${chip.mesh.modes} ports`,
+      ...(rest.length > 0 ? [`judged too, not shown: ${rest.join(', ')}`] : []),
+      ...(soFar === null ? [] : [`the first ${soFar} trials`]),
+    ],
+  };
+}
+
+const FIGURE_LABELS: Partial<Record<keyof Merit, string>> = {
+  fidelity: 'fidelity',
+  averageGateFidelity: 'average gate fidelity',
+  portPhaseFreeFidelity: 'port-phase-free fidelity',
+  rmsError: 'rms matrix error',
+  worstCaseError: 'worst-case error',
+  powerDistance: 'power distance',
+  transmission: 'transmission',
+  transmissionDb: 'transmission (dB)',
+};
+
+/** A threshold as people write it. */
+export function thresholdWords({ key, limit }: Threshold): string {
+  return `${FIGURE_LABELS[key] ?? key} ${isUpperLimit(key) ? '\u2264' : '\u2265'} ${limit}`;
+}
+
+function showYield(
+  { console, options, scenario, plan, thresholds }: YieldRun,
+  share: ReturnType<typeof yieldBlock>,
+  figures: readonly (keyof Merit)[],
+  summaries: readonly Summary[],
+): void {
+  const { chip } = scenario.readChip;
+  console.result(
+    `${printableText(chip.name)}: ${share.trials} sampled chips for ${printableText(scenario.source)}, retuning: ${plan.retune}, seed ${plan.seed}\n`,
+  );
+  console.result(
+    `yield ${percent(share.share)} (${percent(share.low)} to ${percent(share.high)} at ${percent(options.confidence)} confidence): ` +
+      `${share.passed} of ${share.trials} chips with ${thresholds.map(thresholdWords).join(' and ')}`,
+  );
+  figures.forEach((key, k) => {
+    const { mean, standardError, median, worst } = summaries[k]!;
+    const error = standardError === null ? '' : ` \u00b1 ${shortNumber(standardError)}`;
+    console.result(
+      `${FIGURE_LABELS[key] ?? key}: mean ${shownMerit(mean)}${error}, median ${shownMerit(median)}, ` +
+        `worst ${shownMerit(worst.value)} (trial ${worst.trial})`,
+    );
+  });
+}
+
+/** A share in percent. */
+export function percent(share: number): string {
+  return `${shortNumber(100 * share)} %`;
+}
+
+/** Says what theory expects, and when simulation is off by more than sampling and the theory's own limits allow. */
+function tellTheory(
+  console: Console,
+  { mean, standardError }: Summary,
+  theory: ReturnType<typeof infidelityTheory>,
+): void {
+  if (theory === null) return;
+  const found = 1 - mean;
+  const expected = theory.meanInfidelity;
+  console.result(`mean infidelity ${shortNumber(found)}, small-error theory ${shortNumber(expected)}`);
+  const allowed = 4 * (standardError ?? Infinity) + theory.uncertainty;
+  if (Math.abs(found - expected) > allowed) {
+    console.warning(
+      `theory and simulation differ by ${shortNumber(Math.abs(found - expected))}, more than the ${shortNumber(allowed)} ` +
+        'that sampling and higher orders explain: the errors are too large for the small-error theory',
+    );
+  }
+}

@@ -1,0 +1,82 @@
+import { clopperPearson } from '../statistics/binomialInterval.js';
+
+/** How often chips were good at one value of a source. */
+export interface YieldCount {
+  readonly passed: number;
+  readonly trials: number;
+}
+
+/** The largest value of a source for which the yield still holds. */
+export interface ToleranceEstimate {
+  /** Largest value at which the share of good chips reaches the yield; 0 when not even the smallest does. */
+  readonly value: number;
+  /** Largest value at which the lower end of the share's interval reaches it. */
+  readonly low: number;
+  /** Largest value at which the upper end does; Infinity when no value up to the largest makes it fall below. */
+  readonly high: number;
+  /** Every value that was tried, rising, with what was found. */
+  readonly tried: readonly (YieldCount & { readonly value: number })[];
+}
+
+export interface ToleranceSearch {
+  /** Share of good chips wanted, between 0 and 1. */
+  readonly yieldWanted: number;
+  readonly confidence: number;
+  /** Where to begin, above 0. */
+  readonly start: number;
+  /** The largest value that makes sense. */
+  readonly most: number;
+  /** Relative width at which the bracketing ends. */
+  readonly precision?: number;
+  /**
+   * Counts the good chips at a value. The same random numbers at each value (common random numbers) make the count fall
+   * steadily, so that a bracket means something.
+   */
+  readonly count: (value: number) => Promise<YieldCount>;
+}
+
+const USUAL_PRECISION = 1e-3;
+/** Below this no spread means anything. */
+const LEAST = 1e-9;
+
+/**
+ * Finds the largest value of an error source for which a yield still holds, and the values between which the sampling leaves it: three
+ * bracketings on the same counts, one each for the share and the two ends of its Clopper-Pearson interval.
+ */
+export async function findTolerance(search: ToleranceSearch): Promise<ToleranceEstimate> {
+  const { yieldWanted, confidence, precision = USUAL_PRECISION } = search;
+  const tried = new Map<number, YieldCount>();
+  const countAt = async (value: number): Promise<YieldCount> => {
+    const known = tried.get(value);
+    if (known !== undefined) return known;
+    const found = await search.count(value);
+    tried.set(value, found);
+    return found;
+  };
+  const largest = async (holds: (found: YieldCount) => boolean): Promise<number> => {
+    let [low, high] = [0, search.start];
+    while (holds(await countAt(high))) {
+      if (high >= search.most) return Infinity;
+      [low, high] = [high, Math.min(search.most, 2 * high)];
+    }
+    while (low === 0) {
+      if (high < LEAST) return 0;
+      const middle = high / 2;
+      if (holds(await countAt(middle))) low = middle;
+      else high = middle;
+    }
+    while (high - low > precision * high) {
+      const middle = (low + high) / 2;
+      if (holds(await countAt(middle))) low = middle;
+      else high = middle;
+    }
+    return (low + high) / 2;
+  };
+  const interval = ({ passed, trials }: YieldCount): ReturnType<typeof clopperPearson> =>
+    clopperPearson(passed, trials, confidence);
+  const value = await largest(({ passed, trials }) => passed >= yieldWanted * trials);
+  const low = await largest((found) => interval(found).low >= yieldWanted);
+  const high = await largest((found) => interval(found).high >= yieldWanted);
+  const rising = [...tried].sort(([a], [b]) => a - b);
+  return { value, low, high, tried: rising.map(([at, found]) => ({ value: at, ...found })) };
+}

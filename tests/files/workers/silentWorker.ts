@@ -1,0 +1,2 @@
+// A module that forgets to serve jobs.
+export {};
