@@ -63,6 +63,30 @@ export type { PortSide } from './merit/portPhaseFree.js';
 export { missingPortPhases, portPhaseFreeFidelity } from './merit/portPhaseFree.js';
 export { powerDistance } from './merit/powerDistance.js';
 
+// Fabricated chips: errors of a process, trials, yield and tolerance
+export type { ErrorDistribution, ProcessErrors } from './chip/Chip.js';
+export { NO_ERRORS } from './chip/Chip.js';
+export type { ErrorSource } from './tolerance/errorSources.js';
+export { ERROR_SOURCES, withSource } from './tolerance/errorSources.js';
+export type { Retuning, TrialPlan } from './tolerance/TrialPlan.js';
+export type { SampledChip, TrialEngine } from './tolerance/createTrialEngine.js';
+export { createTrialEngine } from './tolerance/createTrialEngine.js';
+export type { RunTrialsOptions, TrialResults } from './tolerance/runTrials.js';
+export { runTrials } from './tolerance/runTrials.js';
+export type { Threshold } from './tolerance/thresholds.js';
+export { columnOf, countPassed, judgedFigures } from './tolerance/thresholds.js';
+export type { ToleranceEstimate, ToleranceSearch, YieldCount } from './tolerance/findTolerance.js';
+export { findTolerance } from './tolerance/findTolerance.js';
+export type { InfidelityTheory } from './tolerance/smallErrorTheory.js';
+export { infidelityTheory, toleranceTheory } from './tolerance/smallErrorTheory.js';
+
+// Statistics of trials
+export type { Interval } from './statistics/binomialInterval.js';
+export { clopperPearson, wilson } from './statistics/binomialInterval.js';
+export type { Quantile } from './statistics/quantiles.js';
+export type { Summary, SummaryOptions } from './statistics/summary.js';
+export { summarise } from './statistics/summary.js';
+
 // Phase tables
 export type { PhaseRow } from './program/PhaseTable.js';
 export { formatPhaseCsv, PHASE_TABLE_HEADER, phaseRows } from './program/PhaseTable.js';
@@ -75,6 +99,14 @@ export { settingsFromRows } from './program/settingsFromRows.js';
 // Figures
 export type { MeshFigureOptions } from './figure/drawMeshFigure.js';
 export { drawMeshFigure } from './figure/drawMeshFigure.js';
+export type { ValueFigureOptions } from './figure/drawHistogram.js';
+export { drawHistogram } from './figure/drawHistogram.js';
+export type { CumulativeCurveOptions } from './figure/drawCumulativeCurve.js';
+export { drawCumulativeCurve } from './figure/drawCumulativeCurve.js';
+export type { SweepCurveOptions, SweepPoint } from './figure/drawSweepCurve.js';
+export { drawSweepCurve } from './figure/drawSweepCurve.js';
+export type { BudgetOptions, BudgetRow, MeanEstimate } from './figure/drawBudget.js';
+export { drawBudget } from './figure/drawBudget.js';
 
 // Faults in the input
 export type { Place } from './errors/InputError.js';

@@ -1,12 +1,8 @@
 import type { Command } from 'commander';
 import { InputError } from '../errors/InputError.js';
 import { printableText } from '../figure/printableText.js';
-import { openChunkStore } from '../files/chunkStore.js';
 import { runIdentity } from '../files/contentHash.js';
 import { npyTable } from '../files/npyTable.js';
-import { sensibleWorkers } from '../files/sensibleWorkers.js';
-import { INTERRUPTED, withInterrupt } from '../files/withInterrupt.js';
-import { requireNoOtherRun } from '../files/writeResults.js';
 import type { Merit } from '../merit/merit.js';
 import { isUpperLimit } from '../merit/merit.js';
 import { clopperPearson } from '../statistics/binomialInterval.js';
@@ -22,10 +18,10 @@ import type { Console } from './console.js';
 import { createConsole } from './console.js';
 import { finish } from './finish.js';
 import { shortNumber } from './messages.js';
+import { runKept } from './keptRun.js';
 import { defaultFolder } from './names.js';
 import { chipBlock, reportHead, shownMerit } from './reportParts.js';
 import type { PlanOutcome, PlanResults } from './runPlans.js';
-import { runPlans } from './runPlans.js';
 import { replayTrial } from './replayTrial.js';
 import { runBudget } from './yieldBudget.js';
 import { runSweep } from './yieldSweep.js';
@@ -100,50 +96,17 @@ async function runYield(argument: string, options: YieldOptions): Promise<number
   const folder = options.out ?? yieldFolder(argument, scenario);
   const identity = { ...settledOptions(options), errors, thresholds };
   const runId = runIdentity('yield', scenario.inputs, identity);
-  const workers = sensibleWorkers(options.workers);
-  const names = ['trials.npy', 'histogram.svg', 'cumulative.svg'].map((name) => [name, ''] as const);
-  await requireNoOtherRun({ folder, files: names, runId, force: options.force === true });
-  const store = await openChunkStore(
-    folder,
-    { runId, columns: figures.length, description: identity },
-    { resume: options.resume === true, force: options.force === true },
-  );
-  for (const note of store.notes) console.message(note);
   const enough = (results: PlanResults): boolean => {
     if (options.within === undefined) return false;
     const passed = countPassed(results.rows, figures, thresholds);
     const { low, high } = clopperPearson(passed, results.trials, options.confidence);
     return high - low <= options.within;
   };
-  let finished = false;
-  try {
-    const { value, interrupted } = await withInterrupt((signal) =>
-      runPlans({ plans: [plan], trials: options.trials, workers, signal, store, enough, console }),
-    );
-    if (value === undefined || value.results[0]!.trials === 0) {
-      console.warning('interrupted before the first chunk of trials was done');
-      return INTERRUPTED;
-    }
-    await reportYield({
-      console,
-      options,
-      scenario,
-      plan,
-      thresholds,
-      outcome: value,
-      runId,
-      folder,
-      interrupted,
-    });
-    finished = !interrupted;
-    if (!interrupted) return 0;
-    console.warning(
-      `interrupted after ${value.results[0]!.trials} of ${options.trials} trials; go on with --resume`,
-    );
-    return INTERRUPTED;
-  } finally {
-    await store.close({ discard: finished });
-  }
+  const files = ['trials.npy', 'histogram.svg', 'cumulative.svg'];
+  const kept = { console, options, folder, runId, files, description: identity, plans: [plan], enough };
+  return runKept({ ...kept, reportsParts: true }, (outcome) =>
+    reportYield({ console, options, scenario, plan, thresholds, outcome, runId, folder }),
+  );
 }
 
 function refuseTogether({ sweep, budget, trial, within, resume }: YieldOptions): void {
@@ -206,11 +169,10 @@ interface YieldRun {
   readonly outcome: PlanOutcome;
   readonly runId: string;
   readonly folder: string;
-  readonly interrupted: boolean;
 }
 
 async function reportYield(run: YieldRun): Promise<void> {
-  const { console, options, scenario, plan, thresholds, outcome, runId, folder, interrupted } = run;
+  const { console, options, scenario, plan, thresholds, outcome, runId, folder } = run;
   const { figures } = plan;
   const results = outcome.results[0]!;
   const share = yieldBlock(results, figures, thresholds, options.confidence);
@@ -251,7 +213,7 @@ async function reportYield(run: YieldRun): Promise<void> {
       columns: figures,
       seed: plan.seed,
       clamped: results.clamped,
-      ...(interrupted ? { interrupted: true } : {}),
+      ...(outcome.interrupted ? { interrupted: true } : {}),
       seconds: performance.now() / 1000,
       trialsPerSecond: outcome.trialsPerSecond,
     },

@@ -1,19 +1,15 @@
 import { printableText } from '../figure/printableText.js';
 import { InputError } from '../errors/InputError.js';
-import { openChunkStore } from '../files/chunkStore.js';
 import { runIdentity } from '../files/contentHash.js';
-import { sensibleWorkers } from '../files/sensibleWorkers.js';
-import { INTERRUPTED, withInterrupt } from '../files/withInterrupt.js';
-import { requireNoOtherRun } from '../files/writeResults.js';
 import { summarise } from '../statistics/summary.js';
 import { aloneWith, COSTLY_SOURCES, without } from '../tolerance/errorSources.js';
 import { columnOf, judgedFigures } from '../tolerance/thresholds.js';
 import { createConsole } from './console.js';
 import { finish } from './finish.js';
+import { runKept } from './keptRun.js';
 import { shortNumber } from './messages.js';
 import { reportHead } from './reportParts.js';
 import type { PlanResults } from './runPlans.js';
-import { runPlans } from './runPlans.js';
 import { textTable } from './textTable.js';
 import { processOf, thresholdsOf } from './trialOptions.js';
 import type { Scenario } from './trialScenario.js';
@@ -42,41 +38,35 @@ export async function runBudget(
   }
   const plans = [
     errors,
+    sources.reduce(without, errors),
     ...sources.map((source) => aloneWith(errors, source)),
     ...sources.map((source) => without(errors, source)),
   ].map((process) => planOf(scenario, process, settled));
   const folder = options.out ?? `${yieldFolder(argument, scenario)}-budget`;
   const identity = { ...settledOptions(options), errors, thresholds, budget: true };
   const runId = runIdentity('yield', scenario.inputs, identity);
-  const workers = sensibleWorkers(options.workers);
-  const names = ['budget.csv', 'budget.svg'].map((name) => [name, ''] as const);
-  await requireNoOtherRun({ folder, files: names, runId, force: options.force === true });
-  const store = await openChunkStore(
+  const kept = {
+    console,
+    options,
     folder,
-    { runId, columns: figures.length, description: identity },
-    { resume: options.resume === true, force: options.force === true },
-  );
-  for (const note of store.notes) console.message(note);
-  let finished = false;
-  try {
-    const { value: outcome, interrupted } = await withInterrupt((signal) =>
-      runPlans({ plans, trials: options.trials, workers, signal, store, console }),
-    );
-    if (outcome === undefined || interrupted) {
-      console.warning('interrupted; go on with --resume');
-      return INTERRUPTED;
-    }
+    runId,
+    files: ['budget.csv', 'budget.svg'],
+    description: identity,
+    plans,
+  };
+  return runKept({ ...kept, reportsParts: false }, async (outcome) => {
     const costOf = (results: PlanResults): BudgetCost => {
       const { mean, standardError } = summarise(columnOf(results.rows, figures.length, 0));
       const { share, low, high } = yieldBlock(results, figures, thresholds, options.confidence);
       return { infidelity: { mean: 1 - mean, standardError }, yield: { share, low, high } };
     };
-    const [together, ...rest] = outcome.results.map(costOf);
+    const [together, withoutErrors, ...rest] = outcome.results.map(costOf);
     const budget = sources
       .map((source, k) => ({ source, alone: rest[k]!, without: rest[sources.length + k]! }))
       .sort((a, b) => b.alone.infidelity.mean - a.alone.infidelity.mean);
+    const costs: Budget = { together: together!, withoutErrors: withoutErrors!, budget };
     const { drawBudget } = await import('../figure/drawBudget.js');
-    const { chip } = scenario.readChip;
+    const caption = `target: ${argument}; ${options.trials} chips each; retuning: ${options.retune}`;
     const svg = drawBudget(
       budget.map(({ source, alone, without: rest }) => ({
         source,
@@ -86,37 +76,14 @@ export async function runBudget(
       together!.infidelity,
       {
         confidence: options.confidence,
-        title: chip.name,
-        captionLines: [`target: ${argument}; ${options.trials} chips each; retuning: ${options.retune}`],
+        title: scenario.readChip.chip.name,
+        captionLines: [caption, `without any errors: ${shortNumber(withoutErrors!.infidelity.mean)}`],
       },
-    );
-    const header = [
-      'source',
-      'aloneInfidelity',
-      'aloneStandardError',
-      'aloneYield',
-      'withoutInfidelity',
-      'withoutStandardError',
-      'withoutYield',
-    ];
-    const lines = [
-      ['all', together!, together!] as const,
-      ...budget.map(({ source, alone, without: rest }) => [source, alone, rest] as const),
-    ].map(([source, alone, rest]) =>
-      [
-        source,
-        alone.infidelity.mean,
-        alone.infidelity.standardError ?? '',
-        alone.yield.share,
-        ...(source === 'all'
-          ? ['', '', '']
-          : [rest.infidelity.mean, rest.infidelity.standardError ?? '', rest.yield.share]),
-      ].join(','),
     );
     await finish(console, options, {
       folder,
       files: new Map([
-        ['budget.csv', `${[header.join(','), ...lines].join('\n')}\n`],
+        ['budget.csv', budgetCsv(costs)],
         ['budget.svg', svg],
       ]),
       report: {
@@ -125,8 +92,7 @@ export async function runBudget(
         errors,
         retune: options.retune,
         thresholds,
-        together,
-        budget,
+        ...costs,
         seed: options.seed,
         seconds: performance.now() / 1000,
         trialsPerSecond: outcome.trialsPerSecond,
@@ -135,37 +101,55 @@ export async function runBudget(
         console.result(
           `${printableText(argument)}: what each error source costs (mean infidelity; share of good chips), seed ${options.seed}\n`,
         );
-        console.result(
-          textTable(
-            ['source', 'alone', 'yield', 'without it', 'yield'],
-            [
-              [
-                'all together',
-                shortNumber(together!.infidelity.mean),
-                percent(together!.yield.share),
-                '',
-                '',
-              ],
-              ...budget.map(({ source, alone, without: rest }) => [
-                source,
-                shortNumber(alone.infidelity.mean),
-                percent(alone.yield.share),
-                shortNumber(rest.infidelity.mean),
-                percent(rest.yield.share),
-              ]),
-            ],
-          ),
-        );
+        console.result(budgetTable(costs));
       },
     });
-    finished = true;
-    return 0;
-  } finally {
-    await store.close({ discard: finished });
-  }
+  });
 }
 
 interface BudgetCost {
   readonly infidelity: { readonly mean: number; readonly standardError: number | null };
   readonly yield: { readonly share: number; readonly low: number; readonly high: number };
+}
+
+/** What was found of all sources together, of none, and of each, the most expensive one first. */
+interface Budget {
+  readonly together: BudgetCost;
+  readonly withoutErrors: BudgetCost;
+  readonly budget: readonly {
+    readonly source: string;
+    readonly alone: BudgetCost;
+    readonly without: BudgetCost;
+  }[];
+}
+
+function budgetCsv({ together, withoutErrors, budget }: Budget): string {
+  const fields = ({ infidelity, yield: { share } }: BudgetCost): (number | string)[] => [
+    infidelity.mean,
+    infidelity.standardError ?? '',
+    share,
+  ];
+  const header =
+    'source,aloneInfidelity,aloneStandardError,aloneYield,withoutInfidelity,withoutStandardError,withoutYield';
+  const rows = [
+    ['all', ...fields(together), '', '', ''],
+    ['none', ...fields(withoutErrors), '', '', ''],
+    ...budget.map(({ source, alone, without: rest }) => [source, ...fields(alone), ...fields(rest)]),
+  ];
+  return `${[header, ...rows.map((row) => row.join(','))].join('\n')}\n`;
+}
+
+function budgetTable({ together, withoutErrors, budget }: Budget): string {
+  const fields = ({ infidelity, yield: { share } }: BudgetCost): string[] => [
+    shortNumber(infidelity.mean),
+    percent(share),
+  ];
+  return textTable(
+    ['source', 'alone', 'yield', 'without it', 'yield'],
+    [
+      ['all together', ...fields(together), '', ''],
+      ...budget.map(({ source, alone, without: rest }) => [source, ...fields(alone), ...fields(rest)]),
+      ['no errors', ...fields(withoutErrors), '', ''],
+    ],
+  );
 }

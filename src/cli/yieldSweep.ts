@@ -1,18 +1,14 @@
 import { printableText } from '../figure/printableText.js';
 import { InputError } from '../errors/InputError.js';
 import { nearestName } from '../errors/nearestName.js';
-import { openChunkStore } from '../files/chunkStore.js';
 import { runIdentity } from '../files/contentHash.js';
-import { sensibleWorkers } from '../files/sensibleWorkers.js';
-import { INTERRUPTED, withInterrupt } from '../files/withInterrupt.js';
-import { requireNoOtherRun } from '../files/writeResults.js';
 import { summarise } from '../statistics/summary.js';
 import { columnOf, judgedFigures } from '../tolerance/thresholds.js';
 import type { TrialPlan } from '../tolerance/TrialPlan.js';
 import { createConsole } from './console.js';
 import { finish } from './finish.js';
+import { runKept } from './keptRun.js';
 import { reportHead } from './reportParts.js';
-import { runPlans } from './runPlans.js';
 import { textTable } from './textTable.js';
 import { processOf, thresholdsOf } from './trialOptions.js';
 import type { Quantity } from './trialScenario.js';
@@ -58,21 +54,17 @@ export async function runSweep(argument: string, options: YieldOptions): Promise
   const folder = options.out ?? `${yieldFolder(argument, scenario)}-sweep-${quantity}`;
   const identity = { ...settledOptions(options), errors, thresholds, sweep: { quantity, values } };
   const runId = runIdentity('yield', scenario.inputs, identity);
-  const workers = sensibleWorkers(options.workers);
-  const names = ['sweep.csv', 'sweep.svg'].map((name) => [name, ''] as const);
-  await requireNoOtherRun({ folder, files: names, runId, force: options.force === true });
-  const store = await openChunkStore(
+  const kept = {
+    console,
+    options,
     folder,
-    { runId, columns: figures.length, description: identity },
-    { resume: options.resume === true, force: options.force === true },
-  );
-  for (const note of store.notes) console.message(note);
-  let finished = false;
-  try {
-    const { value: outcome, interrupted } = await withInterrupt((signal) =>
-      runPlans({ plans, trials: options.trials, workers, signal, store, console }),
-    );
-    const points = (outcome?.results ?? [])
+    runId,
+    files: ['sweep.csv', 'sweep.svg'],
+    description: identity,
+    plans,
+  };
+  return runKept({ ...kept, reportsParts: true }, async (outcome) => {
+    const points = outcome.results
       .map((results, k) => ({ results, value: values[k]! }))
       .filter(({ results }) => results.trials > 0)
       .map(({ results, value }) => {
@@ -87,10 +79,6 @@ export async function runSweep(argument: string, options: YieldOptions): Promise
           clamped: results.clamped,
         };
       });
-    if (points.length === 0) {
-      console.warning('interrupted before the first chunk of trials was done');
-      return INTERRUPTED;
-    }
     const header = [
       quantity,
       'passed',
@@ -139,9 +127,9 @@ export async function runSweep(argument: string, options: YieldOptions): Promise
         quantity,
         sweep: points,
         seed: options.seed,
-        ...(interrupted ? { interrupted: true } : {}),
+        ...(outcome.interrupted ? { interrupted: true } : {}),
         seconds: performance.now() / 1000,
-        trialsPerSecond: outcome!.trialsPerSecond,
+        trialsPerSecond: outcome.trialsPerSecond,
       },
       show: () => {
         console.result(
@@ -161,13 +149,7 @@ export async function runSweep(argument: string, options: YieldOptions): Promise
         );
       },
     });
-    finished = !interrupted;
-    if (finished) return 0;
-    console.warning('interrupted; go on with --resume');
-    return INTERRUPTED;
-  } finally {
-    await store.close({ discard: finished });
-  }
+  });
 }
 
 /** `sigma=0.005:0.05:10`: from, to, and how many points, ends included. */

@@ -1,0 +1,104 @@
+import type { Kernels } from './loadKernels.js';
+import type { TwinMemory } from './twinMemory.js';
+import { LANES } from './twinMemory.js';
+
+/** A complex number: re, im. */
+type Complex = readonly [re: number, im: number];
+
+const product = ([a, b]: Complex, [c, d]: Complex): Complex => [a * c - b * d, a * d + b * c];
+const square = ([a, b]: Complex): number => a * a + b * b;
+
+/** z / w as z conj(w) times 1/|w|^2. */
+function quotient([a, b]: Complex, w: Complex): Complex {
+  const inverse = 1 / square(w);
+  return [(a * w[0] + b * w[1]) * inverse, (b * w[0] - a * w[1]) * inverse];
+}
+
+/** T11, T12, T21, T22 of S(b) diag(upper, lower) S(a); the products of cosines and sines are of the second splitter, then the first. */
+function splitArms(
+  [cosFirst, sinFirst, cosSecond, sinSecond]: readonly [number, number, number, number],
+  [ur, ui]: Complex,
+  [lr, li]: Complex,
+  realSplitters: boolean,
+): readonly [Complex, Complex, Complex, Complex] {
+  const cc = cosSecond * cosFirst;
+  const ss = sinSecond * sinFirst;
+  const cs = cosSecond * sinFirst;
+  const sc = sinSecond * cosFirst;
+  if (realSplitters) {
+    return [
+      [cc * ur + ss * lr, cc * ui + ss * li],
+      [cs * ur - sc * lr, cs * ui - sc * li],
+      [sc * ur - cs * lr, sc * ui - cs * li],
+      [ss * ur + cc * lr, ss * ui + cc * li],
+    ];
+  }
+  return [
+    [cc * ur - ss * lr, cc * ui - ss * li],
+    [-(cs * ui + sc * li), cs * ur + sc * lr],
+    [-(sc * ui + cs * li), sc * ur + cs * lr],
+    [cc * lr - ss * ur, cc * li - ss * ui],
+  ];
+}
+
+const ALL_BITS = 2n ** 64n - 1n;
+
+/**
+ * Twin of composeCells in assembly/propagate.ts: a cell as T = diag(g1, g2) [[1, u], [v, 1]] of what the panels hold, columns exchanged where more
+ * light crosses than stays. Every field is a factor of its guide times what the panels hold, so that g1, g2 go into the factors of
+ * the guides and only u, v act on the panels.
+ */
+export function twinCells(memory: () => TwinMemory): Pick<Kernels, 'composeCells'> {
+  const composeCells: Kernels['composeCells'] = (
+    cells,
+    upperPort,
+    splitters,
+    arms,
+    external,
+    gain,
+    factors,
+    coefficients,
+    place,
+    realSplitters,
+  ) => {
+    const { doubles, integers, words } = memory();
+    const complexAt = (at: number): Complex => [doubles[at]!, doubles[at + LANES]!];
+    const writeAt = (at: number, [re, im]: Complex): void => {
+      doubles[at] = re;
+      doubles[at + LANES] = im;
+    };
+    for (let cell = 0; cell < cells; cell++) {
+      for (let lane = 0; lane < LANES; lane++) {
+        const splitter = splitters / 8 + 8 * cell + lane;
+        const [cosFirst, sinFirst] = complexAt(splitter);
+        const amplitude = doubles[gain / 8 + LANES * cell + lane]!;
+        const [cosSecond, sinSecond] = complexAt(splitter + 4);
+        const arm = arms / 8 + 8 * cell + lane;
+        const [t11, t12, t21, t22] = splitArms(
+          [cosFirst, sinFirst, amplitude * cosSecond, amplitude * sinSecond],
+          complexAt(arm),
+          complexAt(arm + 4),
+          realSplitters !== 0,
+        );
+        const port = factors / 8 + 4 * integers[upperPort / 4 + cell]! + lane;
+        const phase = complexAt(external / 8 + 4 * cell + lane);
+        const f1 = place === 0 ? product(complexAt(port), phase) : complexAt(port);
+        const f2 = place === 1 ? product(complexAt(port + 4), phase) : complexAt(port + 4);
+
+        // The larger entry of each row is made the row's factor.
+        const exchanged = square(t12) > square(t11);
+        const [a11, a12] = [product(t11, f1), product(t12, f2)];
+        const [a21, a22] = [product(t21, f1), product(t22, f2)];
+        const [g1, h1] = exchanged ? [a12, a11] : [a11, a12];
+        const [g2, h2] = exchanged ? [a21, a22] : [a22, a21];
+        const at = coefficients / 8 + 10 * cell + lane;
+        writeAt(at, quotient(h1, g1));
+        writeAt(at + 4, quotient(h2, g2));
+        words[at + 8] = exchanged ? ALL_BITS : 0n;
+        writeAt(port, place === 2 ? product(g1, phase) : g1);
+        writeAt(port + 4, place === 3 ? product(g2, phase) : g2);
+      }
+    }
+  };
+  return { composeCells };
+}

@@ -1,0 +1,99 @@
+import type { Kernels } from './loadKernels.js';
+import type { TwinMemory } from './twinMemory.js';
+import { LANES } from './twinMemory.js';
+import { smallCosine, smallSine } from './twinSine.js';
+
+const WORD = 0xffffffffn;
+
+/** The two 64-bit words that Philox4x32-10 (Salmon, Moraes, Dror, Shaw, SC'11) makes of the counter [0, 0, trial, stream] and the seed. */
+function philoxWords(seed: readonly [bigint, bigint], stream: bigint, trial: bigint): [bigint, bigint] {
+  let [c0, c1, c2, c3] = [0n, 0n, trial, stream];
+  let [k0, k1] = seed;
+  for (let round = 0; round < 10; round++) {
+    const p0 = c0 * 0xd2511f53n;
+    const p1 = c2 * 0xcd9e8d57n;
+    [c0, c1, c2, c3] = [(p1 >> 32n) ^ c1 ^ k0, p1 & WORD, (p0 >> 32n) ^ c3 ^ k1, p0 & WORD];
+    k0 = (k0 + 0x9e3779b9n) & WORD;
+    k1 = (k1 + 0xbb67ae85n) & WORD;
+  }
+  return [c0 | (c1 << 32n), c2 | (c3 << 32n)];
+}
+
+const wrap = (bits: bigint): bigint => BigInt.asUintN(64, bits);
+const rotateLeft = (bits: bigint, by: bigint): bigint => wrap(bits << by) | (bits >> (64n - by));
+
+/** xoroshiro128+ of Blackman and Vigna, ACM Trans. Math. Softw. 47, 36 (2021), on the state of one lane: the next 64 bits. */
+function nextBits(words: BigUint64Array, at: number): bigint {
+  const first = words[at]!;
+  const second = words[at + LANES]!;
+  const mixed = first ^ second;
+  words[at] = rotateLeft(first, 24n) ^ mixed ^ wrap(mixed << 16n);
+  words[at + LANES] = rotateLeft(mixed, 37n);
+  return wrap(first + second);
+}
+
+/** A double in [1, 2) from the upper 52 bits. */
+const mantissaOf = (bits: bigint): number => 1 + Number(bits >> 12n) * 2 ** -52;
+
+const exchange = new DataView(new ArrayBuffer(8));
+/** Bits of sqrt(1/2). */
+const ROOT_HALF = 0x3fe6a09e667f3bcdn;
+
+/** log(u) for u in (0, 1]: the mantissa is brought to [sqrt(1/2), sqrt(2)), then 2 artanh((m - 1)/(m + 1)). */
+function logarithm(u: number): number {
+  exchange.setFloat64(0, u);
+  const bits = exchange.getBigInt64(0);
+  const exponent = (bits - ROOT_HALF) >> 52n;
+  exchange.setBigInt64(0, bits - (exponent << 52n));
+  const mantissa = exchange.getFloat64(0);
+  const s = (mantissa - 1) / (mantissa + 1);
+  const z = s * s;
+  let series = 2 / 17;
+  for (const odd of [15, 13, 11, 9, 7, 5, 3, 1]) series = series * z + 2 / odd;
+  return Number(exponent) * 0.6931471805599453 + s * series;
+}
+
+const isSet = (bits: bigint, place: bigint): boolean => ((bits >> place) & 1n) === 1n;
+
+/** Twins of assembly/normals.ts. */
+export function twinNumbers(
+  memory: () => TwinMemory,
+): Pick<Kernels, 'seedTrial' | 'fillNormals' | 'fillUniforms'> {
+  return {
+    seedTrial: (state, lane, seedLow, seedHigh, stream, trial) => {
+      const word = (value: number): bigint => BigInt.asUintN(32, BigInt(value));
+      const seed = [word(seedLow), word(seedHigh)] as const;
+      const [first, second] = philoxWords(seed, word(stream), word(trial));
+      const { words } = memory();
+      words[state / 8 + lane] = first;
+      words[state / 8 + LANES + lane] = second;
+    },
+    fillNormals: (out, count, state) => {
+      const { doubles, words } = memory();
+      for (let lane = 0; lane < LANES; lane++) {
+        for (let k = 0; k < count; k += 2) {
+          const first = nextBits(words, state / 8 + lane);
+          const second = nextBits(words, state / 8 + lane);
+          const radius = Math.sqrt(logarithm(2 - mantissaOf(first)) * -2);
+          // The angle within an eighth of a turn around 0 from the upper bits, its octant from bits 9 to 11.
+          const t = (mantissaOf(second) - 1.5) * 1.5707963267948966;
+          const w = t * t;
+          const [c, s] = [smallCosine(w), smallSine(t, w)];
+          const [a, b] = isSet(second, 11n) ? [s, c] : [c, s];
+          const at = out / 8 + LANES * k + lane;
+          doubles[at] = radius * (isSet(second, 10n) ? -a : a);
+          doubles[at + LANES] = radius * (isSet(second, 9n) ? -b : b);
+        }
+      }
+    },
+    fillUniforms: (out, count, state) => {
+      const { doubles, words } = memory();
+      for (let lane = 0; lane < LANES; lane++) {
+        for (let k = 0; k < count; k++) {
+          const bits = nextBits(words, state / 8 + lane);
+          doubles[out / 8 + LANES * k + lane] = (mantissaOf(bits) - 1.5) * 3.4641016151377544;
+        }
+      }
+    },
+  };
+}
