@@ -1,11 +1,14 @@
+import type { ProcessErrors } from '../chip/Chip.js';
 import { openChunkStore } from '../files/chunkStore.js';
 import { sensibleWorkers } from '../files/sensibleWorkers.js';
 import { INTERRUPTED, withInterrupt } from '../files/withInterrupt.js';
 import { requireNoOtherRun } from '../files/writeResults.js';
+import type { Threshold } from '../tolerance/thresholds.js';
 import type { TrialPlan } from '../tolerance/TrialPlan.js';
 import type { Console } from './console.js';
 import type { PlanOutcome, PlanResults } from './runPlans.js';
 import { runPlans } from './runPlans.js';
+import type { Scenario } from './trialScenario.js';
 
 /** A run of trials whose finished chunks are kept until its results are written. */
 export interface KeptRun {
@@ -29,6 +32,33 @@ export interface KeptRun {
   readonly reportsParts: boolean;
 }
 
+/** Inputs and options of a run by name, one value each, so that a difference can be told in a line. */
+export function describedRun(
+  { source, readChip, inputs }: Scenario,
+  {
+    errors,
+    thresholds,
+    ...options
+  }: Readonly<Record<string, unknown>> & {
+    readonly errors: ProcessErrors;
+    readonly thresholds: readonly Threshold[];
+  },
+): Record<string, unknown> {
+  return {
+    'target': source,
+    'chip': readChip.chip.name,
+    ...options,
+    ...errors,
+    'threshold': thresholds.map(({ key, limit }) => `${key}=${limit}`).join(' and '),
+    'content of the target': shortHash(inputs['target']),
+    'content of the chip': shortHash(inputs['chip']),
+  };
+}
+
+function shortHash(hash = ''): string {
+  return hash.slice(0, 'sha256:'.length + 12);
+}
+
 /**
  * Runs trials, keeping finished chunks in the folder of the results, and reports them. After an interrupt the part that is done is reported, the
  * chunks stay, and a message says how to go on.
@@ -42,15 +72,16 @@ export async function runKept(
   const { console, options, folder, runId, files, plans, enough } = run;
   const workers = sensibleWorkers(options.workers);
   const force = options.force === true;
-  await requireNoOtherRun({ folder, files: files.map((name) => [name, '']), runId, force });
   const store = await openChunkStore(
     folder,
     { runId, columns: plans[0]!.figures.length, description: run.description },
     { resume: options.resume === true, force },
   );
-  for (const note of store.notes) console.message(note);
   let finished = false;
   try {
+    // After the store, which can say more: what has changed since an unfinished run.
+    await requireNoOtherRun({ folder, files: files.map((name) => [name, '']), runId, force });
+    for (const note of store.notes) console.message(note);
     const { value: outcome, interrupted } = await withInterrupt((signal) =>
       runPlans({
         plans,

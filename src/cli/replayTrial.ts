@@ -38,7 +38,8 @@ export async function replayTrial(
   const { target, settings } = sampled;
   const free = !chip.portShifters && externalAtOutput(chip.style) ? 'input' : 'output';
   const merit = figuresOfMerit(target, simulate(chip, settings), free);
-  const thresholds = judge(thresholdsOf(options), merit);
+  const thresholds = thresholdsOf(options);
+  const judged = judge(thresholds, merit);
   const rows = phaseRows(chip, settings);
   const csv = formatPhaseCsv(rows);
   const json = formatPhaseJson(rows, {
@@ -48,7 +49,7 @@ export async function replayTrial(
     options: { trial: number, seed: plan.seed, retune: plan.retune },
     hashes: { target: matrixHash(target), chip: chipHash(readChip), phases: contentHash(csv) },
   });
-  const identity = { ...settledOptions(options), errors: plan.errors, trial: number };
+  const identity = { ...settledOptions(options), errors: plan.errors, thresholds, trial: number };
   await finish(console, options, {
     folder: options.out ?? `${yieldFolder(scenario.source, scenario)}-trial-${number}`,
     files: new Map([
@@ -65,12 +66,12 @@ export async function replayTrial(
       seed: plan.seed,
       trial: number,
       merit,
-      thresholds,
+      thresholds: judged,
     },
     show: () => {
       console.result(`trial ${number} of seed ${plan.seed}, retuning: ${plan.retune}\n`);
       console.result(meritLines(merit));
-      console.result(`\n${thresholds.every(({ met }) => met) ? 'keeps' : 'does not keep'} the thresholds`);
+      console.result(`\n${judged.every(({ met }) => met) ? 'keeps' : 'does not keep'} the thresholds`);
     },
   });
   return 0;

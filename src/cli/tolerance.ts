@@ -21,7 +21,13 @@ import { reportHead } from './reportParts.js';
 import { runPlans } from './runPlans.js';
 import { textTable } from './textTable.js';
 import type { TrialOptions } from './trialOptions.js';
-import { addTrialOptions, parseShare, processOf, thresholdsOf } from './trialOptions.js';
+import {
+  addTrialOptions,
+  parseShare,
+  processOf,
+  tellMissingPortShifters,
+  thresholdsOf,
+} from './trialOptions.js';
 import { loadScenario, planAt } from './trialScenario.js';
 import { percent, scenarioBlocks, settledOptions, thresholdWords, yieldFolder } from './yield.js';
 
@@ -74,6 +80,7 @@ async function runTolerance(argument: string, options: ToleranceOptions): Promis
   const source = searchedSource(options.source ?? 'sigma');
   const scenario = await loadScenario(argument, options);
   const thresholds = thresholdsOf(options);
+  tellMissingPortShifters(console, scenario.readChip.chip, thresholds);
   const figures = judgedFigures(thresholds);
   const errors = { ...processOf(scenario.readChip.chip.process, options, source), [source]: 0 };
   const settled = { retune: options.retune, seed: options.seed, figures };

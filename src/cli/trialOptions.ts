@@ -1,6 +1,6 @@
 import { Option } from 'commander';
 import type { Command } from 'commander';
-import type { ProcessErrors } from '../chip/Chip.js';
+import type { Chip, ProcessErrors } from '../chip/Chip.js';
 import { InputError } from '../errors/InputError.js';
 import { nearestName } from '../errors/nearestName.js';
 import type { Merit } from '../merit/merit.js';
@@ -8,6 +8,7 @@ import { isUpperLimit, MERIT_KEYS } from '../merit/merit.js';
 import type { ErrorSource } from '../tolerance/errorSources.js';
 import { errorSource, hasErrors, requireConsistent, withSource } from '../tolerance/errorSources.js';
 import type { Threshold } from '../tolerance/thresholds.js';
+import type { Console } from './console.js';
 import type { Retuning } from '../tolerance/TrialPlan.js';
 import { RETUNINGS } from '../tolerance/TrialPlan.js';
 
@@ -72,6 +73,18 @@ export function thresholdsOf({
   return threshold ?? [{ key: 'fidelity', limit: 0.99 }];
 }
 
+/** Says so when thresholds look at phases that the chip cannot set. */
+export function tellMissingPortShifters(
+  console: Console,
+  chip: Chip,
+  thresholds: readonly Threshold[],
+): void {
+  if (chip.portShifters || !thresholds.some(({ key }) => key === 'fidelity')) return;
+  console.warning(
+    'this chip has no port shifters, so its fidelity is a matter of chance: judge portPhaseFreeFidelity instead',
+  );
+}
+
 /**
  * The process of the chip file with the sources of the command line.
  * @param swept a source that will get its values later, so that it need not be there yet
@@ -82,6 +95,15 @@ export function processOf(
   { sigma, error = [] }: Pick<TrialOptions, 'sigma' | 'error'>,
   swept?: string,
 ): ProcessErrors {
+  const given =
+    sigma === undefined ? error.map(([source]) => source) : ['sigma', ...error.map(([source]) => source)];
+  if (swept !== undefined && given.includes(swept)) {
+    throw new InputError(
+      'usage/swept',
+      `${swept} takes many values in this run, and one is given for it`,
+      `Leave out ${swept === 'sigma' && sigma !== undefined ? '--sigma' : `--error ${swept}=...`}.`,
+    );
+  }
   let errors = inFile;
   if (sigma !== undefined) errors = withSource(errors, 'sigma', sigma);
   for (const [source, value] of error) errors = withSource(errors, source, value);
@@ -123,6 +145,13 @@ function parseThreshold(text: string, earlier: readonly Threshold[] = []): reado
 
 /** A threshold that no chip, or every chip, keeps is a slip of the pen. */
 function requirePossible(key: keyof Merit, limit: number, text: string): void {
+  if (key !== 'transmissionDb' && !isUpperLimit(key) && limit < 0) {
+    throw new InputError(
+      'usage/threshold',
+      `--threshold ${text}: every chip keeps that`,
+      `${key} is a number from 0 to 1.`,
+    );
+  }
   const impossible = key === 'transmissionDb' ? limit > 0 : isUpperLimit(key) ? limit < 0 : limit > 1;
   if (!impossible) return;
   throw new InputError(

@@ -9,9 +9,10 @@ import { figuresOfMerit } from '../merit/merit.js';
 import type { ErrorSource } from '../tolerance/errorSources.js';
 import { ERROR_SOURCES, requireConsistent, withSource } from '../tolerance/errorSources.js';
 import type { Retuning, TrialPlan } from '../tolerance/TrialPlan.js';
+import { matrixFileKind } from '../target/MatrixFileKind.js';
 import type { ChipOptions, TargetOptions } from './commandOptions.js';
 import { chipHash, idealChipFor, loadNamedChip } from './loadChip.js';
-import type { LoadedTarget } from './loadTarget.js';
+import type { LoadedTarget, RawTarget } from './loadTarget.js';
 import { prepareLoaded, rawTargetHash, readTarget, theOnlyMatrix } from './loadTarget.js';
 
 /** Quantities of the design that may be swept, beside the error sources. */
@@ -38,25 +39,35 @@ export interface Scenario {
 /** `haar(8)`: a target for each trial. `haar(8, 1)` has a seed and is one matrix. */
 const HAAR_EACH_TRIAL = /^\s*haar\s*\(\s*(\d+|N)\s*\)\s*$/;
 /** The number of ports, where a formula leaves it open. */
-const OPEN_MODES = /\bN\b/g;
+const OPEN_MODES = /\bN\b/;
 
 /**
  * Reads target and chip of a command that samples chips. A formula may leave the number of ports open as `N`, to be swept, or taken from the chip.
- * @param modes number of ports for a formula with `N`
+ * @param modes number of ports for a formula with `N` when no chip is named
  */
 export async function loadScenario(
   argument: string,
   options: ChipOptions & TargetOptions,
   modes?: number,
-  changed?: ReadChip,
 ): Promise<Scenario> {
-  const namedChip = changed ?? (await loadNamedChip(options));
-  const ports = modes ?? namedChip?.chip.mesh.modes;
+  const namedChip = await loadNamedChip(options);
+  const ports = namedChip?.chip.mesh.modes ?? modes;
+  const each = HAAR_EACH_TRIAL.test(argument);
+  const raw = each ? null : await readTarget(withModes(argument, ports));
+  return scenarioOf(argument, options, namedChip, ports, raw);
+}
+
+/** The scenario of a target that has been read (null: a new random one in each trial). */
+async function scenarioOf(
+  argument: string,
+  options: ChipOptions & TargetOptions,
+  namedChip: ReadChip | undefined,
+  ports: number | undefined,
+  raw: RawTarget | null,
+): Promise<Scenario> {
   const each = HAAR_EACH_TRIAL.exec(argument)?.[1];
-  const formula = ports === undefined ? argument : argument.replaceAll(OPEN_MODES, String(ports));
-  const raw = each === undefined ? await readTarget(formula) : null;
-  const own = each === undefined ? theOnlyMatrix(raw!).rows : each === 'N' ? ports : Number(each);
-  if (own === undefined) throw openModes();
+  const own = raw !== null ? theOnlyMatrix(raw).rows : each === 'N' ? ports : Number(each);
+  if (own === undefined) throw openModes(argument);
   const readChip = namedChip ?? (await idealChipFor(requirePorts(own), options));
   const chipModes = readChip.chip.mesh.modes;
   if (raw === null && own !== chipModes) {
@@ -71,18 +82,20 @@ export async function loadScenario(
   }
   const target = raw && prepareLoaded(raw, theOnlyMatrix(raw), options, namedChip ? chipModes : undefined);
   return {
-    source: argument,
+    source: argument === '-' ? raw!.source : argument,
     ...(raw?.path === undefined ? {} : { path: raw.path }),
     readChip,
     target,
     inputs: { target: raw ? rawTargetHash(raw) : argument, chip: chipHash(readChip) },
     at: async (quantity, value) => {
       if (quantity !== 'modes') {
-        return loadScenario(argument, options, modes, await changedChip(readChip.file, quantity, value));
+        const chip = await changedChip(readChip.file, quantity, value);
+        return scenarioOf(argument, options, chip, ports, raw);
       }
-      if (raw !== null && !OPEN_MODES.test(argument)) throw openModes();
-      const file = namedChip && (await changedChip(namedChip.file, 'modes', value));
-      return loadScenario(each === undefined ? argument : 'haar(N)', options, value, file);
+      if (raw !== null && (raw.path !== undefined || !OPEN_MODES.test(argument))) throw fixedModes(argument);
+      const chip = namedChip && (await changedChip(namedChip.file, 'modes', value));
+      if (raw === null) return scenarioOf('haar(N)', options, chip, value, null);
+      return scenarioOf(argument, options, chip, value, await readTarget(withModes(argument, value)));
     },
   };
 }
@@ -122,8 +135,14 @@ export function infidelityWithoutErrors({ readChip: { chip }, target }: Scenario
 async function changedChip(file: ChipFile, quantity: DesignQuantity, value: number): Promise<ReadChip> {
   const { chipFromDocument } = await import('../chip/readChip.js');
   if (quantity === 'couplingRatio') {
-    const { measuredCells, ...rest } = file;
-    return chipFromDocument({ ...rest, couplingRatio: value });
+    if (file.measuredCells !== undefined) {
+      throw new InputError(
+        'usage/sweep',
+        'the chip has measuredCells, whose ratios take the place of the nominal one',
+        'Sweep couplingRatio on a chip file without them, or sweep bias.',
+      );
+    }
+    return chipFromDocument({ ...file, couplingRatio: value });
   }
   if (quantity === 'lossDb')
     return chipFromDocument({ ...file, lossDb: { ...file.lossDb, splitter: value } });
@@ -144,10 +163,25 @@ function requirePorts(modes: number): number {
   throw new InputError('target/size', `${modes} ports`, 'Give from 1 to 1024 ports.');
 }
 
-function openModes(): InputError {
+/** A formula with the number of ports put in; names of files stay as they are. */
+function withModes(argument: string, modes: number | undefined): string {
+  if (!OPEN_MODES.test(argument) || matrixFileKind(argument) !== undefined) return argument;
+  if (modes === undefined) throw openModes(argument);
+  return argument.replaceAll(new RegExp(OPEN_MODES, 'g'), String(modes));
+}
+
+function openModes(argument: string): InputError {
+  return new InputError(
+    'usage/modes',
+    `the number of ports N of ${argument} is not known`,
+    'Write a number for it, name a chip with --chip, or sweep it: yield --sweep modes=4:16:7.',
+  );
+}
+
+function fixedModes(argument: string): InputError {
   return new InputError(
     'usage/sweep',
-    'the number of ports is not open, or not known',
-    'Write N for it, such as haar(N) or dft(N), and sweep modes, or name a chip.',
+    `the number of ports of ${argument} is fixed`,
+    'Write N for it, such as haar(N) or dft(N), to sweep modes.',
   );
 }

@@ -18,7 +18,7 @@ import type { Console } from './console.js';
 import { createConsole } from './console.js';
 import { finish } from './finish.js';
 import { shortNumber } from './messages.js';
-import { runKept } from './keptRun.js';
+import { describedRun, runKept } from './keptRun.js';
 import { defaultFolder } from './names.js';
 import { chipBlock, reportHead, shownMerit } from './reportParts.js';
 import type { PlanOutcome, PlanResults } from './runPlans.js';
@@ -26,7 +26,14 @@ import { replayTrial } from './replayTrial.js';
 import { runBudget } from './yieldBudget.js';
 import { runSweep } from './yieldSweep.js';
 import type { TrialOptions } from './trialOptions.js';
-import { addTrialOptions, parseShare, processOf, thresholdsOf, wholeNumberFor } from './trialOptions.js';
+import {
+  addTrialOptions,
+  parseShare,
+  processOf,
+  tellMissingPortShifters,
+  thresholdsOf,
+  wholeNumberFor,
+} from './trialOptions.js';
 import type { Scenario } from './trialScenario.js';
 import { infidelityWithoutErrors, loadScenario, planOf } from './trialScenario.js';
 
@@ -93,6 +100,7 @@ async function runYield(argument: string, options: YieldOptions): Promise<number
   if (options.trial !== undefined) return replayTrial(scenario, plan, options.trial, options);
 
   const console = createConsole(options);
+  tellMissingPortShifters(console, scenario.readChip.chip, thresholds);
   const folder = options.out ?? yieldFolder(argument, scenario);
   const identity = { ...settledOptions(options), errors, thresholds };
   const runId = runIdentity('yield', scenario.inputs, identity);
@@ -103,7 +111,16 @@ async function runYield(argument: string, options: YieldOptions): Promise<number
     return high - low <= options.within;
   };
   const files = ['trials.npy', 'histogram.svg', 'cumulative.svg'];
-  const kept = { console, options, folder, runId, files, description: identity, plans: [plan], enough };
+  const kept = {
+    console,
+    options,
+    folder,
+    runId,
+    files,
+    description: describedRun(scenario, identity),
+    plans: [plan],
+    enough,
+  };
   return runKept({ ...kept, reportsParts: true }, (outcome) =>
     reportYield({ console, options, scenario, plan, thresholds, outcome, runId, folder }),
   );
@@ -217,10 +234,27 @@ async function reportYield(run: YieldRun): Promise<void> {
       seconds: performance.now() / 1000,
       trialsPerSecond: outcome.trialsPerSecond,
     },
-    show: () => showYield(run, share, figures, summaries),
+    show: () => {
+      showYield(run, share, figures, summaries);
+      tellTheory(console, summaries[0]!, theory);
+    },
   });
-  tellTheory(console, summaries[0]!, theory);
-  if (results.clamped > 0) console.warning(`${results.clamped} coupling ratios were clamped to [0, 1]`);
+  tellClamped(console, results.clamped);
+  const { within } = options;
+  if (within !== undefined && !outcome.interrupted && !(share.high - share.low <= within)) {
+    console.warning(
+      `the interval is ${shortNumber(share.high - share.low)} wide after all ${share.trials} trials, not ${within}: give more --trials`,
+    );
+  }
+}
+
+function tellClamped(console: Console, clamped: number): void {
+  if (clamped === 0) return;
+  console.warning(
+    clamped === 1
+      ? 'a coupling ratio was clamped to [0, 1]'
+      : `${clamped} coupling ratios were clamped to [0, 1]`,
+  );
 }
 
 /** The blocks `target` and `chip` of a report. */

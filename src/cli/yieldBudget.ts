@@ -6,7 +6,7 @@ import { aloneWith, COSTLY_SOURCES, without } from '../tolerance/errorSources.js
 import { columnOf, judgedFigures } from '../tolerance/thresholds.js';
 import { createConsole } from './console.js';
 import { finish } from './finish.js';
-import { runKept } from './keptRun.js';
+import { describedRun, runKept } from './keptRun.js';
 import { shortNumber } from './messages.js';
 import { reportHead } from './reportParts.js';
 import type { PlanResults } from './runPlans.js';
@@ -51,7 +51,7 @@ export async function runBudget(
     folder,
     runId,
     files: ['budget.csv', 'budget.svg'],
-    description: identity,
+    description: describedRun(scenario, identity),
     plans,
   };
   return runKept({ ...kept, reportsParts: false }, async (outcome) => {

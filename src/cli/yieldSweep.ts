@@ -7,10 +7,10 @@ import { columnOf, judgedFigures } from '../tolerance/thresholds.js';
 import type { TrialPlan } from '../tolerance/TrialPlan.js';
 import { createConsole } from './console.js';
 import { finish } from './finish.js';
-import { runKept } from './keptRun.js';
+import { describedRun, runKept } from './keptRun.js';
 import { reportHead } from './reportParts.js';
 import { textTable } from './textTable.js';
-import { processOf, thresholdsOf } from './trialOptions.js';
+import { processOf, tellMissingPortShifters, thresholdsOf } from './trialOptions.js';
 import type { Quantity } from './trialScenario.js';
 import { loadScenario, planAt, QUANTITIES } from './trialScenario.js';
 import type { YieldOptions } from './yield.js';
@@ -46,6 +46,7 @@ export async function runSweep(argument: string, options: YieldOptions): Promise
   const { quantity, values } = parseSweep(options.sweep!);
   const scenario = await loadScenario(argument, options, quantity === 'modes' ? values[0] : undefined);
   const thresholds = thresholdsOf(options);
+  tellMissingPortShifters(console, scenario.readChip.chip, thresholds);
   const figures = judgedFigures(thresholds);
   const errors = processOf(scenario.readChip.chip.process, options, quantity);
   const settled = { retune: options.retune, seed: options.seed, figures };
@@ -60,7 +61,7 @@ export async function runSweep(argument: string, options: YieldOptions): Promise
     folder,
     runId,
     files: ['sweep.csv', 'sweep.svg'],
-    description: identity,
+    description: describedRun(scenario, identity),
     plans,
   };
   return runKept({ ...kept, reportsParts: true }, async (outcome) => {
