@@ -60,7 +60,7 @@ export { simulate } from './simulate/simulate.js';
 export type { Merit } from './merit/merit.js';
 export { figuresOfMerit } from './merit/merit.js';
 export type { PortSide } from './merit/portPhaseFree.js';
-export { missingPortPhases, portPhaseFreeFidelity } from './merit/portPhaseFree.js';
+export { freePorts, missingPortPhases, portPhaseFreeFidelity } from './merit/portPhaseFree.js';
 export { powerDistance } from './merit/powerDistance.js';
 
 // Fabricated chips: errors of a process, trials, yield and tolerance

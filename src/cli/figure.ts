@@ -1,9 +1,9 @@
 import type { Command } from 'commander';
-import { externalAtOutput } from '../chip/Chip.js';
 import { InputError } from '../errors/InputError.js';
 import { matrixHash, runIdentity } from '../files/contentHash.js';
 import type { Merit } from '../merit/merit.js';
 import { figuresOfMerit } from '../merit/merit.js';
+import { freePorts } from '../merit/portPhaseFree.js';
 import { simulate } from '../simulate/simulate.js';
 import type { OutputOptions } from './commandOptions.js';
 import { addChipOptions, addOutputOptions, addTargetOptions, pathFor } from './commandOptions.js';
@@ -94,8 +94,7 @@ async function runFigure(path: string, options: FigureOptions): Promise<void> {
 
 function meritOf({ target, settings, readChip: { chip } }: LoadedTable): Merit | null {
   if (target === null) return null;
-  const free = !chip.portShifters && externalAtOutput(chip.style) ? 'input' : 'output';
-  return figuresOfMerit(target.matrix, simulate(chip, settings), free);
+  return figuresOfMerit(target.matrix, simulate(chip, settings), freePorts(chip));
 }
 
 function parseWidth(text: string): 'one-column' | 'two-column' | number {

@@ -1,12 +1,11 @@
 import type { Command } from 'commander';
 import type { ReadChip } from '../chip/readChip.js';
-import { externalAtOutput } from '../chip/Chip.js';
 import { printableText } from '../figure/printableText.js';
 import { contentHash, matrixHash, runIdentity } from '../files/contentHash.js';
 import { packageVersion } from '../files/version.js';
 import type { Merit } from '../merit/merit.js';
 import { figuresOfMerit, MERIT_KEYS } from '../merit/merit.js';
-import { missingPortPhases } from '../merit/portPhaseFree.js';
+import { freePorts, missingPortPhases } from '../merit/portPhaseFree.js';
 import type { Program } from '../program/carryingSweep.js';
 import { formatPhaseJson } from '../program/formatPhaseJson.js';
 import type { PhaseRow } from '../program/PhaseTable.js';
@@ -129,8 +128,7 @@ function settledOptions(options: PhasesOptions): Record<string, unknown> {
 function programOne({ chip }: ReadChip, target: LoadedTarget): Programmed {
   const { program, uncorrected } = programChip(chip, target.matrix);
   const achieved = simulate(chip, program.settings);
-  const side = externalAtOutput(chip.style) ? 'input' : 'output';
-  const free = chip.portShifters ? 'output' : side;
+  const free = freePorts(chip);
   return {
     target,
     program,
@@ -139,7 +137,7 @@ function programOne({ chip }: ReadChip, target: LoadedTarget): Programmed {
     meritUncorrected: uncorrected
       ? figuresOfMerit(target.matrix, simulate(chip, uncorrected.settings), free)
       : null,
-    missing: chip.portShifters ? null : missingPortPhases(target.matrix, achieved, side),
+    missing: chip.portShifters ? null : missingPortPhases(target.matrix, achieved, free),
   };
 }
 

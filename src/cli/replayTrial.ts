@@ -1,8 +1,8 @@
-import { externalAtOutput } from '../chip/Chip.js';
 import type { ChipFile } from '../chip/chipSchema.js';
 import { contentHash, matrixHash, runIdentity } from '../files/contentHash.js';
 import { packageVersion } from '../files/version.js';
 import { figuresOfMerit } from '../merit/merit.js';
+import { freePorts } from '../merit/portPhaseFree.js';
 import { formatPhaseJson } from '../program/formatPhaseJson.js';
 import { formatPhaseCsv, phaseRows } from '../program/PhaseTable.js';
 import { simulate } from '../simulate/simulate.js';
@@ -36,8 +36,7 @@ export async function replayTrial(
   const readChip = chipFromDocument(file);
   const { chip } = readChip;
   const { target, settings } = sampled;
-  const free = !chip.portShifters && externalAtOutput(chip.style) ? 'input' : 'output';
-  const merit = figuresOfMerit(target, simulate(chip, settings), free);
+  const merit = figuresOfMerit(target, simulate(chip, settings), freePorts(chip));
   const thresholds = thresholdsOf(options);
   const judged = judge(thresholds, merit);
   const rows = phaseRows(chip, settings);

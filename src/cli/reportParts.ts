@@ -64,7 +64,8 @@ export function judge(requirements: readonly Requirement[], merit: Merit): Judge
   });
 }
 
-const MERIT_NAMES: Readonly<Record<keyof Merit, string>> = {
+/** Figures of merit as people call them. */
+export const MERIT_NAMES: Readonly<Record<keyof Merit, string>> = {
   fidelity: 'fidelity',
   averageGateFidelity: 'average gate fidelity',
   portPhaseFreeFidelity: 'port-phase-free fidelity',

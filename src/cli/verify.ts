@@ -1,11 +1,10 @@
 import type { Command } from 'commander';
-import { externalAtOutput } from '../chip/Chip.js';
 import { InputError } from '../errors/InputError.js';
 import { printableText } from '../figure/printableText.js';
 import { matrixHash, runIdentity } from '../files/contentHash.js';
 import { unitarityDefect } from '../matrix/norms.js';
 import { figuresOfMerit } from '../merit/merit.js';
-import { missingPortPhases } from '../merit/portPhaseFree.js';
+import { freePorts, missingPortPhases } from '../merit/portPhaseFree.js';
 import { limitSettings } from '../program/limitSettings.js';
 import { programChip } from '../program/programChip.js';
 import { simulate } from '../simulate/simulate.js';
@@ -77,8 +76,7 @@ async function runVerify(path: string, options: VerifyOptions): Promise<number> 
   }
   const { settings, outOfRange } = limitSettings(chip, table.settings);
   const { program, uncorrected } = programChip(chip, target.matrix);
-  const side = externalAtOutput(chip.style) ? 'input' : 'output';
-  const free = chip.portShifters ? 'output' : side;
+  const free = freePorts(chip);
   const achieved = simulate(chip, settings);
   const merit = figuresOfMerit(target.matrix, achieved, free);
   const meritUncorrected = uncorrected
@@ -109,7 +107,7 @@ async function runVerify(path: string, options: VerifyOptions): Promise<number> 
       outOfReach: outOfReachBlock(chip, program.outOfReach),
       outOfRange: outOfRangeBlock(outOfRange),
       missingPortPhases: missingPortPhasesBlock(
-        chip.portShifters ? null : missingPortPhases(target.matrix, achieved, side),
+        chip.portShifters ? null : missingPortPhases(target.matrix, achieved, free),
       ),
       requirements,
     },

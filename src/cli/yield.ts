@@ -20,7 +20,7 @@ import { finish } from './finish.js';
 import { shortNumber } from './messages.js';
 import { describedRun, runKept } from './keptRun.js';
 import { defaultFolder } from './names.js';
-import { chipBlock, reportHead, shownMerit } from './reportParts.js';
+import { chipBlock, MERIT_NAMES, reportHead, shownMerit } from './reportParts.js';
 import type { PlanOutcome, PlanResults } from './runPlans.js';
 import { replayTrial } from './replayTrial.js';
 import { runBudget } from './yieldBudget.js';
@@ -284,7 +284,7 @@ function figureOptions(
   const [{ key, limit }] = thresholds as readonly [Threshold];
   const rest = thresholds.slice(1).map(thresholdWords);
   return {
-    label: FIGURE_LABELS[key] ?? key,
+    label: MERIT_NAMES[key],
     threshold: limit,
     thresholdIsUpperLimit: isUpperLimit(key),
     title: chip.name,
@@ -296,20 +296,9 @@ function figureOptions(
   };
 }
 
-const FIGURE_LABELS: Partial<Record<keyof Merit, string>> = {
-  fidelity: 'fidelity',
-  averageGateFidelity: 'average gate fidelity',
-  portPhaseFreeFidelity: 'port-phase-free fidelity',
-  rmsError: 'rms matrix error',
-  worstCaseError: 'worst-case error',
-  powerDistance: 'power distance',
-  transmission: 'transmission',
-  transmissionDb: 'transmission (dB)',
-};
-
 /** A threshold as people write it. */
 export function thresholdWords({ key, limit }: Threshold): string {
-  return `${FIGURE_LABELS[key] ?? key} ${isUpperLimit(key) ? '\u2264' : '\u2265'} ${limit}`;
+  return `${MERIT_NAMES[key]} ${isUpperLimit(key) ? '\u2264' : '\u2265'} ${limit}`;
 }
 
 function showYield(
@@ -330,7 +319,7 @@ function showYield(
     const { mean, standardError, median, worst } = summaries[k]!;
     const error = standardError === null ? '' : ` \u00b1 ${shortNumber(standardError)}`;
     console.result(
-      `${FIGURE_LABELS[key] ?? key}: mean ${shownMerit(mean)}${error}, median ${shownMerit(median)}, ` +
+      `${MERIT_NAMES[key]}: mean ${shownMerit(mean)}${error}, median ${shownMerit(median)}, ` +
         `worst ${shownMerit(worst.value)} (trial ${worst.trial})`,
     );
   });

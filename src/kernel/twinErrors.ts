@@ -8,12 +8,7 @@ const SPLITTER = 2 * LANES;
 
 type ErrorKernels = Pick<
   Kernels,
-  | 'correlateGrid'
-  | 'pickPlaces'
-  | 'correlatePairs'
-  | 'drawSplitters'
-  | 'turnSplitters'
-  | 'turnFactors'
+  'correlateGrid' | 'pickPlaces' | 'correlatePairs' | 'drawSplitters' | 'turnSplitters' | 'turnFactors'
 >;
 
 /** Twins of assembly/errors.ts. */

@@ -110,7 +110,9 @@ export function twinPanels(memory: () => TwinMemory): PanelKernels {
       power += factorPower * doubles[sums / 8 + 3 * row + 2]!;
       portSum += Math.sqrt(factorPower * (x * x + y * y));
     }
-    [traceRe, traceIm, power, portSum].forEach((value, k) => (doubles[result / 8 + LANES * k + lane] = value));
+    [traceRe, traceIm, power, portSum].forEach(
+      (value, k) => (doubles[result / 8 + LANES * k + lane] = value),
+    );
   };
 
   return { propagatePanel, accumulatePanel, judgeTrial };

@@ -1,9 +1,16 @@
+import type { Chip } from '../chip/Chip.js';
+import { externalAtOutput } from '../chip/Chip.js';
 import type { ComplexMatrix } from '../matrix/ComplexMatrix.js';
 import { frobeniusNorm } from '../matrix/norms.js';
 import { wrapTurn } from '../units/angle.js';
 
 /** The ports whose phases are free: those before the detectors, or those behind the sources. */
 export type PortSide = 'output' | 'input';
+
+/** The ports whose phases a chip leaves free: those of the port shifters that it does not have, else the outputs. */
+export function freePorts(chip: Chip): PortSide {
+  return !chip.portShifters && externalAtOutput(chip.style) ? 'input' : 'output';
+}
 
 /**
  * Fidelity maximised over the phases of the free ports: (sum_i abs((V U^dag)_ii))^2 / (N Tr(V^dag V)) over the outputs, with U^dag V

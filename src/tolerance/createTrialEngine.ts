@@ -10,6 +10,7 @@ import type { ComplexMatrix } from '../matrix/ComplexMatrix.js';
 import { haarFromStream } from '../matrix/haar.js';
 import type { Merit } from '../merit/merit.js';
 import { figuresOfMerit } from '../merit/merit.js';
+import { freePorts } from '../merit/portPhaseFree.js';
 import { carryingSweep } from '../program/carryingSweep.js';
 import { randomStream } from '../random/RandomStream.js';
 import { STREAMS } from '../random/streams.js';
@@ -76,9 +77,9 @@ export function createTrialEngine(plan: TrialPlan, instance: KernelInstance = lo
   };
   const quantise = errors.bits > 0 ? createQuantiser(chip, errors.bits) : (settings: Settings) => settings;
   const solvedByKernel = retune === 'cell' && errors.bits === 0 && rangesNeverBind(chip);
-  const freePorts = !chip.portShifters && atOutput ? 'input' : 'output';
+  const free = freePorts(chip);
   const fast = figures.every(
-    (key) => FAST_FIGURES.has(key) && (key !== 'portPhaseFreeFidelity' || freePorts === 'output'),
+    (key) => FAST_FIGURES.has(key) && (key !== 'portPhaseFreeFidelity' || free === 'output'),
   );
   const shifterAmplitudes = portAmplitudes(chip, atOutput);
   const targets: ComplexMatrix[] = [];
@@ -273,7 +274,7 @@ export function createTrialEngine(plan: TrialPlan, instance: KernelInstance = lo
   function judgeLane(lane: Lane, rows: Float64Array, at: number): void {
     if (!fast) {
       const sampled = sampleLane(lane);
-      const merit = figuresOfMerit(sampled.target, simulate(sampled.chip, sampled.settings), freePorts);
+      const merit = figuresOfMerit(sampled.target, simulate(sampled.chip, sampled.settings), free);
       figures.forEach((key, k) => (rows[at + k] = merit[key]));
       return;
     }
