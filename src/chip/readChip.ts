@@ -35,31 +35,58 @@ export function chipFromDocument(document: unknown): ReadChip {
       'Use a newer version of phasewright.',
     );
   }
-  const { measuredCells } = document as { measuredCells?: unknown };
-  const wellFormed = Array.isArray(measuredCells) && measuredCells.every(isMeasuredCell);
-  const parsed = chipFileSchema.safeParse(wellFormed ? { ...document, measuredCells: [] } : document);
+  const { measuredCells, shifterOverrides } = document as Readonly<Record<string, unknown>>;
+  const lists: Pick<ChipFile, 'measuredCells' | 'shifterOverrides'> = {
+    ...(wellFormed(measuredCells, isMeasuredCell) ? { measuredCells } : {}),
+    ...(wellFormed(shifterOverrides, isShifterOverride) ? { shifterOverrides } : {}),
+  };
+  const emptied = Object.fromEntries(Object.keys(lists).map((key) => [key, []]));
+  const parsed = chipFileSchema.safeParse({ ...document, ...emptied });
   if (!parsed.success) {
     const { field, what, remedy } = describeIssue(chipFileSchema, document, parsed.error.issues);
     throw chipFault(field, what, remedy);
   }
-  const file: ChipFile = wellFormed ? { ...parsed.data, measuredCells } : parsed.data;
+  const file: ChipFile = { ...parsed.data, ...lists };
   return { file, chip: resolveChip(file) };
 }
 
+function wellFormed<T>(list: unknown, test: (entry: unknown) => entry is T): list is T[] {
+  return Array.isArray(list) && list.every(test);
+}
+
 type MeasuredCell = NonNullable<ChipFile['measuredCells']>[number];
+type ShifterOverride = NonNullable<ChipFile['shifterOverrides']>[number];
 
 /**
  * True for an entry that the schema takes too. A measured chip of 1024 ports has half a million of them, for which the schema
  * needs a second and this check a few milliseconds; what it does not take, the schema judges and explains.
  */
 function isMeasuredCell(entry: unknown): entry is MeasuredCell {
-  if (typeof entry !== 'object' || entry === null || Object.keys(entry).length !== 2) return false;
-  const { cell, couplingRatio } = entry as { cell?: unknown; couplingRatio?: unknown };
+  if (typeof entry !== 'object' || entry === null) return false;
+  const { cell, couplingRatio, lossDb } = entry as Readonly<Record<string, unknown>>;
+  if (Object.keys(entry).length !== (lossDb === undefined ? 2 : 3)) return false;
+  const losses = lossDb === undefined || isPair(lossDb, 0, 1000);
+  return isCount(cell) && isPair(couplingRatio, 0, 1) && losses;
+}
+
+/** The same for shifters with a name or a range. */
+function isShifterOverride(entry: unknown): entry is ShifterOverride {
+  if (typeof entry !== 'object' || entry === null) return false;
+  const { shifter, name, rangeRad } = entry as Readonly<Record<string, unknown>>;
+  const keys = 1 + (name === undefined ? 0 : 1) + (rangeRad === undefined ? 0 : 1);
+  if (Object.keys(entry).length !== keys || !isCount(shifter)) return false;
+  const named = name === undefined || (typeof name === 'string' && name.length >= 1 && name.length <= 200);
+  return named && (rangeRad === undefined || isPair(rangeRad, -1e4, 1e4));
+}
+
+function isCount(value: unknown): value is number {
+  return Number.isSafeInteger(value) && (value as number) >= 1;
+}
+
+function isPair(value: unknown, low: number, high: number): value is [number, number] {
   return (
-    Number.isSafeInteger(cell) &&
-    (cell as number) >= 1 &&
-    Array.isArray(couplingRatio) &&
-    couplingRatio.length === 2 &&
-    couplingRatio.every((ratio) => typeof ratio === 'number' && ratio >= 0 && ratio <= 1)
+    Array.isArray(value) &&
+    value.length === 2 &&
+    value.every((number) => typeof number === 'number' && number >= low && number <= high)
   );
 }

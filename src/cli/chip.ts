@@ -17,7 +17,7 @@ import { addOutputOptions, numberFor, pathFor } from './commandOptions.js';
 import { createConsole } from './console.js';
 import { finish } from './finish.js';
 import { chipHash, loadChipFile } from './loadChip.js';
-import { shortNumber } from './messages.js';
+import { counted, shortNumber } from './messages.js';
 import { defaultFolder, slug } from './names.js';
 import { chipBlock, reportHead } from './reportParts.js';
 
@@ -193,8 +193,8 @@ function reachCount(
 function describeChip(chip: Chip): string {
   const { mesh, style, couplingRatios, loss } = chip;
   const lines = [
-    `${printableText(chip.name)}: ${mesh.layout} mesh${mesh.mirror === 'none' ? '' : ` (mirror ${mesh.mirror})`}, ${mesh.modes} ports, ` +
-      `${mesh.cells} cells in ${mesh.columns} columns, ${shifterCount(chip)} shifters`,
+    `${printableText(chip.name)}: ${mesh.layout} mesh${mesh.mirror === 'none' ? '' : ` (mirror ${mesh.mirror})`}, ${counted(mesh.modes, 'port')}, ` +
+      `${counted(mesh.cells, 'cell')} in ${counted(mesh.columns, 'column')}, ${counted(shifterCount(chip), 'shifter')}`,
     `cells: internal phase ${style.internal}, external phase ${style.external}, ${style.splitterForm} splitters`,
     `port shifters: ${chip.portShifters ? 'yes' : 'no'}`,
   ];

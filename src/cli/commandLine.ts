@@ -24,7 +24,7 @@ export async function runCommandLine(args: readonly string[]): Promise<number> {
   let exitCode: number = EXIT.done;
   const program = buildProgram((code) => (exitCode = code));
   if (args.length === 0) {
-    process.stderr.write(program.helpInformation());
+    program.configureOutput({ writeErr: (text) => process.stderr.write(text) }).outputHelp({ error: true });
     return EXIT.input;
   }
   try {

@@ -87,6 +87,12 @@ export function addTargetOptions(command: Command): Command {
     );
 }
 
+/** The options of the target that change a result. A --require only judges it. */
+export function settledTargetOptions(options: TargetOptions): Record<string, unknown> {
+  const { transpose, conjugate, ports, nearest, unitaryWithin } = options;
+  return { transpose, conjugate, ports, nearest, unitaryWithin };
+}
+
 export function addUnitOption(command: Command): Command {
   return command.addOption(
     new Option('--unit <unit>', 'unit of the phases that are printed; files hold radians')

@@ -1,20 +1,17 @@
 import type { Command } from 'commander';
 import { InputError } from '../errors/InputError.js';
 import { matrixHash, runIdentity } from '../files/contentHash.js';
-import type { Merit } from '../merit/merit.js';
-import { figuresOfMerit } from '../merit/merit.js';
-import { freePorts } from '../merit/portPhaseFree.js';
-import { simulate } from '../simulate/simulate.js';
 import type { OutputOptions } from './commandOptions.js';
 import { addChipOptions, addOutputOptions, addTargetOptions, pathFor } from './commandOptions.js';
 import { createConsole } from './console.js';
 import { captionLines } from './figureText.js';
 import { finish } from './finish.js';
 import { chipHash } from './loadChip.js';
-import type { LoadedTable, TableOptions } from './loadTable.js';
+import type { TableOptions } from './loadTable.js';
 import { loadTable } from './loadTable.js';
-import { defaultFolder } from './names.js';
-import { chipBlock, reportHead } from './reportParts.js';
+import { tellOutOfRange } from './messages.js';
+import { defaultTableFolder } from './names.js';
+import { chipBlock, outOfRangeBlock, reportHead } from './reportParts.js';
 
 interface FigureOptions extends OutputOptions, TableOptions {
   readonly to?: string;
@@ -69,7 +66,7 @@ async function runFigure(path: string, options: FigureOptions): Promise<void> {
   const { width, numbers, cellNumbers, title } = options;
   const svg = drawMeshFigure(chip, table.settings, {
     title: title ?? chip.name,
-    captionLines: captionLines(chip, table.target?.source ?? null, meritOf(table)),
+    captionLines: captionLines(chip, table.target?.source ?? null, table.merit),
     ...(width === undefined ? {} : { width }),
     ...(numbers === undefined ? {} : { numbers }),
     ...(cellNumbers === undefined ? {} : { cellNumbers }),
@@ -84,17 +81,19 @@ async function runFigure(path: string, options: FigureOptions): Promise<void> {
     { width, numbers, cellNumbers, title },
   );
   await finish(console, options, {
-    folder: options.out ?? defaultFolder('figure', { path, text: path }),
+    folder: options.out ?? defaultTableFolder('figure', path),
     files: new Map([['mesh.svg', svg]]),
     named: options.to === undefined ? undefined : { path: options.to, content: svg },
-    report: { ...reportHead('figure', runId), table: { source: path }, chip: chipBlock(chip) },
+    report: {
+      ...reportHead('figure', runId),
+      table: { source: path },
+      ...(table.target ? { target: { source: table.target.source, modes: chip.mesh.modes } } : {}),
+      chip: chipBlock(chip),
+      outOfRange: outOfRangeBlock(table.outOfRange),
+    },
     show: () => undefined,
   });
-}
-
-function meritOf({ target, settings, readChip: { chip } }: LoadedTable): Merit | null {
-  if (target === null) return null;
-  return figuresOfMerit(target.matrix, simulate(chip, settings), freePorts(chip));
+  tellOutOfRange(console, table.outOfRange, 'rad');
 }
 
 function parseWidth(text: string): 'one-column' | 'two-column' | number {

@@ -1,13 +1,22 @@
+import { basename } from 'node:path';
 import type { Chip } from '../chip/Chip.js';
 import type { Merit } from '../merit/merit.js';
+import { matrixFileKind } from '../target/MatrixFileKind.js';
+import { counted } from './messages.js';
 import { shownMerit } from './reportParts.js';
 
 /** The caption of a mesh figure: target, layout and fidelity. */
 export function captionLines(chip: Chip, targetSource: string | null, merit: Merit | null): string[] {
   const { layout, mirror, modes, cells, columns } = chip.mesh;
   const mirrored = mirror === 'none' ? '' : `, mirrored (${mirror})`;
-  const lines = [`${layout} mesh${mirrored}: ${modes} ports, ${cells} cells in ${columns} columns`];
-  if (targetSource !== null) lines.unshift(`target: ${targetSource}`);
+  const lines = [
+    `${layout} mesh${mirrored}: ${counted(modes, 'port')}, ${counted(cells, 'cell')} in ${counted(columns, 'column')}`,
+  ];
+  if (targetSource !== null) {
+    // The folders of somebody's machine have no place in a figure.
+    const isFile = matrixFileKind(targetSource) !== undefined;
+    lines.unshift(`target: ${isFile ? basename(targetSource) : targetSource}`);
+  }
   if (merit !== null) {
     lines.push(
       chip.portShifters

@@ -10,7 +10,7 @@ export interface Outcome {
   /** Contents by file name, without the report. */
   readonly files: ReadonlyMap<string, string | Uint8Array>;
   /** The report without `files`, which are added here. */
-  readonly report: Readonly<Record<string, unknown>> & { readonly runId: string };
+  readonly report: Readonly<Record<string, unknown>> & { readonly runId: string; readonly command: string };
   /** The file that --to names. */
   readonly named?: NamedFile | undefined;
   /** Prints the result in words. */
@@ -28,7 +28,9 @@ export async function finish(console: Console, options: OutputOptions, outcome: 
     files,
     report: text,
     runId: report.runId,
+    command: report.command,
     force: options.force === true,
+    replacesLoneReport: files.size === 0 && options.out === undefined,
     ...(named === undefined ? {} : { named }),
   });
   if (options.json === true) process.stdout.write(text);

@@ -80,7 +80,13 @@ export async function runKept(
   let finished = false;
   try {
     // After the store, which can say more: what has changed since an unfinished run.
-    await requireNoOtherRun({ folder, files: files.map((name) => [name, '']), runId, force });
+    await requireNoOtherRun({
+      folder,
+      files: files.map((name) => [name, '']),
+      runId,
+      command: 'yield',
+      force,
+    });
     for (const note of store.notes) console.message(note);
     const { value: outcome, interrupted } = await withInterrupt((signal) =>
       runPlans({

@@ -1,4 +1,5 @@
 import { InputError } from '../errors/InputError.js';
+import type { ChipFile } from '../chip/chipSchema.js';
 import type { ReadChip } from '../chip/readChip.js';
 import { contentHash } from '../files/contentHash.js';
 import { readInputFile } from '../files/readInput.js';
@@ -31,7 +32,12 @@ export async function idealChipFor(
   return { file, chip: resolveChip(file) };
 }
 
-/** Content hash of a chip: of its document without the note of the schema's place. */
+/** A chip's document without the place of its schema, which is told from the chip file's own folder. */
+export function withoutSchema({ $schema, ...file }: ChipFile): ChipFile {
+  return file;
+}
+
+/** Content hash of a chip: of its document without the place of its schema. */
 export function chipHash({ file }: ReadChip): string {
-  return contentHash(JSON.stringify({ ...file, $schema: undefined }));
+  return contentHash(JSON.stringify(withoutSchema(file)));
 }

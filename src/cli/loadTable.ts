@@ -1,13 +1,20 @@
 import { existsSync } from 'node:fs';
+import { basename } from 'node:path';
 import { InputError } from '../errors/InputError.js';
 import type { ReadChip } from '../chip/readChip.js';
 import type { Settings } from '../chip/Settings.js';
 import { contentHash } from '../files/contentHash.js';
 import { readInputFile } from '../files/readInput.js';
 import type { ComplexMatrix } from '../matrix/ComplexMatrix.js';
+import type { Merit } from '../merit/merit.js';
+import { figuresOfMerit } from '../merit/merit.js';
+import { freePorts } from '../merit/portPhaseFree.js';
+import type { OutOfRange } from '../program/carryingSweep.js';
+import { limitSettings } from '../program/limitSettings.js';
 import type { PhaseRow } from '../program/PhaseTable.js';
 import { readPhaseTable } from '../program/readPhaseTable.js';
 import { settingsFromRows } from '../program/settingsFromRows.js';
+import { simulate } from '../simulate/simulate.js';
 import type { ChipOptions, TargetOptions } from './commandOptions.js';
 import { idealChipFor, loadNamedChip } from './loadChip.js';
 import { named, prepareLoaded, readTarget, theOnlyMatrix } from './loadTarget.js';
@@ -29,9 +36,16 @@ export interface TableTarget {
 export interface LoadedTable {
   readonly path: string;
   readonly rows: readonly PhaseRow[];
+  /** The table's phases as the chip can set them. */
   readonly settings: Settings;
+  /** The phases that it cannot set as they stand. */
+  readonly outOfRange: readonly OutOfRange[];
   readonly readChip: ReadChip;
   readonly target: TableTarget | null;
+  /** What the chip then does. */
+  readonly achieved: ComplexMatrix;
+  /** How well, where the target is known. */
+  readonly merit: Merit | null;
   /** Content hash of the phases. */
   readonly hash: string;
 }
@@ -44,6 +58,7 @@ export interface LoadedTable {
 export async function loadTable(path: string, options: TableOptions): Promise<LoadedTable> {
   const bytes = await readInputFile(path);
   const table = named(path, () => readPhaseTable(bytes));
+  refuseTargetOptions(options);
   const origin = table.origin ?? (await originBeside(path));
   const given = options.target === undefined ? undefined : await readTarget(options.target);
   const namedChip = await loadNamedChip(options);
@@ -73,13 +88,43 @@ export async function loadTable(path: string, options: TableOptions): Promise<Lo
       );
     }
   }
-  const settings = named(path, () => settingsFromRows(chip, table.rows));
+  const { settings, outOfRange } = limitSettings(
+    chip,
+    named(path, () => settingsFromRows(chip, table.rows)),
+  );
+  const achieved = simulate(chip, settings);
+  const merit = target && figuresOfMerit(target.matrix, achieved, freePorts(chip));
   const hash = contentHash(JSON.stringify(table.rows.map(({ shifter, phaseRad }) => [shifter, phaseRad])));
-  return { path, rows: table.rows, settings, readChip, target, hash };
+  return { path, rows: table.rows, settings, outOfRange, readChip, target, achieved, merit, hash };
+}
+
+/** Options that say how a target is to be read mean nothing for the one in a table, which has been read already. */
+function refuseTargetOptions({
+  target,
+  transpose,
+  conjugate,
+  ports,
+  nearest,
+  unitaryWithin,
+}: TableOptions): void {
+  if (target !== undefined) return;
+  const given = Object.entries({
+    transpose,
+    conjugate,
+    ports,
+    nearest,
+    'unitary-within': unitaryWithin,
+  }).find(([, value]) => value !== undefined);
+  if (given === undefined) return;
+  throw new InputError(
+    'usage/target',
+    `--${given[0]} says how a target is read, and the table has its own already`,
+    'Name a target with --target, or leave the option out.',
+  );
 }
 
 async function originBeside(path: string): Promise<ReturnType<typeof readPhaseTable>['origin']> {
-  const beside = path.replace(/\.[^./\\]+$/, '.json');
+  const beside = nameBeside(path);
   if (beside === path || !existsSync(beside)) return null;
   const bytes = await readInputFile(beside);
   try {
@@ -91,10 +136,15 @@ async function originBeside(path: string): Promise<ReturnType<typeof readPhaseTa
   }
 }
 
+/** The JSON that belongs to a CSV: of the same name, in the same folder. */
+function nameBeside(path: string): string {
+  return path.replace(/\.[^./\\]+$/, '.json');
+}
+
 function chipUnknown(path: string): InputError {
   return new InputError(
     'table/chip',
-    'there is no phases.json beside this table, so its chip is not known',
+    `there is no ${basename(nameBeside(path))} beside this table, so its chip is not known`,
     'Name the chip file with --chip, or say --layout and --target for an ideal chip.',
     { source: path },
   );

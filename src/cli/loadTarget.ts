@@ -5,7 +5,9 @@ import { readInputFile, readStandardInput } from '../files/readInput.js';
 import { runWithin } from '../files/timeLimit.js';
 import type { ComplexMatrix } from '../matrix/ComplexMatrix.js';
 import { evaluateExpression } from '../target/evaluateExpression.js';
+import type { MatrixFileKind } from '../target/MatrixFileKind.js';
 import { kindOfText, MATRIX_FILE_KINDS, matrixFileKind } from '../target/MatrixFileKind.js';
+import { parseNpyHeader } from '../target/npyHeader.js';
 import { parsePorts } from '../target/parsePorts.js';
 import type { PreparedTarget } from '../target/prepareTarget.js';
 import { prepareTarget } from '../target/prepareTarget.js';
@@ -21,8 +23,10 @@ export interface RawTarget {
   readonly source: string;
   /** Set when it is a file. */
   readonly path?: string;
-  /** One matrix, or a batch. */
+  /** One matrix, or those of a batch. */
   readonly matrices: readonly ComplexMatrix[];
+  /** Whether it is a batch: an .npy of shape (K, N, N), even for K = 1. */
+  readonly batch: boolean;
 }
 
 /** A target ready to be programmed. */
@@ -39,12 +43,12 @@ export async function readTarget(argument: string): Promise<RawTarget> {
   if (argument === '-') {
     const source = 'standard input';
     const bytes = await readStandardInput();
-    return { source, matrices: named(source, () => readMatrices(bytes, kindOfText(bytes))) };
+    return named(source, () => rawTarget({ source }, bytes, kindOfText(bytes)));
   }
   const kind = matrixFileKind(argument);
   if (kind !== undefined) {
     const bytes = await readInputFile(argument);
-    return { source: argument, path: argument, matrices: named(argument, () => readMatrices(bytes, kind)) };
+    return named(argument, () => rawTarget({ source: argument, path: argument }, bytes, kind));
   }
   refuseBareArgument(argument);
   if (existsSync(argument) || looksLikePath(argument)) {
@@ -57,18 +61,32 @@ export async function readTarget(argument: string): Promise<RawTarget> {
   }
   try {
     const timeLimit = <T>(run: () => T): T => runWithin(FORMULA_TIME, run);
-    return { source: argument, matrices: [await evaluateExpression(argument, { timeLimit })] };
+    const matrices = [await evaluateExpression(argument, { timeLimit })];
+    return { source: argument, matrices, batch: false };
   } catch (error) {
     throw error instanceof InputError ? error.withSource(cut(argument)) : error;
   }
 }
 
-/** Applies the options that turn what was read into a target for a chip of `modes` ports (undefined: of its own size). */
+function rawTarget(
+  origin: Pick<RawTarget, 'source' | 'path'>,
+  bytes: Uint8Array,
+  kind: MatrixFileKind,
+): RawTarget {
+  const matrices = readMatrices(bytes, kind);
+  return { ...origin, matrices, batch: kind === 'npy' && parseNpyHeader(bytes).shape.length === 3 };
+}
+
+/**
+ * Applies the options that turn what was read into a target for a chip of `modes` ports (undefined: of its own size).
+ * @param index place of the matrix in a batch, from 0
+ */
 export function prepareLoaded(
   raw: RawTarget,
   matrix: ComplexMatrix,
   options: TargetOptions,
   modes: number | undefined,
+  index = 0,
 ): LoadedTarget {
   if (options.ports !== undefined && modes === undefined) {
     throw new InputError(
@@ -77,7 +95,8 @@ export function prepareLoaded(
       'Name the chip with --chip.',
     );
   }
-  const prepared = named(raw.source, () =>
+  const source = raw.batch ? `${raw.source}, matrix ${index + 1}` : raw.source;
+  const prepared = named(source, () =>
     prepareTarget(matrix, {
       transpose: options.transpose === true,
       conjugate: options.conjugate === true,
@@ -87,7 +106,7 @@ export function prepareLoaded(
       ...(options.unitaryWithin === undefined ? {} : { unitaryWithin: options.unitaryWithin }),
     }),
   );
-  return { source: raw.source, ...prepared };
+  return { source, ...prepared };
 }
 
 /** The same for a command that takes one matrix. @throws InputError `target/batch` for more than one */

@@ -8,14 +8,16 @@ import { shownMerit } from './reportParts.js';
 
 const MOST_LISTED = 5;
 
-/** Says which cells cannot reach what is wanted of them. */
-export function tellOutOfReach(console: Console, chip: Chip, list: readonly OutOfReach[]): void {
+/** Says which cells cannot reach what is wanted of them, and what that means. */
+export function tellOutOfReach(
+  console: Console,
+  chip: Chip,
+  list: readonly OutOfReach[],
+  meaning = 'the nearest in reach is set',
+): void {
   if (list.length === 0) return;
-  const one = list.length === 1;
-  console.warning(
-    `${list.length} ${one ? 'cell cannot reach its' : 'cells cannot reach their'} bar power and ` +
-      `${one ? 'is' : 'are'} set to the nearest in reach (outOfReach in the report):`,
-  );
+  const cells = list.length === 1 ? 'cell cannot reach its' : 'cells cannot reach their';
+  console.warning(`${list.length} ${cells} bar power, so ${meaning} (outOfReach in the report):`);
   for (const { cellIndex, wanted, low, high } of list.slice(0, MOST_LISTED)) {
     const column = chip.mesh.columnIndex[cellIndex]! + 1;
     const port = chip.mesh.upperPortIndex[cellIndex]! + 1;
@@ -32,7 +34,7 @@ export function tellOutOfRange(console: Console, list: readonly OutOfRange[], un
   if (list.length === 0) return;
   const one = list.length === 1;
   console.warning(
-    `${list.length} ${one ? 'shifter is' : 'shifters are'} out of range and set to an end of it (outOfRange in the report):`,
+    `${list.length} ${one ? 'shifter is' : 'shifters are'} out of range and set within it (outOfRange in the report):`,
   );
   for (const { shifterIndex, wantedRad, setRad } of list.slice(0, MOST_LISTED)) {
     console.message(
@@ -53,6 +55,11 @@ export function tellRequirements(console: Console, judged: readonly JudgedRequir
     console.warning(`required ${key}=${limit} is not met${where}: it is ${shownMerit(value)}`);
   }
   return missed.length === 0 ? 0 : 1;
+}
+
+/** A number of things: `1 cell`, `3 cells`. */
+export function counted(count: number, thing: string): string {
+  return `${count} ${thing}${count === 1 ? '' : 's'}`;
 }
 
 /** An angle with its unit, as it is printed. */

@@ -1,4 +1,4 @@
-import { basename, join } from 'node:path';
+import { basename, dirname, join, resolve } from 'node:path';
 import { contentHash } from '../files/contentHash.js';
 
 const LONGEST = 48;
@@ -27,4 +27,15 @@ export function defaultFolder(
   source: { readonly path?: string; readonly text: string },
 ): string {
   return join('out', `${command}-${slug(source.path === undefined ? source.text : stem(source.path))}`);
+}
+
+/**
+ * The same for a command on a phase table. Tables are all called phases.csv: one that stands in a folder of results is told from the others by
+ * the folder's name.
+ */
+export function defaultTableFolder(command: string, path: string): string {
+  const folder = basename(dirname(resolve(path)));
+  const name = /^phases(-\d+)?$/.exec(stem(path));
+  const inResults = name !== null && dirname(path) !== '.' && folder !== '';
+  return defaultFolder(command, { text: inResults ? `${folder}${name[1] ?? ''}` : stem(path) });
 }

@@ -1,4 +1,5 @@
 import type { Command } from 'commander';
+import { externalAtOutput } from '../chip/Chip.js';
 import type { ReadChip } from '../chip/readChip.js';
 import { printableText } from '../figure/printableText.js';
 import { contentHash, matrixHash, runIdentity } from '../files/contentHash.js';
@@ -26,15 +27,24 @@ import {
   addRequireOption,
   addTargetOptions,
   addUnitOption,
+  settledTargetOptions,
 } from './commandOptions.js';
 import type { Console } from './console.js';
 import { createConsole } from './console.js';
 import { captionLines } from './figureText.js';
 import { finish } from './finish.js';
-import { chipHash, idealChipFor, loadNamedChip } from './loadChip.js';
+import { chipHash, idealChipFor, loadNamedChip, withoutSchema } from './loadChip.js';
 import type { LoadedTarget, RawTarget } from './loadTarget.js';
 import { prepareLoaded, rawTargetHash, readTarget } from './loadTarget.js';
-import { cautions, shownAngleNumber, tellOutOfRange, tellOutOfReach, tellRequirements } from './messages.js';
+import {
+  cautions,
+  counted,
+  shortNumber,
+  shownAngleNumber,
+  tellOutOfRange,
+  tellOutOfReach,
+  tellRequirements,
+} from './messages.js';
 import { defaultFolder } from './names.js';
 import {
   chipBlock,
@@ -102,11 +112,13 @@ async function runPhases(argument: string, options: PhasesOptions): Promise<numb
   const readChip = namedChip ?? (await idealChipFor(raw.matrices[0]!.rows, options));
   const modes = namedChip?.chip.mesh.modes;
   const inputs = { target: rawTargetHash(raw), chip: chipHash(readChip) };
-  const runId = runIdentity('phases', inputs, settledOptions(options));
+  const runId = runIdentity('phases', inputs, settledTargetOptions(options));
   const folder = options.out ?? defaultFolder('phases', { ...raw, text: raw.source });
-  const each = raw.matrices.map((matrix) => programOne(readChip, prepareLoaded(raw, matrix, options, modes)));
+  const each = raw.matrices.map((matrix, k) =>
+    programOne(readChip, prepareLoaded(raw, matrix, options, modes, k)),
+  );
   const run: Run = { console, options, readChip, raw, each, runId, folder };
-  return raw.matrices.length === 1 ? reportOne(run) : reportBatch(run);
+  return raw.batch ? reportBatch(run) : reportOne(run);
 }
 
 interface Run {
@@ -117,12 +129,6 @@ interface Run {
   readonly each: readonly Programmed[];
   readonly runId: string;
   readonly folder: string;
-}
-
-/** The options that change the result. */
-function settledOptions(options: PhasesOptions): Record<string, unknown> {
-  const { transpose, conjugate, ports, nearest, unitaryWithin, require } = options;
-  return { transpose, conjugate, ports, nearest, unitaryWithin, require };
 }
 
 function programOne({ chip }: ReadChip, target: LoadedTarget): Programmed {
@@ -186,12 +192,17 @@ function showOne(
 ): void {
   const { chip } = readChip;
   console.result(
-    `${printableText(chip.name)}: ${printableText(target.source)} on ${chip.mesh.cells} cells in ${chip.mesh.columns} columns\n`,
+    `${printableText(chip.name)}: ${printableText(target.source)} on ${counted(chip.mesh.cells, 'cell')} in ${counted(chip.mesh.columns, 'column')}\n`,
   );
   console.result(meritLines(merit, meritUncorrected));
+  if (target.nearestDistance !== null) {
+    console.result(`\nnearest unitary taken, at distance ${shortNumber(target.nearestDistance)} (Frobenius)`);
+  }
   if (!chip.portShifters) {
     console.result(
-      '\nno port shifters: the figure that detectors of power see is the port-phase-free fidelity',
+      externalAtOutput(chip.style)
+        ? '\nno port shifters: the port-phase-free fidelity is blind to the phases of the inputs, as light in one input is'
+        : '\nno port shifters: the port-phase-free fidelity is what detectors of power see',
     );
   }
   console.result(`\n${shownRows(readChip, rows, options.unit)}`);
@@ -219,8 +230,8 @@ function tableFiles(
   const json = formatPhaseJson(rows, {
     version: packageVersion(),
     target,
-    chip: run.readChip.file,
-    options: settledOptions(run.options),
+    chip: withoutSchema(run.readChip.file),
+    options: settledTargetOptions(run.options),
     hashes: { target: matrixHash(target.matrix), chip: chipHash(run.readChip), phases: contentHash(csv) },
   });
   return [
@@ -263,6 +274,7 @@ async function reportBatch(run: Run): Promise<number> {
       chip: chipBlock(readChip.chip),
       worst: worst + 1,
       ...programmedBlocks(run, each[worst]!),
+      requirements: judged[worst],
       tables,
       cautions: cautions(readChip.chip),
     },

@@ -50,7 +50,7 @@ export async function replayTrial(
   });
   const identity = { ...settledOptions(options), errors: plan.errors, thresholds, trial: number };
   await finish(console, options, {
-    folder: options.out ?? `${yieldFolder(scenario.source, scenario)}-trial-${number}`,
+    folder: options.out ?? `${yieldFolder(scenario)}-trial-${number}`,
     files: new Map([
       [`trial-${number}.chip.json`, `${JSON.stringify(file, null, 2)}\n`],
       ['phases.csv', csv],
@@ -76,13 +76,20 @@ export async function replayTrial(
   return 0;
 }
 
-/** The chip file of a sampled chip: every cell measured, and no process any more. */
+/**
+ * The chip file of a sampled chip: every cell measured, no process any more, and no limits of shifters: these bind what is set, and the phases of a
+ * trial are what comes of it.
+ */
 function chipFileOf(base: ChipFile, { chip }: SampledChip, plan: TrialPlan, number: number): ChipFile {
-  const { process, ...rest } = base;
+  const { process, shifterLimits, shifterOverrides = [], ...rest } = base;
   const { couplingRatios, cellLoss, mesh } = chip;
   const hasLosses = plan.errors.lossSigmaDb > 0 || plan.chip.cellLoss !== null;
+  const names = shifterOverrides.flatMap(({ shifter, name }) =>
+    name === undefined ? [] : [{ shifter, name }],
+  );
   return {
     ...rest,
+    ...(names.length > 0 ? { shifterOverrides: names } : {}),
     name: `${base.name ?? `${mesh.layout} ${mesh.modes}`}, trial ${number}`.slice(0, 200),
     measuredCells: Array.from({ length: mesh.cells }, (_, cell) => {
       // What counts is the loss of both splitters together, and that is all that is kept of it.

@@ -87,9 +87,12 @@ export function meritLines(merit: Merit, uncorrected: Merit | null = null): stri
   return (uncorrected ? [header, ...lines] : lines).join('\n');
 }
 
-/** A figure near 1 shows how far it is from 1, a small one its size. */
+/** Nearer to 1 than rounding leaves it. */
+const AS_GOOD_AS_ONE = 1e-12;
+
+/** A figure near 1 shows how far it is from 1 in two digits, any other one six digits. */
 export function shownMerit(value: number): string {
-  if (value > 0.999 && value < 1)
-    return value.toFixed(Math.min(15, Math.max(6, 2 - Math.floor(Math.log10(1 - value)))));
-  return String(Number(value.toPrecision(6)));
+  if (Math.abs(value - 1) < AS_GOOD_AS_ONE) return '1';
+  const digits = value > 0.99 && value < 1 ? Math.max(6, 2 - Math.floor(Math.log10(1 - value))) : undefined;
+  return digits === undefined ? String(Number(value.toPrecision(6))) : value.toFixed(digits);
 }

@@ -1,6 +1,9 @@
+import { InputError } from '../errors/InputError.js';
 import type { ChunkStore } from '../files/chunkStore.js';
+import type { PoolOutcome, PoolRun } from '../files/workerPool.js';
 import { runChunks } from '../files/workerPool.js';
 import { chunkTrials } from '../tolerance/chunking.js';
+import { createTrialEngine } from '../tolerance/createTrialEngine.js';
 import type { TrialPlan } from '../tolerance/TrialPlan.js';
 import type { Console } from './console.js';
 import { createProgress } from './progress.js';
@@ -37,9 +40,11 @@ export interface PlanOutcome {
 /**
  * Runs the trials of plans on worker threads. Chunks are of a size that depends on the plan alone and are taken in order, so the results are the same bytes
  * for any number of workers and after a resume.
+ * @throws InputError `run/size` when the results would fill the memory
  */
 export async function runPlans(run: PlanRun): Promise<PlanOutcome> {
   const { plans, trials, store } = run;
+  requireRoom(plans, trials);
   const jobs = jobsOf(plans, trials);
   const columns = plans[0]!.figures.length;
   const rows = plans.map(() => new Float64Array(trials * columns));
@@ -53,18 +58,15 @@ export async function runPlans(run: PlanRun): Promise<PlanOutcome> {
   const progress = createProgress(run.console, trials * plans.length);
   const started = performance.now();
   let fresh = 0;
-  const outcome = await runChunks<TrialJob, TrialChunk>({
-    workers: run.workers,
-    entry: new URL('./trialWorker.js', import.meta.url),
-    setup: plans,
-    jobs,
-    nameOf: ({ first, count }) => `trials ${first + 1} to ${first + count}`,
-    ...(run.signal === undefined ? {} : { signal: run.signal }),
-    known: ({ number }) =>
+  const chunks = {
+    known: ({ number }: TrialJob): Promise<TrialChunk> | undefined =>
       store?.has(number) === true
         ? store.read(number).then((chunk) => ({ rows: chunk.rows, clamped: chunk.counters[0]! }))
         : undefined,
-    onResult: async (chunk, { plan, number, first, count }) => {
+    onResult: async (
+      chunk: TrialChunk,
+      { plan, number, first, count }: TrialJob,
+    ): Promise<'stop' | undefined> => {
       rows[plan]!.set(chunk.rows, first * columns);
       done[plan] = first + count;
       clamped[plan]! += chunk.clamped;
@@ -75,13 +77,60 @@ export async function runPlans(run: PlanRun): Promise<PlanOutcome> {
       progress.advance(count);
       return run.enough?.(resultsOf(plan)) === true ? 'stop' : undefined;
     },
-  }).finally(() => progress.end());
+  };
+  const ended = await endOf(run, jobs, chunks).finally(() => progress.end());
   const seconds = (performance.now() - started) / 1000;
   return {
     results: plans.map((_, plan) => resultsOf(plan)),
-    interrupted: outcome.ended === 'aborted',
+    interrupted: ended === 'aborted',
     trialsPerSecond: Math.round(fresh / seconds),
   };
+}
+
+/** All judged figures are held in memory until they are written: two gigabytes of them are enough. */
+const MOST_VALUES = 2 ** 28;
+
+function requireRoom(plans: readonly TrialPlan[], trials: number): void {
+  const values = plans.length * trials * plans[0]!.figures.length;
+  if (values <= MOST_VALUES) return;
+  throw new InputError(
+    'run/size',
+    `${plans.length === 1 ? '' : `${plans.length} times `}${trials} trials are more than memory holds`,
+    'Give fewer --trials, points or thresholds.',
+  );
+}
+
+type ChunkHandling = Required<Pick<PoolRun<TrialJob, TrialChunk>, 'known' | 'onResult'>>;
+
+/** Runs jobs, on workers if there are several: to start a worker takes longer than a chunk. */
+async function endOf(
+  { plans, workers, signal }: PlanRun,
+  jobs: readonly TrialJob[],
+  chunks: ChunkHandling,
+): Promise<PoolOutcome['ended']> {
+  const [job, second] = jobs;
+  if (job !== undefined && second === undefined) {
+    // Lets signals in, which a search of many such runs would not.
+    await new Promise((resolve) => setImmediate(resolve));
+    if (signal?.aborted === true) return 'aborted';
+    await chunks.onResult((await chunks.known(job)) ?? runHere(plans[0]!, job), job);
+    return 'all';
+  }
+  const outcome = await runChunks<TrialJob, TrialChunk>({
+    workers,
+    entry: new URL('./trialWorker.js', import.meta.url),
+    setup: plans,
+    jobs,
+    nameOf: ({ first, count }) => `trials ${first + 1} to ${first + count}`,
+    ...(signal === undefined ? {} : { signal }),
+    ...chunks,
+  });
+  return outcome.ended;
+}
+
+function runHere(plan: TrialPlan, { first, count }: TrialJob): TrialChunk {
+  const rows = new Float64Array(count * plan.figures.length);
+  return { rows, clamped: createTrialEngine(plan).run(first, count, rows) };
 }
 
 function jobsOf(plans: readonly TrialPlan[], trials: number): TrialJob[] {

@@ -7,7 +7,13 @@ import { figuresOfMerit } from '../merit/merit.js';
 import { MATRIX_FILE_KINDS, matrixFileKind } from '../target/MatrixFileKind.js';
 import { writeMatrix } from '../target/writeMatrix.js';
 import type { OutputOptions, RequireOption, TargetOptions } from './commandOptions.js';
-import { addOutputOptions, addRequireOption, addTargetOptions, pathFor } from './commandOptions.js';
+import {
+  addOutputOptions,
+  addRequireOption,
+  addTargetOptions,
+  pathFor,
+  settledTargetOptions,
+} from './commandOptions.js';
 import type { Console } from './console.js';
 import { createConsole } from './console.js';
 import { finish } from './finish.js';
@@ -76,11 +82,10 @@ async function runTarget(argument: string, options: TargetCommandOptions): Promi
   const against = options.against === undefined ? undefined : await readAgainst(options.against, matrix);
   const merit = against ? figuresOfMerit(matrix, against.matrix) : null;
   const requirements = judgeOrRefuse(options, merit);
-  const { transpose, conjugate, ports, nearest, unitaryWithin, require } = options;
   const runId = runIdentity(
     'target',
     { target: matrixHash(matrix), against: against ? matrixHash(against.matrix) : '' },
-    { transpose, conjugate, ports, nearest, unitaryWithin, require },
+    settledTargetOptions(options),
   );
   await finish(console, options, {
     folder: options.out ?? defaultFolder('target', { ...raw, text: raw.source }),

@@ -9,6 +9,7 @@ import { requireNoOtherRun } from '../files/writeResults.js';
 import { clopperPearson } from '../statistics/binomialInterval.js';
 import { normalQuantile } from '../statistics/normalDistribution.js';
 import type { ErrorSource } from '../tolerance/errorSources.js';
+import { ERROR_SOURCES } from '../tolerance/errorSources.js';
 import { findTolerance } from '../tolerance/findTolerance.js';
 import { toleranceTheory } from '../tolerance/smallErrorTheory.js';
 import { countPassed, judgedFigures } from '../tolerance/thresholds.js';
@@ -29,6 +30,7 @@ import {
   thresholdsOf,
 } from './trialOptions.js';
 import { loadScenario, planAt } from './trialScenario.js';
+import { QUANTITY_LABELS } from './yieldSweep.js';
 import { percent, scenarioBlocks, settledOptions, thresholdWords, yieldFolder } from './yield.js';
 
 interface ToleranceOptions extends OutputOptions, ChipOptions, TargetOptions, TrialOptions {
@@ -85,10 +87,16 @@ async function runTolerance(argument: string, options: ToleranceOptions): Promis
   const errors = { ...processOf(scenario.readChip.chip.process, options, source), [source]: 0 };
   const settled = { retune: options.retune, seed: options.seed, figures };
   const workers = sensibleWorkers(options.workers);
-  const folder = options.out ?? yieldFolder(argument, scenario, 'tolerance');
+  const folder = options.out ?? yieldFolder(scenario, 'tolerance');
   const identity = { ...settledOptions(options), errors, thresholds, source, yield: options.yield };
   const runId = runIdentity('tolerance', scenario.inputs, identity);
-  await requireNoOtherRun({ folder, files: [['tolerance.csv', '']], runId, force: options.force === true });
+  await requireNoOtherRun({
+    folder,
+    files: [['tolerance.csv', '']],
+    runId,
+    command: 'tolerance',
+    force: options.force === true,
+  });
   const planFor = (value: number): ReturnType<typeof planAt> =>
     planAt(scenario, errors, settled, source, value);
   const [start, most] = SEARCHED[source]!;
@@ -126,13 +134,13 @@ async function runTolerance(argument: string, options: ToleranceOptions): Promis
   const svg = drawSweepCurve(
     points.map(({ value, share, low, high }) => ({ x: value, share, low, high })),
     {
-      label: source,
+      label: QUANTITY_LABELS[source],
       threshold: thresholds.map(thresholdWords).join(' and '),
       confidence: options.confidence,
       logX: false,
       title: scenario.readChip.chip.name,
       captionLines: [
-        `target: ${argument}; ${options.trials} chips at each value; retuning: ${options.retune}`,
+        `target: ${scenario.source}; ${options.trials} chips at each value; retuning: ${options.retune}`,
         `a yield of ${percent(options.yield)} holds up to ${source} = ${bounded(found.value, most)}`,
       ],
     },
@@ -173,7 +181,7 @@ async function runTolerance(argument: string, options: ToleranceOptions): Promis
     },
     show: () => {
       console.result(
-        `${printableText(argument)} on ${printableText(scenario.readChip.chip.name)}: a yield of ${percent(options.yield)} ` +
+        `${printableText(scenario.source)} on ${printableText(scenario.readChip.chip.name)}: a yield of ${percent(options.yield)} ` +
           `with ${thresholds.map(thresholdWords).join(' and ')} holds up to\n`,
       );
       console.result(
@@ -207,7 +215,8 @@ function searchedSource(name: string): ErrorSource {
   const names = Object.keys(SEARCHED) as ErrorSource[];
   const known = names.find((source) => source === name);
   if (known !== undefined) return known;
-  const near = nearestName(name, names);
+  // A source that is there, but not to be searched, is no slip of the pen for another one.
+  const near = ERROR_SOURCES.some((source) => source === name) ? undefined : nearestName(name, names);
   throw new InputError(
     'usage/source',
     `no tolerance is found for ${name}`,

@@ -5,7 +5,6 @@ import { matrixHash, runIdentity } from '../files/contentHash.js';
 import { unitarityDefect } from '../matrix/norms.js';
 import { figuresOfMerit } from '../merit/merit.js';
 import { freePorts, missingPortPhases } from '../merit/portPhaseFree.js';
-import { limitSettings } from '../program/limitSettings.js';
 import { programChip } from '../program/programChip.js';
 import { simulate } from '../simulate/simulate.js';
 import type { OutputOptions, RequireOption, UnitOption } from './commandOptions.js';
@@ -15,6 +14,7 @@ import {
   addRequireOption,
   addTargetOptions,
   addUnitOption,
+  settledTargetOptions,
 } from './commandOptions.js';
 import { createConsole } from './console.js';
 import { finish } from './finish.js';
@@ -22,7 +22,7 @@ import { chipHash } from './loadChip.js';
 import type { TableOptions } from './loadTable.js';
 import { loadTable } from './loadTable.js';
 import { tellOutOfRange, tellOutOfReach, tellRequirements } from './messages.js';
-import { defaultFolder } from './names.js';
+import { defaultTableFolder } from './names.js';
 import {
   chipBlock,
   judge,
@@ -74,23 +74,21 @@ async function runVerify(path: string, options: VerifyOptions): Promise<number> 
       source: path,
     });
   }
-  const { settings, outOfRange } = limitSettings(chip, table.settings);
+  const { outOfRange, achieved } = table;
+  const merit = table.merit!;
   const { program, uncorrected } = programChip(chip, target.matrix);
   const free = freePorts(chip);
-  const achieved = simulate(chip, settings);
-  const merit = figuresOfMerit(target.matrix, achieved, free);
   const meritUncorrected = uncorrected
     ? figuresOfMerit(target.matrix, simulate(chip, uncorrected.settings), free)
     : null;
   const requirements = judge(options.require ?? [], merit);
-  const { transpose, conjugate, ports, nearest, unitaryWithin, require } = options;
   const runId = runIdentity(
     'verify',
     { table: table.hash, chip: chipHash(table.readChip), target: matrixHash(target.matrix) },
-    { transpose, conjugate, ports, nearest, unitaryWithin, require },
+    settledTargetOptions(options),
   );
   await finish(console, options, {
-    folder: options.out ?? defaultFolder('verify', { path, text: path }),
+    folder: options.out ?? defaultTableFolder('verify', path),
     files: new Map(),
     report: {
       ...reportHead('verify', runId),
@@ -118,7 +116,7 @@ async function runVerify(path: string, options: VerifyOptions): Promise<number> 
       console.result(meritLines(merit, meritUncorrected));
     },
   });
-  tellOutOfReach(console, chip, program.outOfReach);
+  tellOutOfReach(console, chip, program.outOfReach, 'no table does this target exactly on this chip');
   tellOutOfRange(console, outOfRange, options.unit);
   return tellRequirements(console, requirements);
 }

@@ -18,11 +18,7 @@ import type { YieldOptions } from './yield.js';
 import { percent, scenarioBlocks, settledOptions, yieldBlock, yieldFolder } from './yield.js';
 
 /** `yield --budget`: what each error source costs alone, and what would be left without it. */
-export async function runBudget(
-  argument: string,
-  scenario: Scenario,
-  options: YieldOptions,
-): Promise<number> {
+export async function runBudget(scenario: Scenario, options: YieldOptions): Promise<number> {
   const console = createConsole(options);
   const errors = processOf(scenario.readChip.chip.process, options);
   const thresholds = thresholdsOf(options);
@@ -42,7 +38,7 @@ export async function runBudget(
     ...sources.map((source) => aloneWith(errors, source)),
     ...sources.map((source) => without(errors, source)),
   ].map((process) => planOf(scenario, process, settled));
-  const folder = options.out ?? `${yieldFolder(argument, scenario)}-budget`;
+  const folder = options.out ?? `${yieldFolder(scenario)}-budget`;
   const identity = { ...settledOptions(options), errors, thresholds, budget: true };
   const runId = runIdentity('yield', scenario.inputs, identity);
   const kept = {
@@ -66,7 +62,7 @@ export async function runBudget(
       .sort((a, b) => b.alone.infidelity.mean - a.alone.infidelity.mean);
     const costs: Budget = { together: together!, withoutErrors: withoutErrors!, budget };
     const { drawBudget } = await import('../figure/drawBudget.js');
-    const caption = `target: ${argument}; ${options.trials} chips each; retuning: ${options.retune}`;
+    const caption = `target: ${scenario.source}; ${options.trials} chips each; retuning: ${options.retune}`;
     const svg = drawBudget(
       budget.map(({ source, alone, without: rest }) => ({
         source,
@@ -99,7 +95,7 @@ export async function runBudget(
       },
       show: () => {
         console.result(
-          `${printableText(argument)}: what each error source costs (mean infidelity; share of good chips), seed ${options.seed}\n`,
+          `${printableText(scenario.source)}: what each error source costs (mean infidelity; share of good chips), seed ${options.seed}\n`,
         );
         console.result(budgetTable(costs));
       },

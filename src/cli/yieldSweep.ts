@@ -24,8 +24,8 @@ interface Sweep {
 
 const MOST_POINTS = 1000;
 
-/** Words for the axis. */
-const LABELS: Readonly<Record<Quantity, string>> = {
+/** Words for the axis of a quantity. */
+export const QUANTITY_LABELS: Readonly<Record<Quantity, string>> = {
   sigma: 'spread of the coupling ratio',
   sigmaAngle: 'spread of the splitter angle (rad)',
   bias: 'bias of the coupling ratio',
@@ -52,7 +52,7 @@ export async function runSweep(argument: string, options: YieldOptions): Promise
   const settled = { retune: options.retune, seed: options.seed, figures };
   const plans: TrialPlan[] = [];
   for (const value of values) plans.push(await planAt(scenario, errors, settled, quantity, value));
-  const folder = options.out ?? `${yieldFolder(argument, scenario)}-sweep-${quantity}`;
+  const folder = options.out ?? `${yieldFolder(scenario)}-sweep-${quantity}`;
   const identity = { ...settledOptions(options), errors, thresholds, sweep: { quantity, values } };
   const runId = runIdentity('yield', scenario.inputs, identity);
   const kept = {
@@ -104,12 +104,12 @@ export async function runSweep(argument: string, options: YieldOptions): Promise
         mean: fidelity.mean,
       })),
       {
-        label: LABELS[quantity],
+        label: QUANTITY_LABELS[quantity],
         threshold: thresholds.map(thresholdWords).join(' and '),
         confidence: options.confidence,
         title: quantity === 'modes' ? `${chip.mesh.layout} meshes` : chip.name,
         captionLines: [
-          `target: ${argument}; ${options.trials} chips at each point; retuning: ${options.retune}`,
+          `target: ${scenario.source}; ${options.trials} chips at each point; retuning: ${options.retune}`,
         ],
       },
     );
@@ -134,7 +134,7 @@ export async function runSweep(argument: string, options: YieldOptions): Promise
       },
       show: () => {
         console.result(
-          `${printableText(argument)}: share of chips with ${thresholds.map(thresholdWords).join(' and ')}, seed ${options.seed}\n`,
+          `${printableText(scenario.source)}: share of chips with ${thresholds.map(thresholdWords).join(' and ')}, seed ${options.seed}\n`,
         );
         console.result(
           textTable(

@@ -31,6 +31,7 @@ export interface BudgetRow {
   readonly without: MeanEstimate;
 }
 
+/** What may be chosen of a budget's figure. */
 export interface BudgetOptions extends CurveFigureOptions {
   /** Words below the axis; `mean infidelity 1 − F` by default. */
   readonly label?: string;

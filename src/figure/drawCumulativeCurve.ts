@@ -12,6 +12,7 @@ import type { SvgPart } from './SvgPage.js';
 import type { ValueWindow } from './valueWindow.js';
 import { stragglerNote, valueWindow } from './valueWindow.js';
 
+/** What may be chosen of a cumulative curve. */
 export interface CumulativeCurveOptions extends ValueFigureOptions {
   /** Confidence of the band, at each value by itself; 0.95 by default. */
   readonly confidence?: number;

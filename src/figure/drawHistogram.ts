@@ -11,6 +11,7 @@ import { rounded } from './SvgPage.js';
 import type { JudgedValues } from './valueWindow.js';
 import { stragglerNote, valueWindow } from './valueWindow.js';
 
+/** What may be chosen of a figure of values. */
 export interface ValueFigureOptions extends JudgedValues, CurveFigureOptions {
   /** Words below the axis: the quantity, and its unit if it has one. */
   readonly label: string;

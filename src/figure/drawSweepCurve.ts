@@ -21,6 +21,7 @@ export interface SweepPoint extends Interval {
   readonly mean?: number;
 }
 
+/** What may be chosen of a sweep's curve. */
 export interface SweepCurveOptions extends CurveFigureOptions {
   /** Words below the axis: the quantity and its unit. */
   readonly label: string;

@@ -109,7 +109,7 @@ export function meshFigureLayout(chip: Chip, wishes: LayoutWishes): MeshFigureLa
     throw new InputError(
       'figure/too-narrow',
       `a figure ${width} mm wide has no room for ${chip.mesh.columns} columns${numbers ? ' with numbers' : ''}`,
-      `make it at least ${least} mm wide, ${mend}`,
+      `Make it at least ${least} mm wide, ${mend}.`,
     );
   }
   return layoutOfWidth(chip, wishes, numbers, width);
@@ -122,7 +122,7 @@ export function askedWidth(width: FigureWidth): number {
     throw new InputError(
       'figure/width',
       `a figure cannot be ${width} mm wide`,
-      `give a width from ${NARROWEST} to ${WIDEST} mm, or one-column (${ONE_COLUMN} mm) or two-column (${TWO_COLUMN} mm)`,
+      `Give a width from ${NARROWEST} to ${WIDEST} mm, or one-column (${ONE_COLUMN} mm) or two-column (${TWO_COLUMN} mm).`,
     );
   }
   return width;

@@ -3,9 +3,14 @@ import { mkdir, open, readFile, rm, rmdir } from 'node:fs/promises';
 import { basename, dirname, join, resolve } from 'node:path';
 import { InputError } from '../errors/InputError.js';
 
+/** Name of the temporary file beside a path, of this process alone. */
+export function temporaryName(path: string): string {
+  return join(dirname(path), `.${basename(path)}.${process.pid}.partial`);
+}
+
 /** Writes the content beside the path and returns the temporary file's path; nothing stays behind on failure. */
 export async function writeTemporary(path: string, content: string | Uint8Array): Promise<string> {
-  const temporary = join(dirname(path), `.${basename(path)}.${process.pid}.partial`);
+  const temporary = temporaryName(path);
   try {
     const file = await open(temporary, 'w');
     try {

@@ -1,8 +1,9 @@
-import { existsSync } from 'node:fs';
+import { existsSync, rmSync } from 'node:fs';
 import { readFile, rename, rm } from 'node:fs/promises';
 import { basename, dirname, join, resolve } from 'node:path';
 import { InputError } from '../errors/InputError.js';
-import { makeFolder, requireFree, unwritable, writeTemporary } from './writeFile.js';
+import { INTERRUPTED } from './withInterrupt.js';
+import { makeFolder, requireFree, temporaryName, unwritable, writeTemporary } from './writeFile.js';
 
 /** Name of the file that holds the whole result of a command; it is written last. */
 export const REPORT_FILE = 'report.json';
@@ -15,8 +16,12 @@ export interface Results {
   /** The report's text; it holds `runId` and `files`. */
   readonly report: string;
   readonly runId: string;
+  /** The command that ran, as its report names it. */
+  readonly command: string;
   /** Replace results of another run, and a file of the user's name. */
   readonly force: boolean;
+  /** A report that stands alone may be replaced by one of the same command: nothing is lost that was asked for by name. */
+  readonly replacesLoneReport?: boolean;
   /** A file that the user named, written with the results or not at all. */
   readonly named?: NamedFile;
 }
@@ -29,8 +34,9 @@ export interface NamedFile {
 
 /**
  * Writes the results of a run: each file whole or not at all, the report last. Results of the same run (same `runId`)
- * are replaced, and so are, with `force`, those of another one, whose other files are removed. When anything fails, no new
- * folder is left behind.
+ * are replaced, and so are, with `force`, those of another one; what else an earlier run of the same command left is removed. Files of
+ * another command stay, since they may be what this one has read. When anything fails, or the process is told to end, no new folder and no half file
+ * is left behind.
  * @throws InputError `output/exists` when other results are in the way, `file/unwritable`
  */
 export async function writeResults(results: Results): Promise<void> {
@@ -51,13 +57,18 @@ export async function writeResults(results: Results): Promise<void> {
   await requireNoOtherRun(results);
   const madeFolders: (string | undefined)[] = [];
   const temporaries: string[] = [];
+  const release = cleanUpOnSignal(() => {
+    for (const [path] of contents) rmSync(temporaryName(path), { force: true });
+    for (const made of madeFolders) if (made !== undefined) rmSync(made, { recursive: true, force: true });
+  });
   try {
-    for (const path of [folder, ...(named ? [dirname(named.path)] : [])])
+    for (const path of [folder, ...(named ? [dirname(named.path)] : [])]) {
       madeFolders.push(await makeFolder(path));
+    }
     for (const [path, content] of contents) temporaries.push(await writeTemporary(path, content));
     // Once more, now that only renaming is left: another run may have written there meanwhile.
     const earlier = await requireNoOtherRun(results);
-    if (earlier !== undefined && earlier.runId !== results.runId) {
+    if (earlier !== undefined && earlier.runId !== results.runId && earlier.command === results.command) {
       // The old report goes first and the new one comes last: at no moment does a report stand beside another run's files.
       for (const name of [REPORT_FILE, ...earlier.files]) await rm(join(folder, name), { force: true });
     }
@@ -66,7 +77,22 @@ export async function writeResults(results: Results): Promise<void> {
     for (const temporary of temporaries) await rm(temporary, { force: true });
     for (const made of madeFolders) if (made !== undefined) await rm(made, { recursive: true, force: true });
     throw error instanceof InputError ? error : unwritable(folder, error);
+  } finally {
+    release();
   }
+}
+
+/** Ctrl-C while files are being written: cleans up and ends. Returns what takes the handlers away again. */
+function cleanUpOnSignal(cleanUp: () => void): () => void {
+  const end = (): void => {
+    cleanUp();
+    process.exit(INTERRUPTED);
+  };
+  const signals = ['SIGINT', 'SIGTERM'] as const;
+  for (const signal of signals) process.on(signal, end);
+  return () => {
+    for (const signal of signals) process.off(signal, end);
+  };
 }
 
 /** What an earlier run left in the folder. @throws InputError `output/exists` when that is another run's, without `force` */
@@ -74,8 +100,10 @@ export async function requireNoOtherRun({
   folder,
   files,
   runId,
+  command,
   force,
-}: Pick<Results, 'folder' | 'runId' | 'force'> & {
+  replacesLoneReport,
+}: Pick<Results, 'folder' | 'runId' | 'command' | 'force' | 'replacesLoneReport'> & {
   readonly files: Iterable<readonly [name: string, content: unknown]>;
 }): Promise<EarlierReport | undefined> {
   const earlier = await readEarlierReport(folder);
@@ -83,6 +111,8 @@ export async function requireNoOtherRun({
     existsSync(join(folder, name)),
   );
   if (inTheWay.length === 0 || earlier?.runId === runId || force) return earlier;
+  const lone = inTheWay.length === 1 && earlier?.command === command && earlier.files.length === 0;
+  if (replacesLoneReport === true && lone) return earlier;
   const shown = inTheWay.length <= 6 ? inTheWay.join(', ') : `${inTheWay.slice(0, 5).join(', ')}, ...`;
   throw new InputError(
     'output/exists',
@@ -104,6 +134,7 @@ function refuseReportName({ path }: NamedFile, folder: string): void {
 
 interface EarlierReport {
   readonly runId: string;
+  readonly command: string;
   readonly files: readonly string[];
 }
 
@@ -117,7 +148,11 @@ async function readEarlierReport(folder: string): Promise<EarlierReport | undefi
       (name): name is string =>
         typeof name === 'string' && name !== '' && basename(name) === name && !name.startsWith('.'),
     );
-    return { runId: report.runId, files: files.filter((name) => name !== REPORT_FILE) };
+    return {
+      runId: report.runId,
+      command: String(report.command),
+      files: files.filter((name) => name !== REPORT_FILE),
+    };
   } catch {
     return undefined;
   }

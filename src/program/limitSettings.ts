@@ -12,7 +12,8 @@ export interface LimitedSettings {
 
 /**
  * The settings as the chip's shifters can take them: a phase outside its range is moved by turns that change nothing, and
- * where none helps stopped at the end that it ran over, which is listed. Phases in range stay as they are, to the last bit.
+ * where none helps stopped at the end that it ran over. Either is listed, since the table cannot be set as it stands. Phases in
+ * range stay as they are, to the last bit.
  */
 export function limitSettings(chip: Chip, settings: Settings): LimitedSettings {
   const limited: Settings = {
@@ -29,7 +30,7 @@ export function limitSettings(chip: Chip, settings: Settings): LimitedSettings {
     const differential = shifter.role === 'internal' && chip.style.internal === 'differential';
     const turned = turnIntoRange(wantedRad, range, differential ? 4 * Math.PI : 2 * Math.PI);
     const setRad = Number.isNaN(turned) ? Math.min(Math.max(wantedRad, range[0]), range[1]) : turned;
-    if (Number.isNaN(turned)) outOfRange.push({ shifterIndex: shifter.index, wantedRad, setRad });
+    outOfRange.push({ shifterIndex: shifter.index, wantedRad, setRad });
     if (shifter.role === 'external') limited.external[shifter.cellIndex!] = setRad;
     else if (shifter.role === 'internal') limited.internal[shifter.cellIndex!] = setRad;
     else limited.port![shifter.portIndex] = setRad;

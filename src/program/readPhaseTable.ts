@@ -45,9 +45,18 @@ function readCsvRows(bytes: Uint8Array): PhaseRow[] {
       `A phase table begins with ${PHASE_TABLE_HEADER}`,
     );
   }
-  const header = text.slice(0, text.search(/\r|\n|$/)).replaceAll('"', '');
-  const delimiter = [',', ';', '\t'].find((mark) => header === PHASE_TABLE_HEADER.replaceAll(',', mark));
+  const header = text
+    .slice(0, text.search(/\r|\n|$/))
+    .replaceAll('"', '')
+    .replace('\ufeff', '');
+  const delimiter = [',', ';', '\t'].find((mark) => hasAllColumns(header.split(mark)));
   if (delimiter === undefined) throw noHeader(header);
+  const places = COLUMNS.map((name) =>
+    header
+      .split(delimiter)
+      .map((word) => word.trim())
+      .indexOf(name),
+  );
   let records: string[][];
   try {
     records = parse(text, { delimiter, from_line: 2, relax_column_count: true, skip_empty_lines: true });
@@ -61,16 +70,16 @@ function readCsvRows(bytes: Uint8Array): PhaseRow[] {
     );
   }
   return records.map((record, k) => {
-    if (record.length !== 7) {
+    if (record.length !== COLUMNS.length) {
       throw new InputError(
         'table/rows',
-        `there are ${record.length} fields, not 7`,
+        `there are ${record.length} fields, not ${COLUMNS.length}`,
         `The fields are ${PHASE_TABLE_HEADER}`,
         { row: k + 1 },
       );
     }
-    const [shifter, cell, role, column, port, phase, name] = record.map((field) => field.trim());
-    const number = (field: string): number | null => (field === '' ? null : Number(field));
+    const [shifter, cell, role, column, port, phase, name] = places.map((place) => record[place]!.trim());
+    const number = (field: string): number | null => (field === '' ? null : numberIn(field, delimiter));
     return checkedRow(
       {
         shifter: number(shifter!),
@@ -84,6 +93,22 @@ function readCsvRows(bytes: Uint8Array): PhaseRow[] {
       k,
     );
   });
+}
+
+/** The columns of a table; a spreadsheet may have put them into another order. */
+const COLUMNS = PHASE_TABLE_HEADER.split(',');
+
+function hasAllColumns(words: readonly string[]): boolean {
+  return (
+    words.length === COLUMNS.length && COLUMNS.every((name) => words.some((word) => word.trim() === name))
+  );
+}
+
+/** A number; where fields are parted by semicolons, a comma is a decimal point, as spreadsheets in much of Europe write it. */
+function numberIn(field: string, delimiter: string): number {
+  return Number(
+    delimiter === ';' && /^[-+]?\d*,\d+(e[-+]?\d+)?$/i.test(field) ? field.replace(',', '.') : field,
+  );
 }
 
 function noHeader(found: string): InputError {

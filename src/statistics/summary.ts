@@ -2,6 +2,7 @@ import { compensatedSum } from './compensatedSum.js';
 import type { Quantile } from './quantiles.js';
 import { quantileWithInterval, sortedQuantile } from './quantiles.js';
 
+/** What may be chosen of a summary. */
 export interface SummaryOptions {
   /** Confidence of the quantiles' intervals; 0.95 by default. */
   readonly confidence?: number;

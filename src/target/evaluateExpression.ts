@@ -10,7 +10,10 @@ import { SizeBudget } from './SizeBudget.js';
 export interface ExpressionOptions {
   /** Largest number of ports, and of rows or columns of any value on the way; default 1024. */
   readonly maxModes?: number;
-  /** Runs the function and throws when it takes too long; without it nothing limits the time. */
+  /**
+   * Runs the function and throws when it takes too long; without it nothing limits the time. Calls of ours with numbers alone are
+   * bounded by their sizes and do without.
+   */
   readonly timeLimit?: <T>(run: () => T) => T;
 }
 
@@ -30,7 +33,7 @@ const MAX_DEPTH = 64;
  *
  * Calls of ours with numbers as arguments, also within one another, are answered at once; anything else loads mathjs as
  * the parser and the functions. The text is not trusted: only what is on our lists can be named, every size is bounded
- * before memory is taken, and all work is done within `timeLimit`.
+ * before memory is taken, and all other work is done within `timeLimit`.
  * @throws InputError `target/syntax`, `target/unknown-name`, `target/forbidden`, `target/ambiguous`, `target/argument`,
  * `target/haar-seed`, `target/too-large`, `target/too-deep`, `target/too-much-work` (also when `timeLimit` throws),
  * `target/not-square`, `target/ragged`, `target/not-finite`, `target/empty`.
@@ -43,7 +46,8 @@ export async function evaluateExpression(
   requireModest(text);
   const written = text.replaceAll('\u2212', '-');
   const call = parseLiteralCall(written);
-  if (call !== undefined) return limited(options, () => makeLiteralCall(call, budget));
+  // Bounded by the sizes alone: the largest takes seconds, and no loop is in it that another argument would make longer.
+  if (call !== undefined) return unlessTooDeep(() => makeLiteralCall(call, budget));
   const library = await loadFormulaLibrary();
   return limited(options, () => new FormulaEvaluator(library, budget).evaluate(written));
 }

@@ -7,6 +7,7 @@ import type { Merit } from '../merit/merit.js';
  * ratios, as if they had been measured.
  */
 export const RETUNINGS = ['none', 'cell'] as const;
+/** A way to program sampled chips. */
 export type Retuning = (typeof RETUNINGS)[number];
 
 /** Everything that decides what the trials are. Plain data that can be sent to a worker. */

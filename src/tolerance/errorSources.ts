@@ -14,6 +14,7 @@ export const ERROR_SOURCES = [
   'bits',
   'lossSigmaDb',
 ] as const satisfies readonly (keyof ProcessErrors)[];
+/** The name of an error source. */
 export type ErrorSource = (typeof ERROR_SOURCES)[number];
 
 /** What makes chips differ from the nominal one by itself; correlations only shape other sources. */

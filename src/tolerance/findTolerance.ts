@@ -18,6 +18,7 @@ export interface ToleranceEstimate {
   readonly tried: readonly (YieldCount & { readonly value: number })[];
 }
 
+/** What is searched, and how well. */
 export interface ToleranceSearch {
   /** Share of good chips wanted, between 0 and 1. */
   readonly yieldWanted: number;

@@ -10,6 +10,7 @@ export interface TrialResults {
   readonly clamped: number;
 }
 
+/** How trials are run. */
 export interface RunTrialsOptions {
   readonly signal?: AbortSignal;
   /** Called after each chunk with the number of trials done. */

@@ -1,4 +1,4 @@
-import type { Chip, ProcessErrors } from '../chip/Chip.js';
+import type { Chip, ErrorDistribution, ProcessErrors } from '../chip/Chip.js';
 import type { Layout } from '../mesh/Mesh.js';
 import type { TrialPlan } from './TrialPlan.js';
 
@@ -14,7 +14,8 @@ export interface InfidelityTheory {
  * chips are retuned for a target that is not Haar-random.
  *
  * Without retuning E[1-F] = L (1 - c L), L = (2/N) sum of the variances of all splitter angles, for any target on either layout (conventions section 7); c
- * is the Haar mean, so that for one given target a part of c L^2 is uncertain. An error e of the ratio k is one of e / (2 sqrt(k (1 - k))) of the angle. With cells retuned,
+ * is the Haar mean, so that for one given target a part of c L^2 is uncertain. An error e of the ratio k is one of e / (2 sqrt(k (1 - k))) of the angle,
+ * and, since that is no straight line, a little more. With cells retuned,
  * for splitters of nominally 1/2, the mean square of the matrix error is s^4 (2/3 (N^2 - 1) + 4 (N - 1)/N) (check-values section 2).
  * @param infidelityWithoutErrors 1 - F of the chip itself
  */
@@ -36,10 +37,14 @@ export function infidelityTheory(plan: TrialPlan, infidelityWithoutErrors: numbe
     return { meanInfidelity: total(infidelityWithoutErrors, corrected), uncertainty: 0.15 * corrected };
   }
   const second = nextOrder(layout, modes) * leading ** 2;
+  const bent = bentInfidelity(chip, errors);
   return {
-    meanInfidelity: total(infidelityWithoutErrors, leading - second),
+    meanInfidelity: total(infidelityWithoutErrors, leading - second + bent.infidelity),
     uncertainty:
-      leading ** 3 + (target === 'haar' ? 0.1 : 1) * second + 2 * infidelityWithoutErrors * leading,
+      leading ** 3 +
+      (target === 'haar' ? 0.1 : 1) * second +
+      2 * infidelityWithoutErrors * leading +
+      bent.uncertainty,
   };
 }
 
@@ -47,7 +52,7 @@ function total(without: number, added: number): number {
   return 1 - (1 - without) * (1 - added);
 }
 
-/** L = (2/N) times the sum of the variances of all splitter angles; null where a ratio is 0 or 1 and has no small-error theory. */
+/** L = (2/N) times the sum of the variances of all splitter angles; null where a ratio is 0 or 1, from where an error can go one way only. */
 function leadingInfidelity(
   { mesh, couplingRatios }: Chip,
   { sigma, sigmaAngle }: ProcessErrors,
@@ -55,10 +60,36 @@ function leadingInfidelity(
   let sum = 0;
   for (const ratio of couplingRatios) {
     const slope = 4 * ratio * (1 - ratio);
-    if (sigma > 0 && !(slope > 0)) return null;
-    sum += sigmaAngle ** 2 + (sigma > 0 ? sigma ** 2 / slope : 0);
+    if (!(slope > 0)) return null;
+    sum += sigmaAngle ** 2 + sigma ** 2 / slope;
   }
   return (2 / mesh.modes) * sum;
+}
+
+/** Fourth moments of an error of variance 1. */
+const FOURTH_MOMENT: Readonly<Record<ErrorDistribution, number>> = { normal: 3, uniform: 9 / 5 };
+
+/**
+ * What the bent line from ratio to angle adds to L. With g = k (1 - k) and its slope 1 - 2k, Taylor's series of a(k) = asin(sqrt k) makes the mean
+ * square of the angle's error (s^2/4g) (1 + q), q = m s^2 (1/(3g) + 5 (1 - 2k)^2/(16 g^2)), m the fourth moment of e/s; 4 s^2 for normal errors
+ * of a ratio of 1/2. Uncertain are the next term, about 3 q^2, and the mean of the angle's error, which splitters have in common:
+ * (1 - 2k)^2 s^2/(16 g^2) of the variance, for at most N splitters that act together.
+ */
+function bentInfidelity(
+  { mesh, couplingRatios }: Chip,
+  { sigma, distribution }: ProcessErrors,
+): { readonly infidelity: number; readonly uncertainty: number } {
+  let infidelity = 0;
+  let uncertainty = 0;
+  for (const ratio of couplingRatios) {
+    const g = ratio * (1 - ratio);
+    const common = ((1 - 2 * ratio) * sigma) ** 2 / (16 * g ** 2);
+    const relative = FOURTH_MOMENT[distribution] * (sigma ** 2 / (3 * g) + 5 * common);
+    const variance = sigma ** 2 / (4 * g);
+    infidelity += variance * relative;
+    uncertainty += variance * (3 * relative ** 2 + mesh.modes * common);
+  }
+  return { infidelity: (2 / mesh.modes) * infidelity, uncertainty: (2 / mesh.modes) * uncertainty };
 }
 
 /** Haar means of c by [N, triangular, rectangular]; check-values section 2, exact superoperator averages; 1/2 for large N. */

@@ -12,11 +12,6 @@ export function wrapTurn(angle: number, tolerance = 0): number {
   return wrapped <= tolerance || wrapped >= TURN - tolerance ? 0 : wrapped;
 }
 
-/** The angle's representative in [-pi, pi]: the shortest way from 0. */
-export function wrapHalfTurn(angle: number): number {
-  return angle - TURN * Math.round(angle / TURN);
-}
-
 /** A phase in radians as a number in another unit. */
 export function angleIn(unit: AngleUnit, angle: number): number {
   return unit === 'rad' ? angle : unit === 'pi' ? angle / Math.PI : (angle * 180) / Math.PI;

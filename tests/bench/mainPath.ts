@@ -1,4 +1,3 @@
-import { cpus } from 'node:os';
 import { idealChip } from '../../src/chip/idealChip.js';
 import { decompose } from '../../src/decompose/decompose.js';
 import { haarUnitary } from '../../src/matrix/haar.js';
@@ -6,6 +5,7 @@ import { multiply } from '../../src/matrix/products.js';
 import { LAYOUTS } from '../../src/mesh/Mesh.js';
 import { carryingSweep } from '../../src/program/carryingSweep.js';
 import { simulate } from '../../src/simulate/simulate.js';
+import { machineLine, medianOf } from './measuring.js';
 
 /** Median of the times of a function in milliseconds: at least three runs, about half a second in all. */
 function median(run: () => void): number {
@@ -17,7 +17,7 @@ function median(run: () => void): number {
     run();
     times.push(performance.now() - start);
   } while (times.length < 3 || performance.now() < end);
-  return times.sort((a, b) => a - b)[times.length >> 1]!;
+  return medianOf(times);
 }
 
 function shown(milliseconds: number): string {
@@ -25,9 +25,7 @@ function shown(milliseconds: number): string {
 }
 
 const print = (line: string): void => void process.stdout.write(`${line}\n`);
-print(
-  `${cpus()[0]?.model ?? 'unknown processor'}, Node ${process.version}; medians in ms; one core; nulling by kernels, the rest in TypeScript`,
-);
+print(`${machineLine()}; medians in ms; one core; nulling by kernels, the rest in TypeScript`);
 print('yardstick: one product of two complex N x N matrices, in plain TypeScript, in the same run');
 print('   N  layout        decompose   program  simulate       sum   product  sum / product');
 for (const modes of [8, 64, 256, 1024]) {

@@ -4,7 +4,7 @@ import { reconstruct } from '../../src/decompose/Decomposition.js';
 import { decompose } from '../../src/decompose/decompose.js';
 import { identityMatrix } from '../../src/matrix/ComplexMatrix.js';
 import { haarUnitary } from '../../src/matrix/haar.js';
-import { lapackResidual } from '../../src/matrix/residual.js';
+import { lapackResidual } from '../support/lapackResidual.js';
 import { createMesh, LAYOUTS, MIRRORS } from '../../src/mesh/Mesh.js';
 import {
   allPermutations,

@@ -6,7 +6,7 @@ import type { Nulling } from '../../src/decompose/Nulling.js';
 import { nullOnKernels } from '../../src/decompose/nullOnKernels.js';
 import { nullReadably } from '../../src/decompose/nullReadably.js';
 import { haarUnitary } from '../../src/matrix/haar.js';
-import { lapackResidual } from '../../src/matrix/residual.js';
+import { lapackResidual } from '../support/lapackResidual.js';
 import { createMesh, LAYOUTS, MIRRORS } from '../../src/mesh/Mesh.js';
 import { unitaryMatrices } from '../support/matrices.js';
 

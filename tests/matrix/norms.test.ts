@@ -3,7 +3,7 @@ import { identityMatrix, matrixFromRows, zeroMatrix } from '../../src/matrix/Com
 import { haarUnitary } from '../../src/matrix/haar.js';
 import { frobeniusNorm, oneNorm, unitarityDefect } from '../../src/matrix/norms.js';
 import { adjoint, multiply, subtract } from '../../src/matrix/products.js';
-import { lapackResidual } from '../../src/matrix/residual.js';
+import { lapackResidual } from '../support/lapackResidual.js';
 import { largestDifference, normalMatrix, realEmbedding, scaledMatrix } from './support.js';
 
 const SAMPLE = matrixFromRows([

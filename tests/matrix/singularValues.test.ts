@@ -5,7 +5,7 @@ import { copyMatrix, identityMatrix, matrixFromRows, zeroMatrix } from '../../sr
 import { haarUnitary } from '../../src/matrix/haar.js';
 import { frobeniusNorm, oneNorm, unitarityDefect } from '../../src/matrix/norms.js';
 import { adjoint, innerProduct, multiply, subtract } from '../../src/matrix/products.js';
-import { lapackResidual } from '../../src/matrix/residual.js';
+import { lapackResidual } from '../support/lapackResidual.js';
 import {
   polarDecomposition,
   singularValueDecomposition,

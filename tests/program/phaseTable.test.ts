@@ -155,7 +155,11 @@ describe('limitSettings', () => {
       };
       const ranged = { ...chip, shifterRange: [0, 2 * Math.PI] as const };
       const limited = limitSettings(ranged, shifted);
-      expect(limited.outOfRange).toEqual([]);
+      // All of them had to be moved, and are listed with what they were moved to.
+      expect(limited.outOfRange).toHaveLength(16);
+      for (const { wantedRad, setRad } of limited.outOfRange) {
+        expect(Math.abs(Math.sin((wantedRad - setRad) / 2))).toBeLessThan(1e-14);
+      }
       expect(maxDifference(simulate(chip, limited.settings), simulate(chip, shifted))).toBeLessThan(1e-13);
       for (const phase of limited.settings.internal) expect(phase).toBeLessThanOrEqual(2 * Math.PI);
       expect(limitSettings(ranged, settings).settings).toEqual(settings);

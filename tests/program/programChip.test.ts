@@ -7,7 +7,7 @@ import type { ComplexMatrix } from '../../src/matrix/ComplexMatrix.js';
 import { identityMatrix, matrixFromRows } from '../../src/matrix/ComplexMatrix.js';
 import { haarUnitary } from '../../src/matrix/haar.js';
 import { innerProduct } from '../../src/matrix/products.js';
-import { lapackResidual } from '../../src/matrix/residual.js';
+import { lapackResidual } from '../support/lapackResidual.js';
 import { figuresOfMerit } from '../../src/merit/merit.js';
 import { LAYOUTS, MIRRORS } from '../../src/mesh/Mesh.js';
 import { programChip } from '../../src/program/programChip.js';

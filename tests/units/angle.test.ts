@@ -1,5 +1,5 @@
 import { describe, expect, it } from 'vitest';
-import { angleIn, wrapHalfTurn, wrapTurn } from '../../src/units/angle.js';
+import { angleIn, wrapTurn } from '../../src/units/angle.js';
 
 const TURN = 2 * Math.PI;
 
@@ -32,21 +32,6 @@ describe('wrapTurn', () => {
       expect(wrapTurn(angle)).toBeNaN();
       expect(wrapTurn(angle, 1e-12)).toBeNaN();
     }
-  });
-});
-
-describe('wrapHalfTurn', () => {
-  it('gives the same direction, at most half a turn from 0', () => {
-    for (let k = -500; k <= 500; k++) {
-      const angle = k * 0.137;
-      const wrapped = wrapHalfTurn(angle);
-      expect(Math.abs(wrapped)).toBeLessThanOrEqual(Math.PI);
-      expect(Math.cos(wrapped)).toBeCloseTo(Math.cos(angle), 12);
-      expect(Math.sin(wrapped)).toBeCloseTo(Math.sin(angle), 12);
-    }
-    expect(wrapHalfTurn(1.5 * Math.PI)).toBeCloseTo(-Math.PI / 2, 14);
-    expect(wrapHalfTurn(-1e-17)).toBe(-1e-17);
-    expect(wrapHalfTurn(NaN)).toBeNaN();
   });
 });
 

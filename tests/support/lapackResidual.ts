@@ -1,6 +1,6 @@
-import type { ComplexMatrix } from './ComplexMatrix.js';
-import { oneNorm } from './norms.js';
-import { subtract } from './products.js';
+import type { ComplexMatrix } from '../../src/matrix/ComplexMatrix.js';
+import { oneNorm } from '../../src/matrix/norms.js';
+import { subtract } from '../../src/matrix/products.js';
 
 /**
  * How far a computed matrix is from its reference, in units of what rounding must cost: norm1(reference -
