@@ -14,7 +14,10 @@ function quotient([a, b]: Complex, w: Complex): Complex {
   return [(a * w[0] + b * w[1]) * inverse, (b * w[0] - a * w[1]) * inverse];
 }
 
-/** T11, T12, T21, T22 of S(b) diag(upper, lower) S(a); the products of cosines and sines are of the second splitter, then the first. */
+/**
+ * T11, T12, T21, T22 of S(b) diag(upper, lower) S(a); the products of cosines and sines are of the second
+ * splitter, then the first.
+ */
 function splitArms(
   [cosFirst, sinFirst, cosSecond, sinSecond]: readonly [number, number, number, number],
   [ur, ui]: Complex,
@@ -44,9 +47,10 @@ function splitArms(
 const ALL_BITS = 2n ** 64n - 1n;
 
 /**
- * Twin of composeCells in assembly/propagate.ts: a cell as T = diag(g1, g2) [[1, u], [v, 1]] of what the panels hold, columns exchanged where more
- * light crosses than stays. Every field is a factor of its guide times what the panels hold, so that g1, g2 go into the factors of
- * the guides and only u, v act on the panels.
+ * Twin of composeCells in assembly/propagate.ts: a cell as T = diag(g1, g2) [[1, u], [v, 1]] of what the
+ * panels hold, columns exchanged where more light crosses than stays. Every field is a factor of its guide
+ * times what the panels hold, so that g1, g2 go into the factors of the guides and only u, v act on the
+ * panels.
  */
 export function twinCells(memory: () => TwinMemory): Pick<Kernels, 'composeCells'> {
   const composeCells: Kernels['composeCells'] = (

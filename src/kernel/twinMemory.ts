@@ -1,4 +1,7 @@
-/** The memory that twins work on, seen as numbers of each kind. All views cover the whole of it: index = address / bytes of an element. */
+/**
+ * The memory that twins work on, seen as numbers of each kind. All views cover the whole of it: index =
+ * address / bytes of an element.
+ */
 export interface TwinMemory {
   readonly doubles: Float64Array;
   readonly integers: Int32Array;

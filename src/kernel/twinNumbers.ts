@@ -5,7 +5,10 @@ import { smallCosine, smallSine } from './twinSine.js';
 
 const WORD = 0xffffffffn;
 
-/** The two 64-bit words that Philox4x32-10 (Salmon, Moraes, Dror, Shaw, SC'11) makes of the counter [0, 0, trial, stream] and the seed. */
+/**
+ * The two 64-bit words that Philox4x32-10 (Salmon, Moraes, Dror, Shaw, SC'11) makes of the counter [0, 0,
+ * trial, stream] and the seed.
+ */
 function philoxWords(seed: readonly [bigint, bigint], stream: bigint, trial: bigint): [bigint, bigint] {
   let [c0, c1, c2, c3] = [0n, 0n, trial, stream];
   let [k0, k1] = seed;
@@ -22,7 +25,10 @@ function philoxWords(seed: readonly [bigint, bigint], stream: bigint, trial: big
 const wrap = (bits: bigint): bigint => BigInt.asUintN(64, bits);
 const rotateLeft = (bits: bigint, by: bigint): bigint => wrap(bits << by) | (bits >> (64n - by));
 
-/** xoroshiro128+ of Blackman and Vigna, ACM Trans. Math. Softw. 47, 36 (2021), on the state of one lane: the next 64 bits. */
+/**
+ * xoroshiro128+ of Blackman and Vigna, ACM Trans. Math. Softw. 47, 36 (2021), on the state of one lane: the
+ * next 64 bits.
+ */
 function nextBits(words: BigUint64Array, at: number): bigint {
   const first = words[at]!;
   const second = words[at + LANES]!;
@@ -39,7 +45,9 @@ const exchange = new DataView(new ArrayBuffer(8));
 /** Bits of sqrt(1/2). */
 const ROOT_HALF = 0x3fe6a09e667f3bcdn;
 
-/** log(u) for u in (0, 1]: the mantissa is brought to [sqrt(1/2), sqrt(2)), then 2 artanh((m - 1)/(m + 1)). */
+/**
+ * log(u) for u in (0, 1]: the mantissa is brought to [sqrt(1/2), sqrt(2)), then 2 artanh((m - 1)/(m + 1)).
+ */
 function logarithm(u: number): number {
   exchange.setFloat64(0, u);
   const bits = exchange.getBigInt64(0);

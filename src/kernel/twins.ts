@@ -6,7 +6,10 @@ import { twinMemory } from './twinMemory.js';
 import { twinNumbers } from './twinNumbers.js';
 import { twinPanels } from './twinPanels.js';
 
-/** Kernels whose readable twins stand higher up, in other terms than memory: the cell solver of a chip, the nullings of a decomposition. */
+/**
+ * Kernels whose readable twins stand higher up, in other terms than memory: the cell solver of a chip, the
+ * nullings of a decomposition.
+ */
 type ForeignKernels = Pick<Kernels, 'solveCells' | 'layOutMatrix' | 'nullRectangular' | 'nullTriangular'>;
 
 const absent = (): never => {
@@ -14,11 +17,12 @@ const absent = (): never => {
 };
 
 /**
- * An instance whose trial kernels are plain TypeScript on a plain buffer: the same operations in the same order as the compiled ones, hence the
- * same bits, for tests and for where WebAssembly is not to be had. Some hundred times slower.
+ * An instance whose trial kernels are plain TypeScript on a plain buffer: the same operations in the same
+ * order as the compiled ones, hence the same bits, for tests and for where WebAssembly is not to be had. Some
+ * hundred times slower.
  *
- * The kernel contract holds: addresses are multiples of 16 bytes, arrays do not overlap, and views from before a reservation
- * may be dead.
+ * The kernel contract holds: addresses are multiples of 16 bytes, arrays do not overlap, and views from
+ * before a reservation may be dead.
  * @param foreign kernels that have no twin on memory; those left out throw when they are called
  */
 export function twinInstance(foreign: Partial<ForeignKernels> = {}): KernelInstance {

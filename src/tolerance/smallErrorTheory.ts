@@ -10,13 +10,14 @@ export interface InfidelityTheory {
 }
 
 /**
- * Mean 1 - F of chips with small independent splitter errors, or null when the theory does not hold: other sources are on, the errors are correlated, or
- * chips are retuned for a target that is not Haar-random.
+ * Mean 1 - F of chips with small independent splitter errors, or null when the theory does not hold: other
+ * sources are on, the errors are correlated, or chips are retuned for a target that is not Haar-random.
  *
- * Without retuning E[1-F] = L (1 - c L), L = (2/N) sum of the variances of all splitter angles, for any target on either layout (conventions section 7); c
- * is the Haar mean, so that for one given target a part of c L^2 is uncertain. An error e of the ratio k is one of e / (2 sqrt(k (1 - k))) of the angle,
- * and, since that is no straight line, a little more. With cells retuned,
- * for splitters of nominally 1/2, the mean square of the matrix error is s^4 (2/3 (N^2 - 1) + 4 (N - 1)/N) (check-values section 2).
+ * Without retuning E[1-F] = L (1 - c L), L = (2/N) sum of the variances of all splitter angles, for any
+ * target on either layout (conventions section 7); c is the Haar mean, so that for one given target a part of
+ * c L^2 is uncertain. An error e of the ratio k is one of e / (2 sqrt(k (1 - k))) of the angle, and, since
+ * that is no straight line, a little more. With cells retuned, for splitters of nominally 1/2, the mean
+ * square of the matrix error is s^4 (2/3 (N^2 - 1) + 4 (N - 1)/N) (check-values section 2).
  * @param infidelityWithoutErrors 1 - F of the chip itself
  */
 export function infidelityTheory(plan: TrialPlan, infidelityWithoutErrors: number): InfidelityTheory | null {
@@ -52,7 +53,10 @@ function total(without: number, added: number): number {
   return 1 - (1 - without) * (1 - added);
 }
 
-/** L = (2/N) times the sum of the variances of all splitter angles; null where a ratio is 0 or 1, from where an error can go one way only. */
+/**
+ * L = (2/N) times the sum of the variances of all splitter angles; null where a ratio is 0 or 1, from where
+ * an error can go one way only.
+ */
 function leadingInfidelity(
   { mesh, couplingRatios }: Chip,
   { sigma, sigmaAngle }: ProcessErrors,
@@ -70,10 +74,11 @@ function leadingInfidelity(
 const FOURTH_MOMENT: Readonly<Record<ErrorDistribution, number>> = { normal: 3, uniform: 9 / 5 };
 
 /**
- * What the bent line from ratio to angle adds to L. With g = k (1 - k) and its slope 1 - 2k, Taylor's series of a(k) = asin(sqrt k) makes the mean
- * square of the angle's error (s^2/4g) (1 + q), q = m s^2 (1/(3g) + 5 (1 - 2k)^2/(16 g^2)), m the fourth moment of e/s; 4 s^2 for normal errors
- * of a ratio of 1/2. Uncertain are the next term, about 3 q^2, and the mean of the angle's error, which splitters have in common:
- * (1 - 2k)^2 s^2/(16 g^2) of the variance, for at most N splitters that act together.
+ * What the bent line from ratio to angle adds to L. With g = k (1 - k) and its slope 1 - 2k, Taylor's series
+ * of a(k) = asin(sqrt k) makes the mean square of the angle's error (s^2/4g) (1 + q), q = m s^2 (1/(3g) + 5
+ * (1 - 2k)^2/(16 g^2)), m the fourth moment of e/s; 4 s^2 for normal errors of a ratio of 1/2. Uncertain are
+ * the next term, about 3 q^2, and the mean of the angle's error, which splitters have in common: (1 - 2k)^2
+ * s^2/(16 g^2) of the variance, for at most N splitters that act together.
  */
 function bentInfidelity(
   { mesh, couplingRatios }: Chip,
@@ -92,7 +97,10 @@ function bentInfidelity(
   return { infidelity: (2 / mesh.modes) * infidelity, uncertainty: (2 / mesh.modes) * uncertainty };
 }
 
-/** Haar means of c by [N, triangular, rectangular]; check-values section 2, exact superoperator averages; 1/2 for large N. */
+/**
+ * Haar means of c by [N, triangular, rectangular]; check-values section 2, exact superoperator averages; 1/2
+ * for large N.
+ */
 const NEXT_ORDER = [
   [2, 5 / 6, 5 / 6],
   [3, 0.65, 0.65],
@@ -113,13 +121,16 @@ function nextOrder(layout: Layout, modes: number): number {
   return low[column - 1]! + share * (high[column - 1]! - low[column - 1]!);
 }
 
-/** Relative scatter of 1 - F from chip to chip: about 2.2/N (0.53, 0.28, 0.145 for N = 4, 8, 16; check-values section 2). */
+/**
+ * Relative scatter of 1 - F from chip to chip: about 2.2/N (0.53, 0.28, 0.145 for N = 4, 8, 16; check-values
+ * section 2).
+ */
 const CHIP_SCATTER = 2.2;
 
 /**
- * The closed-form estimate of the largest spread of a source for which the share `yieldWanted` of chips keeps the fidelity: the mean
- * infidelity of a chip, with its scatter from chip to chip taken as normal, stays below 1 - limit. Null for other sources, retuned
- * chips or other figures.
+ * The closed-form estimate of the largest spread of a source for which the share `yieldWanted` of chips keeps
+ * the fidelity: the mean infidelity of a chip, with its scatter from chip to chip taken as normal, stays
+ * below 1 - limit. Null for other sources, retuned chips or other figures.
  * @param quantile the normal quantile of the yield wanted
  */
 export function toleranceTheory(

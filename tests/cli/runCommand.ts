@@ -4,6 +4,7 @@ import { mkdir, readFile, writeFile } from 'node:fs/promises';
 import { tmpdir } from 'node:os';
 import { dirname, join } from 'node:path';
 import { fileURLToPath, pathToFileURL } from 'node:url';
+import ts from 'typescript';
 import { afterAll } from 'vitest';
 
 /** The built command; `npm run build` comes before these tests. */
@@ -73,15 +74,17 @@ export async function runMany(
     }),
   );
   const input = JSON.stringify(calls.map(({ args }, k) => ({ args, folder: folders[k] })));
-  const script = fileURLToPath(new URL('manyRuns.ts', import.meta.url));
   const commandLine = pathToFileURL(join(dirname(COMMAND), 'commandLine.js')).href;
-  // Run from here, where node finds tsx.
-  const { stdout, stderr } = await runProgram(
-    process.execPath,
-    ['--import', 'tsx', script, commandLine],
-    dirname(script),
-    { input },
-  );
+  // As JavaScript: worker threads inherit the arguments of node, and find no loader of TypeScript from a folder of their own.
+  const source = await readFile(fileURLToPath(new URL('manyRuns.ts', import.meta.url)), 'utf8');
+  const { outputText: script } = ts.transpileModule(source, {
+    compilerOptions: { module: ts.ModuleKind.ESNext, target: ts.ScriptTarget.ES2022 },
+  });
+  const scriptFolder = freshFolder();
+  await writeFiles(scriptFolder, { 'manyRuns.mjs': script });
+  const { stdout, stderr } = await runProgram(process.execPath, ['manyRuns.mjs', commandLine], scriptFolder, {
+    input,
+  });
   if (stdout === '') throw new Error(`the runs came to no end: ${stderr}`);
   const results = JSON.parse(stdout) as Pick<CommandRun, 'code' | 'stdout' | 'stderr'>[];
   return results.map((result, k) => ({ ...result, ...inFolder(folders[k]!) }));
