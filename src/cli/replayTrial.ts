@@ -16,8 +16,8 @@ import { chipHash } from './loadChip.js';
 import { chipBlock, judge, meritLines, reportHead } from './reportParts.js';
 import { thresholdsOf } from './trialOptions.js';
 import type { Scenario } from './trialScenario.js';
-import type { YieldOptions } from './yield.js';
-import { scenarioBlocks, settledOptions, yieldFolder } from './yield.js';
+import type { YieldOptions } from './yieldParts.js';
+import { scenarioBlocks, settledOptions, yieldFolder } from './yieldParts.js';
 
 /**
  * Writes the chip of one trial (number from 1) as a chip file of its own, its phases as they really are (errors and resolution included), and

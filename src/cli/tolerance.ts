@@ -31,7 +31,7 @@ import {
 } from './trialOptions.js';
 import { loadScenario, planAt } from './trialScenario.js';
 import { QUANTITY_LABELS } from './yieldSweep.js';
-import { percent, scenarioBlocks, settledOptions, thresholdWords, yieldFolder } from './yield.js';
+import { percent, scenarioBlocks, settledOptions, thresholdWords, yieldFolder } from './yieldParts.js';
 
 interface ToleranceOptions extends OutputOptions, ChipOptions, TargetOptions, TrialOptions {
   readonly source?: string;

@@ -12,20 +12,17 @@ import { infidelityTheory } from '../tolerance/smallErrorTheory.js';
 import type { Threshold } from '../tolerance/thresholds.js';
 import { columnOf, countPassed, judgedFigures } from '../tolerance/thresholds.js';
 import type { TrialPlan } from '../tolerance/TrialPlan.js';
-import type { ChipOptions, OutputOptions, TargetOptions } from './commandOptions.js';
 import { addChipOptions, addOutputOptions, addTargetOptions } from './commandOptions.js';
 import type { Console } from './console.js';
 import { createConsole } from './console.js';
 import { finish } from './finish.js';
 import { counted, shortNumber } from './messages.js';
 import { describedRun, runKept } from './keptRun.js';
-import { defaultFolder } from './names.js';
-import { chipBlock, MERIT_NAMES, reportHead, shownMerit } from './reportParts.js';
+import { MERIT_NAMES, reportHead, shownMerit } from './reportParts.js';
 import type { PlanOutcome, PlanResults } from './runPlans.js';
 import { replayTrial } from './replayTrial.js';
 import { runBudget } from './yieldBudget.js';
 import { runSweep } from './yieldSweep.js';
-import type { TrialOptions } from './trialOptions.js';
 import {
   addTrialOptions,
   parseShare,
@@ -36,15 +33,15 @@ import {
 } from './trialOptions.js';
 import type { Scenario } from './trialScenario.js';
 import { infidelityWithoutErrors, loadScenario, planOf } from './trialScenario.js';
-
-/** Options of the command yield. */
-export interface YieldOptions extends OutputOptions, ChipOptions, TargetOptions, TrialOptions {
-  readonly within?: number;
-  readonly resume?: boolean;
-  readonly trial?: number;
-  readonly sweep?: string;
-  readonly budget?: boolean;
-}
+import type { YieldOptions } from './yieldParts.js';
+import {
+  percent,
+  scenarioBlocks,
+  settledOptions,
+  thresholdWords,
+  yieldBlock,
+  yieldFolder,
+} from './yieldParts.js';
 
 /** Adds the command `yield TARGET`. */
 export function addYieldCommand(parent: Command, setExitCode: (code: number) => void): void {
@@ -148,35 +145,6 @@ function refuseTogether({ sweep, budget, trial, within, resume }: YieldOptions):
   }
 }
 
-/** The options that change the result, besides errors and thresholds. */
-export function settledOptions(options: YieldOptions): Record<string, unknown> {
-  const { trials, confidence, retune, seed, within, transpose, conjugate, ports, nearest, unitaryWithin } =
-    options;
-  return { trials, confidence, retune, seed, within, transpose, conjugate, ports, nearest, unitaryWithin };
-}
-
-/** The default folder of a run that samples chips. */
-export function yieldFolder({ source, path }: Scenario, command = 'yield'): string {
-  return defaultFolder(command, { text: source, ...(path === undefined ? {} : { path }) });
-}
-
-/** The share of chips that keep the thresholds, with its interval. */
-export function yieldBlock(
-  { rows, trials }: PlanResults,
-  figures: readonly (keyof Merit)[],
-  thresholds: readonly Threshold[],
-  confidence: number,
-): { passed: number; trials: number; share: number; low: number; high: number; confidence: number } {
-  const passed = countPassed(rows, figures, thresholds);
-  return {
-    passed,
-    trials,
-    share: passed / trials,
-    ...clopperPearson(passed, trials, confidence),
-    confidence,
-  };
-}
-
 interface YieldRun {
   readonly console: Console;
   readonly options: YieldOptions;
@@ -257,19 +225,6 @@ function tellClamped(console: Console, clamped: number): void {
   );
 }
 
-/** The blocks `target` and `chip` of a report. */
-export function scenarioBlocks({ source, target, readChip: { chip } }: Scenario): Record<string, unknown> {
-  return {
-    target: {
-      source,
-      modes: chip.mesh.modes,
-      unitarityDefect: target?.unitarityDefect ?? 0,
-      nearestDistance: target?.nearestDistance ?? null,
-    },
-    chip: chipBlock(chip),
-  };
-}
-
 function figureOptions(
   { source, readChip: { chip } }: Scenario,
   thresholds: readonly Threshold[],
@@ -296,11 +251,6 @@ function figureOptions(
   };
 }
 
-/** A threshold as people write it. */
-export function thresholdWords({ key, limit }: Threshold): string {
-  return `${MERIT_NAMES[key]} ${isUpperLimit(key) ? '\u2264' : '\u2265'} ${limit}`;
-}
-
 function showYield(
   { console, options, scenario, plan, thresholds }: YieldRun,
   share: ReturnType<typeof yieldBlock>,
@@ -323,11 +273,6 @@ function showYield(
         `worst ${shownMerit(worst.value)} (trial ${worst.trial})`,
     );
   });
-}
-
-/** A share in percent. */
-export function percent(share: number): string {
-  return `${shortNumber(100 * share)} %`;
 }
 
 /** Says what theory expects, and when simulation is off by more than sampling and the theory's own limits allow. */

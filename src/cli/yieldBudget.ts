@@ -14,8 +14,8 @@ import { textTable } from './textTable.js';
 import { processOf, thresholdsOf } from './trialOptions.js';
 import type { Scenario } from './trialScenario.js';
 import { planOf } from './trialScenario.js';
-import type { YieldOptions } from './yield.js';
-import { percent, scenarioBlocks, settledOptions, yieldBlock, yieldFolder } from './yield.js';
+import type { YieldOptions } from './yieldParts.js';
+import { percent, scenarioBlocks, settledOptions, yieldBlock, yieldFolder } from './yieldParts.js';
 
 /** `yield --budget`: what each error source costs alone, and what would be left without it. */
 export async function runBudget(scenario: Scenario, options: YieldOptions): Promise<number> {

@@ -13,8 +13,15 @@ import { textTable } from './textTable.js';
 import { processOf, tellMissingPortShifters, thresholdsOf } from './trialOptions.js';
 import type { Quantity } from './trialScenario.js';
 import { loadScenario, planAt, QUANTITIES } from './trialScenario.js';
-import type { YieldOptions } from './yield.js';
-import { percent, scenarioBlocks, settledOptions, thresholdWords, yieldBlock, yieldFolder } from './yield.js';
+import type { YieldOptions } from './yieldParts.js';
+import {
+  percent,
+  scenarioBlocks,
+  settledOptions,
+  thresholdWords,
+  yieldBlock,
+  yieldFolder,
+} from './yieldParts.js';
 
 /** A quantity and the values that it takes. */
 interface Sweep {
