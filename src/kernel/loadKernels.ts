@@ -6,15 +6,9 @@ const FIRST_FREE = 65536;
 
 /** The kernels by name. They take addresses in bytes, whole numbers and doubles; they never check anything. */
 export interface Kernels {
-  seedTrial(
-    state: number,
-    lane: number,
-    seedLow: number,
-    seedHigh: number,
-    stream: number,
-    trial: number,
-  ): void;
-  fillNormals(out: number, count: number, state: number): void;
+  seedTrials(state: number, seedLow: number, seedHigh: number, stream: number, first: number): void;
+  /** `layers`: the tables of ziggurat.ts. */
+  fillNormals(out: number, count: number, state: number, layers: number): void;
   fillUniforms(out: number, count: number, state: number): void;
   correlateGrid(grid: number, columns: number, rows: number, columnStep: number, rowStep: number): void;
   pickPlaces(out: number, stride: number, grid: number, places: number, count: number): void;
@@ -54,6 +48,8 @@ export interface Kernels {
     arms: number,
     external: number,
     gain: number,
+    modes: number,
+    input: number,
     factors: number,
     coefficients: number,
     place: number,

@@ -60,12 +60,15 @@ export function twinCells(memory: () => TwinMemory): Pick<Kernels, 'composeCells
     arms,
     external,
     gain,
+    modes,
+    input,
     factors,
     coefficients,
     place,
     realSplitters,
   ) => {
     const { doubles, integers, words } = memory();
+    doubles.copyWithin(factors / 8, input / 8, input / 8 + 4 * modes);
     const complexAt = (at: number): Complex => [doubles[at]!, doubles[at + LANES]!];
     const writeAt = (at: number, [re, im]: Complex): void => {
       doubles[at] = re;

@@ -1,7 +1,6 @@
 import type { Kernels } from './loadKernels.js';
 import type { TwinMemory } from './twinMemory.js';
 import { LANES } from './twinMemory.js';
-import { smallCosine, smallSine } from './twinSine.js';
 
 const WORD = 0xffffffffn;
 
@@ -45,9 +44,7 @@ const exchange = new DataView(new ArrayBuffer(8));
 /** Bits of sqrt(1/2). */
 const ROOT_HALF = 0x3fe6a09e667f3bcdn;
 
-/**
- * log(u) for u in (0, 1]: the mantissa is brought to [sqrt(1/2), sqrt(2)), then 2 artanh((m - 1)/(m + 1)).
- */
+/** log(u) for u in (0, 1]: the mantissa is brought to [sqrt(1/2), sqrt(2)), then 2 artanh((m - 1)/(m + 1)). */
 function logarithm(u: number): number {
   exchange.setFloat64(0, u);
   const bits = exchange.getBigInt64(0);
@@ -57,41 +54,67 @@ function logarithm(u: number): number {
   const s = (mantissa - 1) / (mantissa + 1);
   const z = s * s;
   let series = 2 / 17;
-  for (const odd of [15, 13, 11, 9, 7, 5, 3, 1]) series = series * z + 2 / odd;
+  for (let odd = 15; odd >= 1; odd -= 2) series = series * z + 2 / odd;
   return Number(exponent) * 0.6931471805599453 + s * series;
 }
 
-const isSet = (bits: bigint, place: bigint): boolean => ((bits >> place) & 1n) === 1n;
+/** e^x for x in [-30, 0]: by powers of 2, the rest by Taylor's series to the 13th power. */
+function exponential(x: number): number {
+  // Halves do not occur, so rounding to the nearest whole number needs no rule for them.
+  const power = Math.round(x * 1.4426950408889634);
+  const rest = x - power * 0.6931471805599453;
+  let series = 1;
+  for (let k = 13; k >= 1; k--) series = 1 + (series * rest) / k;
+  return series * 2 ** power;
+}
+
+/** Doubles of a layer in the tables of ziggurat.ts. */
+const LAYER = 3;
+
+/** Draws normals from one lane: the ziggurat of assembly/normals.ts. */
+function createNormals({ doubles, words }: TwinMemory, at: number, layers: number): () => number {
+  const uniform = (): number => mantissaOf(nextBits(words, at)) - 1;
+  const tail = (edge: number): number => {
+    for (;;) {
+      const x = logarithm(1 - uniform()) / edge;
+      const y = logarithm(1 - uniform());
+      if (-2 * y >= x * x) return edge - x;
+    }
+  };
+  return () => {
+    for (;;) {
+      const bits = nextBits(words, at);
+      const u = 2 * mantissaOf(bits) - 3;
+      const layer = layers + Number((bits >> 4n) & 255n) * LAYER;
+      const x = u * doubles[layer]!;
+      if (Math.abs(u) < doubles[layer + 1]!) return x;
+      if (layer === layers) return u < 0 ? -tail(doubles[layers + LAYER]!) : tail(doubles[layers + LAYER]!);
+      const [low, high] = [doubles[layer + 2]!, doubles[layer + LAYER + 2]!];
+      if (low + uniform() * (high - low) < exponential(-0.5 * x * x)) return x;
+    }
+  };
+}
 
 /** Twins of assembly/normals.ts. */
 export function twinNumbers(
   memory: () => TwinMemory,
-): Pick<Kernels, 'seedTrial' | 'fillNormals' | 'fillUniforms'> {
+): Pick<Kernels, 'seedTrials' | 'fillNormals' | 'fillUniforms'> {
   return {
-    seedTrial: (state, lane, seedLow, seedHigh, stream, trial) => {
+    seedTrials: (state, seedLow, seedHigh, stream, first) => {
       const word = (value: number): bigint => BigInt.asUintN(32, BigInt(value));
       const seed = [word(seedLow), word(seedHigh)] as const;
-      const [first, second] = philoxWords(seed, word(stream), word(trial));
       const { words } = memory();
-      words[state / 8 + lane] = first;
-      words[state / 8 + LANES + lane] = second;
-    },
-    fillNormals: (out, count, state) => {
-      const { doubles, words } = memory();
       for (let lane = 0; lane < LANES; lane++) {
-        for (let k = 0; k < count; k += 2) {
-          const first = nextBits(words, state / 8 + lane);
-          const second = nextBits(words, state / 8 + lane);
-          const radius = Math.sqrt(logarithm(2 - mantissaOf(first)) * -2);
-          // The angle within an eighth of a turn around 0 from the upper bits, its octant from bits 9 to 11.
-          const t = (mantissaOf(second) - 1.5) * 1.5707963267948966;
-          const w = t * t;
-          const [c, s] = [smallCosine(w), smallSine(t, w)];
-          const [a, b] = isSet(second, 11n) ? [s, c] : [c, s];
-          const at = out / 8 + LANES * k + lane;
-          doubles[at] = radius * (isSet(second, 10n) ? -a : a);
-          doubles[at + LANES] = radius * (isSet(second, 9n) ? -b : b);
-        }
+        const [low, high] = philoxWords(seed, word(stream), word(first + lane));
+        words[state / 8 + lane] = low;
+        words[state / 8 + LANES + lane] = high;
+      }
+    },
+    fillNormals: (out, count, state, layers) => {
+      const { doubles } = memory();
+      for (let lane = 0; lane < LANES; lane++) {
+        const normal = createNormals(memory(), state / 8 + lane, layers / 8);
+        for (let k = 0; k < count; k++) doubles[out / 8 + LANES * k + lane] = normal();
       }
     },
     fillUniforms: (out, count, state) => {

@@ -32,22 +32,13 @@ export function createErrorDraw(
   const atOutput = externalAtOutput(chip.style);
 
   function fill(address: number, count: number, stream: number, first: number): void {
-    for (const lane of ALL_LANES) {
-      kernels.seedTrial(
-        memory.state,
-        lane,
-        plan.seed % WORD,
-        Math.floor(plan.seed / WORD),
-        stream,
-        first + lane,
-      );
-    }
+    kernels.seedTrials(memory.state, plan.seed % WORD, Math.floor(plan.seed / WORD), stream, first);
     fillMore(address, count);
   }
 
   function fillMore(address: number, count: number): void {
     if (errors.distribution === 'uniform') kernels.fillUniforms(address, count, memory.state);
-    else kernels.fillNormals(address, count + (count % 2), memory.state);
+    else kernels.fillNormals(address, count, memory.state, memory.layers);
   }
 
   /** Two numbers a cell with the correlations of the process, at `memory.numbers`. */

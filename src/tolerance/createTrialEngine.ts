@@ -202,7 +202,6 @@ export function createTrialEngine(plan: TrialPlan, instance: KernelInstance = lo
         prepare(first + done);
         if (done + 1 === count) views.clampedCounts[2] = clampedBefore;
         if (fast) {
-          views.factors.set(views.input);
           kernels.composeCells(
             cells,
             memory.upperPort,
@@ -210,6 +209,8 @@ export function createTrialEngine(plan: TrialPlan, instance: KernelInstance = lo
             memory.arms,
             memory.external,
             memory.gain,
+            modes,
+            views.inputAddress,
             memory.factors,
             memory.coefficients,
             style.place,

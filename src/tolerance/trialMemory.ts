@@ -1,5 +1,6 @@
 import type { Chip } from '../chip/Chip.js';
 import type { KernelInstance } from '../kernel/loadKernels.js';
+import { writeZiggurat, ZIGGURAT_SIZE } from '../kernel/ziggurat.js';
 import type { ComplexMatrix } from '../matrix/ComplexMatrix.js';
 
 /** Input ports that the kernels propagate at a time. */
@@ -11,6 +12,7 @@ export interface TrialMemory {
   readonly places: number;
   readonly nominal: number;
   readonly state: number;
+  readonly layers: number;
   readonly numbers: number;
   readonly grid: number;
   readonly shift: number;
@@ -40,14 +42,15 @@ export function reserveTrialMemory(instance: KernelInstance, chip: Chip, correla
   const reserve = (doubles: number): number => instance.reserve(doubles);
   const reserveBytes = (bytes: number): number => instance.reserveBytes(bytes);
   const targetSize = 2 * PANEL * modes * panels;
-  // Two lanes a number. Normals come in pairs, so that one more than asked for may be written.
+  // Two lanes a number.
   const memory: TrialMemory = {
     upperPort: reserveBytes(4 * cells),
     places: reserveBytes(4 * cells),
     nominal: reserve(2 * cells),
     state: reserve(4),
-    numbers: reserve(2 * (2 * cells + modes + 2)),
-    grid: reserve(correlated ? 2 * (columns * modes + 2) : 0),
+    layers: reserve(ZIGGURAT_SIZE),
+    numbers: reserve(2 * Math.max(2 * cells, modes, 2)),
+    grid: reserve(correlated ? 2 * columns * modes : 0),
     shift: reserve(2),
     clamped: reserve(2),
     splitters: reserve(8 * cells),
@@ -72,6 +75,7 @@ export function reserveTrialMemory(instance: KernelInstance, chip: Chip, correla
     .integers(memory.places, cells)
     .set(upperPortIndex.map((port, cell) => columnIndex[cell]! * modes + port));
   instance.doubles(memory.nominal, 2 * cells).set(chip.couplingRatios);
+  writeZiggurat(instance.doubles(memory.layers, ZIGGURAT_SIZE));
   instance.integers(memory.ranges, 2 * columns * panels).set(reachedCells(chip));
   return memory;
 }

@@ -55,7 +55,7 @@ export function takeViews(instance: KernelInstance, memory: TrialMemory, chip: C
   }
   return {
     shift: doubles(memory.shift, 2),
-    numbers: doubles(memory.numbers, 2 * (2 * cells + modes + 2)),
+    numbers: doubles(memory.numbers, 2 * Math.max(2 * cells, modes, 2)),
     clampedCounts: instance.integers(memory.clamped, 4),
     splitters: doubles(memory.splitters, 8 * cells),
     wanted: doubles(memory.wanted, 8 * cells),

@@ -4,6 +4,7 @@ import { loadKernels } from '../../src/kernel/loadKernels.js';
 import { twinInstance } from '../../src/kernel/twins.js';
 import { philox4x32 } from '../../src/random/philox.js';
 import { kolmogorovTest } from '../../src/statistics/kolmogorov.js';
+import { layersIn } from '../support/ziggurat.js';
 import { normalCdf } from '../../src/statistics/normalDistribution.js';
 
 type Fill = 'fillNormals' | 'fillUniforms';
@@ -13,8 +14,9 @@ function draw(fill: Fill, count: number, { seed = 7, stream = 4, trial = 0 } = {
   const instance = loadKernels();
   const state = instance.reserve(4);
   const out = instance.reserve(2 * count);
-  for (const lane of [0, 1]) instance.kernels.seedTrial(state, lane, seed, 0, stream, trial + lane);
-  instance.kernels[fill](out, count, state);
+  const layers = layersIn(instance);
+  instance.kernels.seedTrials(state, seed, 0, stream, trial);
+  instance.kernels[fill](out, count, state, layers);
   return instance.doubles(out, 2 * count);
 }
 
@@ -42,7 +44,7 @@ describe.each<[string, () => KernelInstance]>([
   it('is the known answer of Philox4x32-10 for zeros', () => {
     const instance = make();
     const state = instance.reserve(4);
-    instance.kernels.seedTrial(state, 0, 0, 0, 0, 0);
+    instance.kernels.seedTrials(state, 0, 0, 0, 0);
     const words = instance.integers(state, 8);
     expect([words[0]!, words[1]!, words[4]!, words[5]!].map((word) => (word >>> 0).toString(16))).toEqual([
       '6627e8d5',
@@ -66,7 +68,8 @@ describe.each<[string, () => KernelInstance]>([
     ] as const) {
       const expected = new Uint32Array(4);
       philox4x32(new Uint32Array([0, 0, trial, stream]), new Uint32Array([seedLow, seedHigh]), expected);
-      instance.kernels.seedTrial(state, 1, seedLow, seedHigh, stream, trial);
+      // The second lane holds the trial behind the first one.
+      instance.kernels.seedTrials(state, seedLow, seedHigh, stream, trial - 1);
       expect([words[2]!, words[3]!, words[6]!, words[7]!].map((word) => word >>> 0)).toEqual(
         Array.from(expected),
       );
@@ -83,8 +86,7 @@ describe('xoroshiro128+', () => {
     const instance = loadKernels();
     const state = instance.reserve(4);
     const out = instance.reserve(2 * 100);
-    instance.kernels.seedTrial(state, 0, 1, 2, 3, 4);
-    instance.kernels.seedTrial(state, 1, 1, 2, 3, 5);
+    instance.kernels.seedTrials(state, 1, 2, 3, 4);
     const words = new BigUint64Array(instance.doubles(state, 4).slice().buffer);
     instance.kernels.fillUniforms(out, 100, state);
     const found = instance.doubles(out, 200);
@@ -200,10 +202,11 @@ describe.each<[Fill]>([['fillNormals'], ['fillUniforms']])('numbers of %s', (fil
     const instance = loadKernels();
     const state = instance.reserve(4);
     const out = instance.reserve(4);
+    const layers = layersIn(instance);
     const view = instance.doubles(out, 4);
     const firsts = Float64Array.from({ length: 20_000 }, (_, trial) => {
-      for (const lane of [0, 1]) instance.kernels.seedTrial(state, lane, 7, 0, 4, 2 * (trial >> 1) + lane);
-      instance.kernels[fill](out, 2, state);
+      instance.kernels.seedTrials(state, 7, 0, 4, 2 * (trial >> 1));
+      instance.kernels[fill](out, 2, state, layers);
       return view[trial % 2]!;
     });
     const distribution = fill === 'fillNormals' ? normalCdf : (x: number) => (x / Math.sqrt(3) + 1) / 2;
@@ -221,11 +224,12 @@ describe('correlated grids', () => {
     const instance = loadKernels();
     const state = instance.reserve(4);
     const grid = instance.reserve(2 * places);
+    const layers = layersIn(instance);
     const view = instance.doubles(grid, 2 * places);
     const sums = new Float64Array(places * places);
     for (let trial = 0; trial < samples; trial += 2) {
-      for (const lane of [0, 1]) instance.kernels.seedTrial(state, lane, 7, 0, 4, trial + lane);
-      instance.kernels.fillNormals(grid, places, state);
+      instance.kernels.seedTrials(state, 7, 0, 4, trial);
+      instance.kernels.fillNormals(grid, places, state, layers);
       instance.kernels.correlateGrid(grid, columns, rows, Math.exp(-1 / length), Math.exp(-1 / (2 * length)));
       for (let a = 0; a < places; a++) {
         for (let b = 0; b <= a; b++) {
@@ -250,8 +254,9 @@ describe('correlated grids', () => {
     const pairs = 50_000;
     const state = instance.reserve(4);
     const numbers = instance.reserve(4 * pairs);
-    for (const lane of [0, 1]) instance.kernels.seedTrial(state, lane, 7, 0, 4, lane);
-    instance.kernels.fillNormals(numbers, 2 * pairs, state);
+    const layers = layersIn(instance);
+    instance.kernels.seedTrials(state, 7, 0, 4, 0);
+    instance.kernels.fillNormals(numbers, 2 * pairs, state, layers);
     const view = instance.doubles(numbers, 4 * pairs);
     const before = view.slice();
     instance.kernels.correlatePairs(numbers, pairs, correlation);

@@ -1,4 +1,5 @@
 import { describe, expect, it } from 'vitest';
+import { layersIn } from '../support/ziggurat.js';
 import type { KernelInstance, Kernels } from '../../src/kernel/loadKernels.js';
 import { loadKernels } from '../../src/kernel/loadKernels.js';
 import { twinInstance } from '../../src/kernel/twins.js';
@@ -39,22 +40,23 @@ function placesOf(instance: KernelInstance, values: readonly number[]): number {
  * in trialEngines.
  */
 const RUNS: Readonly<Partial<Record<keyof Kernels, Run>>> = {
-  seedTrial: (instance, size) => {
-    const state = instance.reserve(4);
+  seedTrials: (instance, size) => {
     // Words with the upper bit set as well: in WebAssembly they are signed or unsigned alike.
-    instance.kernels.seedTrial(state, 0, size, 0xffffffff - size, 8, 0xdeadbeef);
-    instance.kernels.seedTrial(state, 1, 0x89abcdef, 7, 0xffffffff, size);
+    instance.kernels.seedTrials(instance.reserve(4), size, 0xffffffff - size, 8, 0xdeadbeef);
+    instance.kernels.seedTrials(instance.reserve(4), 0x89abcdef, 7, 0xffffffff, size);
   },
   fillNormals: (instance, size) => {
     const state = instance.reserve(4);
-    const out = instance.reserve(4 * size);
-    for (const lane of [0, 1]) instance.kernels.seedTrial(state, lane, 1, 2, 3, size + lane);
-    instance.kernels.fillNormals(out, 2 * size, state);
+    // Enough of them that many fall beyond their layer, and some into the tail.
+    const out = instance.reserve(2 * 400 * size);
+    const layers = layersIn(instance);
+    instance.kernels.seedTrials(state, 1, 2, 3, size);
+    instance.kernels.fillNormals(out, 400 * size, state, layers);
   },
   fillUniforms: (instance, size) => {
     const state = instance.reserve(4);
     const out = instance.reserve(2 * size);
-    for (const lane of [0, 1]) instance.kernels.seedTrial(state, lane, 1, 2, 3, size + lane);
+    instance.kernels.seedTrials(state, 1, 2, 3, size);
     instance.kernels.fillUniforms(out, size, state);
   },
   correlateGrid: (instance, size) => {
@@ -101,7 +103,8 @@ const RUNS: Readonly<Partial<Record<keyof Kernels, Run>>> = {
     const arrays = [8, 8, 4, 2].map((length, k) => filled(instance, length * size, 12 + k));
     const [splitters, arms, external, gain] = arrays as [number, number, number, number];
     const coefficients = instance.reserve(10 * size);
-    const factors = filled(instance, 40, 16);
+    const input = filled(instance, 40, 16);
+    const factors = instance.reserve(40);
     for (const place of [0, 1, 2, 3]) {
       for (const real of [0, 1]) {
         instance.kernels.composeCells(
@@ -111,14 +114,16 @@ const RUNS: Readonly<Partial<Record<keyof Kernels, Run>>> = {
           arms,
           external,
           gain,
+          10,
+          input,
           factors,
           coefficients,
           place,
           real,
         );
-        // Factors shrink and grow at random: brought back to where they neither vanish nor overflow.
-        const view = instance.doubles(factors, 40);
-        view.forEach((value, k) => (view[k] = value + Math.sin(k + place)));
+        // The next cells take up what these left, brought back to where it neither vanishes nor overflows.
+        const [view, left] = [instance.doubles(input, 40), instance.doubles(factors, 40)];
+        left.forEach((value, k) => (view[k] = value + Math.sin(k + place)));
       }
     }
   },
@@ -203,8 +208,9 @@ describe.each(BOTH)('%s', (_, make) => {
     const state = instance.reserve(4);
     const count = 20_000;
     const out = instance.reserve(2 * count);
-    for (const lane of [0, 1]) instance.kernels.seedTrial(state, lane, 5, 0, 4, lane);
-    instance.kernels.fillNormals(out, count, state);
+    const layers = layersIn(instance);
+    instance.kernels.seedTrials(state, 5, 0, 4, 0);
+    instance.kernels.fillNormals(out, count, state, layers);
     const view = instance.doubles(out, 2 * count);
     for (const lane of [0, 1]) {
       const octants = new Float64Array(8);

@@ -152,11 +152,11 @@ describe('the share of exactly realisable Haar targets', () => {
 });
 
 describe('the error that retuning leaves', () => {
-  // s^4 (2/3 (N^2 - 1) + 4 (N - 1)/N), 15 % for the heavy tail and more than 4000 chips (check-values,
-  // section 2).
+  // s^4 (2/3 (N^2 - 1) + 4 (N - 1)/N), to 15 % (check-values, section 2). The tail is heavy, the more so the smaller
+  // N: with these numbers of chips the mean is known to about 4 %.
   it.each([
-    [4, 20_000],
-    [8, 8000],
+    [4, 100_000],
+    [8, 20_000],
     [16, 4000],
   ])('is the 2/3 law: N = %i', (modes, trials) => {
     const sigma = 0.03;
@@ -201,9 +201,9 @@ describe('quantised phases', () => {
       const wanted = carryingSweep(sampled, decompose(target, chip.mesh)).settings;
       for (const shifter of listShifters(chip)) {
         const [low, high] = shifterRanges.get(shifter.index) ?? chip.shifterRange!;
-        const step = (high - low) / 2 ** bits;
+        const step = (high - low) / (2 ** bits - 1);
         const phase = phaseOf(wanted, shifter);
-        const steps = Array.from({ length: 2 ** bits + 1 }, (_, k) => low + k * step);
+        const steps = Array.from({ length: 2 ** bits }, (_, k) => low + k * step);
         const nearest = steps.reduce((best, each) =>
           Math.abs(each - phase) < Math.abs(best - phase) ? each : best,
         );

@@ -1,4 +1,5 @@
 import { describe, expect, it } from 'vitest';
+import { layersIn } from '../support/ziggurat.js';
 import type { ProcessErrors } from '../../src/chip/Chip.js';
 import { loadKernels } from '../../src/kernel/loadKernels.js';
 import { haarUnitary } from '../../src/matrix/haar.js';
@@ -157,6 +158,7 @@ describe('ratios beyond 0 and 1', () => {
     const instance = loadKernels();
     const state = instance.reserve(4);
     const out = instance.reserve(2 * splitters);
+    const layers = layersIn(instance);
     const drawn = instance.doubles(out, 2 * splitters);
     const engine = createTrialEngine(plan);
     let total = 0;
@@ -168,8 +170,8 @@ describe('ratios beyond 0 and 1', () => {
     ] as const) {
       let expected = 0;
       for (let trial = first; trial < first + count; trial++) {
-        instance.kernels.seedTrial(state, 0, 5, 2, STREAMS.splitterRatios, trial);
-        instance.kernels.fillNormals(out, splitters, state);
+        instance.kernels.seedTrials(state, 5, 2, STREAMS.splitterRatios, trial);
+        instance.kernels.fillNormals(out, splitters, state, layers);
         const { couplingRatios } = engine.sample(trial).chip;
         for (let k = 0; k < splitters; k++) {
           const ratio = 0.5 + bias + sigma * drawn[2 * k]!;

@@ -1,5 +1,5 @@
 export { correlateGrid, correlatePairs, drawSplitters, pickPlaces, turnFactors, turnSplitters } from './errors';
-export { fillNormals, fillUniforms, seedTrial } from './normals';
+export { fillNormals, fillUniforms, seedTrials } from './normals';
 export { accumulatePanel, composeCells, judgeTrial, propagatePanel } from './propagate';
 export { solveCells } from './solveCells';
 export { layOutMatrix } from './nullingMatrix';

@@ -22,13 +22,14 @@ const CELL = 80;
  * nothing underflows up to 1024 cells in a row.
  *
  * splitters: 4 x 16 bytes a cell (cos a, sin a, cos b, sin b). arms: 4 x 16 bytes a cell. external: 2 x 16 bytes a cell. gain: 16 bytes a cell, the
- * amplitude factor of its splitters' losses. factors: 2 x 16 bytes a port, the fields' factors, moved on from the inputs to the outputs. place: 0 upper
+ * amplitude factor of its splitters' losses. input: 2 x 16 bytes a port, the fields' factors at the inputs; factors: written, those at the outputs. place: 0 upper
  * input, 1 lower input, 2 upper output, 3 lower output.
  */
 export function composeCells(
-  cells: i32, upperPort: usize, splitters: usize, arms: usize, external: usize, gain: usize, factors: usize,
-  coefficients: usize, place: i32, realSplitters: i32,
+  cells: i32, upperPort: usize, splitters: usize, arms: usize, external: usize, gain: usize, modes: i32, input: usize,
+  factors: usize, coefficients: usize, place: i32, realSplitters: i32,
 ): void {
+  memory.copy(factors, input, usize(modes) * 32);
   for (let cell = 0; cell < cells; cell++) {
     const cosFirst = v128.load(splitters);
     const sinFirst = v128.load(splitters, 16);
