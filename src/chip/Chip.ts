@@ -41,7 +41,8 @@ export const ERROR_DISTRIBUTIONS = ['normal', 'uniform'] as const;
 export type ErrorDistribution = (typeof ERROR_DISTRIBUTIONS)[number];
 
 /**
- * How chips of a process differ from what is nominal or measured: the error sources of yield and tolerance. All 0 is a process without errors.
+ * How chips of a process differ from what is nominal or measured: the error sources of yield and tolerance.
+ * All 0 is a process without errors.
  */
 export interface ProcessErrors {
   /** Standard deviation of the coupling ratio of every splitter, one independent of the other. */
@@ -58,7 +59,10 @@ export interface ProcessErrors {
   readonly correlationLength: number;
   /** Standard deviation of every phase that is set, in radians. */
   readonly phaseSigma: number;
-  /** Resolution of the phases: 2^bits steps over a shifter's range (a whole turn where it has none); 0 for continuous phases. */
+  /**
+   * Resolution of the phases: 2^bits steps over a shifter's range (a whole turn where it has none); 0 for
+   * continuous phases.
+   */
   readonly bits: number;
   /** Standard deviation of each splitter's loss in dB; losses stay at or above 0. */
   readonly lossSigmaDb: number;
@@ -82,18 +86,29 @@ export const NO_ERRORS: ProcessErrors = {
 /** Phases in radians that a shifter can be set to, ends included. */
 export type PhaseRange = readonly [low: number, high: number];
 
-/** A chip as the program works with it: every default filled in, losses as amplitude factors. Plain readonly data. */
+/**
+ * A chip as the program works with it: every default filled in, losses as amplitude factors. Plain readonly
+ * data.
+ */
 export interface Chip {
   readonly name: string;
   readonly note: string;
   readonly mesh: Mesh;
   readonly style: CellStyle;
-  /** False for a chip without the last column of N phases (or the first, for external phases at the output). */
+  /**
+   * False for a chip without the last column of N phases (or the first, for external phases at the output).
+   */
   readonly portShifters: boolean;
-  /** Power that crosses, two per cell in cell order: at 2k the splitter that the light meets first, at 2k+1 the second. */
+  /**
+   * Power that crosses, two per cell in cell order: at 2k the splitter that the light meets first, at 2k+1
+   * the second.
+   */
   readonly couplingRatios: Float64Array;
   readonly loss: ChipLoss;
-  /** Amplitude factor of the two splitters of each cell together, where splitters differ in loss; null: loss.splitter squared everywhere. */
+  /**
+   * Amplitude factor of the two splitters of each cell together, where splitters differ in loss; null:
+   * loss.splitter squared everywhere.
+   */
   readonly cellLoss: Float64Array | null;
   /** Range of every shifter without one of its own; null when the chip states none. */
   readonly shifterRange: PhaseRange | null;
@@ -107,7 +122,10 @@ export interface Chip {
   readonly process: ProcessErrors;
 }
 
-/** True when the external phase stands behind the splitters; the free port phases are then at the mesh's inputs. */
+/**
+ * True when the external phase stands behind the splitters; the free port phases are then at the mesh's
+ * inputs.
+ */
 export function externalAtOutput(style: CellStyle): boolean {
   return style.external === 'upper-output' || style.external === 'lower-output';
 }

@@ -1,8 +1,9 @@
 import type { CellStyle, InternalArm, SplitterForm } from './Chip.js';
 
 /**
- * Writes the amplitude factors of a cell's two arms for an internal phase theta into `arms` (4 numbers: upper re, im, lower
- * re, im). `shifterLoss` is the amplitude factor of a shifter; a differential pair has one on either arm.
+ * Writes the amplitude factors of a cell's two arms for an internal phase theta into `arms` (4 numbers: upper
+ * re, im, lower re, im). `shifterLoss` is the amplitude factor of a shifter; a differential pair has one on
+ * either arm.
  */
 export function writeArms(
   arms: Float64Array,
@@ -27,9 +28,10 @@ export function writeArms(
 }
 
 /**
- * Writes S(b) diag(upper arm, lower arm) S(a) into `transfer` (8 numbers: T11 re, im, T12, T21, T22), the cell without its
- * external phase and without splitter loss. sin^2 a and sin^2 b are the coupling ratios of the splitters that the light meets first and second
- * (conventions: S(a) = [[cos a, i sin a], [i sin a, cos a]], or [[cos a, sin a], [sin a, -cos a]] for real splitters).
+ * Writes S(b) diag(upper arm, lower arm) S(a) into `transfer` (8 numbers: T11 re, im, T12, T21, T22), the
+ * cell without its external phase and without splitter loss. sin^2 a and sin^2 b are the coupling ratios of
+ * the splitters that the light meets first and second (conventions: S(a) = [[cos a, i sin a], [i sin a, cos
+ * a]], or [[cos a, sin a], [sin a, -cos a]] for real splitters).
  */
 export function writeSplitArms(
   transfer: Float64Array,
@@ -72,8 +74,8 @@ export function writeSplitArms(
 }
 
 /**
- * Multiplies the external phase into a cell's transfer matrix: on a column for a phase at the input, on a row for one
- * at the output. (re, im) is the factor of the guide that carries the shifter, loss included.
+ * Multiplies the external phase into a cell's transfer matrix: on a column for a phase at the input, on a row
+ * for one at the output. (re, im) is the factor of the guide that carries the shifter, loss included.
  */
 export function applyExternalInPlace(
   transfer: Float64Array,

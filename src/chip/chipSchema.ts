@@ -25,7 +25,9 @@ const range = z
   .describe('Least and greatest phase in radians that can be set, both ends included.');
 const name = z.string().min(1).max(200);
 
-/** The chip file, as the project's design describes it. Only `modes` is required; unknown keys are refused. */
+/**
+ * The chip file, as the project's design describes it. Only `modes` is required; unknown keys are refused.
+ */
 export const chipFileSchema = z
   .strictObject({
     $schema: z.string().exactOptional().describe('Where editors find this schema.'),

@@ -5,8 +5,9 @@ export interface Reach {
 }
 
 /**
- * Reach of a cell whose splitters have the given coupling ratios sin^2 a, sin^2 b: from cos^2(a+b) to cos^2(a-b).
- * Bandyopadhyay, Hamerly, Englund, Optica 8, 1247 (2021). The same for symmetric and real splitters.
+ * Reach of a cell whose splitters have the given coupling ratios sin^2 a, sin^2 b: from cos^2(a+b) to
+ * cos^2(a-b). Bandyopadhyay, Hamerly, Englund, Optica 8, 1247 (2021). The same for symmetric and real
+ * splitters.
  */
 export function cellReach(firstRatio: number, secondRatio: number): Reach {
   return {

@@ -15,8 +15,9 @@ export interface ReadChip {
 /**
  * Reads a chip file.
  * @param bytes JSON in UTF-8
- * @throws InputError that names the field: syntax, unknown keys (with the nearest known one), wrong types, numbers out of
- * range, cells or shifters that do not exist or are listed twice, lists of the wrong length, a newer format
+ * @throws InputError that names the field: syntax, unknown keys (with the nearest known one), wrong types,
+ * numbers out of range, cells or shifters that do not exist or are listed twice, lists of the wrong length, a
+ * newer format
  */
 export function readChip(bytes: Uint8Array): ReadChip {
   return chipFromDocument(parseJson(bytes));
@@ -58,8 +59,9 @@ type MeasuredCell = NonNullable<ChipFile['measuredCells']>[number];
 type ShifterOverride = NonNullable<ChipFile['shifterOverrides']>[number];
 
 /**
- * True for an entry that the schema takes too. A measured chip of 1024 ports has half a million of them, for which the schema
- * needs a second and this check a few milliseconds; what it does not take, the schema judges and explains.
+ * True for an entry that the schema takes too. A measured chip of 1024 ports has half a million of them, for
+ * which the schema needs a second and this check a few milliseconds; what it does not take, the schema judges
+ * and explains.
  */
 function isMeasuredCell(entry: unknown): entry is MeasuredCell {
   if (typeof entry !== 'object' || entry === null) return false;

@@ -8,7 +8,8 @@ import { REFERENCE_STYLE } from './idealChip.js';
 import { shifterCount } from './shifters.js';
 
 /**
- * The chip that a chip file describes, every default filled in and every number that refers to the mesh checked.
+ * The chip that a chip file describes, every default filled in and every number that refers to the mesh
+ * checked.
  * @throws InputError for a cell, shifter or list that does not fit the mesh, naming the field
  */
 export function resolveChip(file: ChipFile): Chip {

@@ -37,7 +37,10 @@ export function shifterIndexOfPort(chip: Chip, portIndex: number): number {
   return externalAtOutput(chip.style) ? portIndex : 2 * chip.mesh.cells + portIndex;
 }
 
-/** All shifters in the phase table's order: input phases, then cell by cell as the light meets them, output phases. */
+/**
+ * All shifters in the phase table's order: input phases, then cell by cell as the light meets them, output
+ * phases.
+ */
 export function listShifters(chip: Chip): Shifter[] {
   const { mesh, style } = chip;
   const shifters: Shifter[] = [];

@@ -7,7 +7,10 @@ import { turnIntoRange } from './turns.js';
 
 /** What a cell is asked to do and what it is built of. */
 export interface CellRequest {
-  /** W diag(e^{i d}) (external phase at the input) or diag(e^{i d}) W (at the output): 8 numbers, entry 11 re, im, 12, 21, 22. */
+  /**
+   * W diag(e^{i d}) (external phase at the input) or diag(e^{i d}) W (at the output): 8 numbers, entry 11 re,
+   * im, 12, 21, 22.
+   */
   readonly wanted: Float64Array;
   firstRatio: number;
   secondRatio: number;
@@ -19,7 +22,10 @@ export interface CellRequest {
 export interface CellSolution {
   internal: number;
   external: number;
-  /** The phases that would be set without a range; equal to those above modulo whole turns or the second branch when nothing was clamped. */
+  /**
+   * The phases that would be set without a range; equal to those above modulo whole turns or the second
+   * branch when nothing was clamped.
+   */
   internalWanted: number;
   externalWanted: number;
   internalClamped: boolean;
@@ -31,7 +37,9 @@ export interface CellSolution {
 /** Finds the phases of one cell after another; see {@link createCellSolver}. */
 export type CellSolver = (request: CellRequest) => CellSolution;
 
-/** How well a candidate does: Re Tr(wanted^dagger achieved), at most 2; differences below this are rounding. */
+/**
+ * How well a candidate does: Re Tr(wanted^dagger achieved), at most 2; differences below this are rounding.
+ */
 const SAME_SCORE = 1e-12;
 
 /**
@@ -40,14 +48,16 @@ const SAME_SCORE = 1e-12;
  *     W diag(e^{i d}) = diag(e^{i d'}) T(theta, phi)        external phase at the input
  *     diag(e^{i d}) W = T(theta, phi) diag(e^{i d'})        external phase at the output
  *
- * with T made of the cell's own splitters. One mechanism for ideal cells, for every style and for measured ratios
- * (Bandyopadhyay, Hamerly, Englund, Optica 8, 1247 (2021)); the formulas are those of section 5 of the project's conventions:
+ * with T made of the cell's own splitters. One mechanism for ideal cells, for every style and for measured
+ * ratios (Bandyopadhyay, Hamerly, Englund, Optica 8, 1247 (2021)); the formulas are those of section 5 of the
+ * project's conventions:
  *
  *     sin^2(theta/2) : cos^2(theta/2) = |W11|^2 - cos^2(a+b) : |W12|^2 - sin^2(a-b)     (exchanged for real splitters)
  *
- * Where the cell cannot reach |W11|^2 the nearest end of its reach is taken; phi and d' then maximise the overlap
- * abs Tr(wanted^dagger achieved). In a full bar or cross state phi is 0. theta lies in [0, pi], phi in [0, 2 pi), unless a range asks for the
- * second branch 2 pi - theta, for whole turns or for clamping: all of them are chosen before d' is computed.
+ * Where the cell cannot reach |W11|^2 the nearest end of its reach is taken; phi and d' then maximise the
+ * overlap abs Tr(wanted^dagger achieved). In a full bar or cross state phi is 0. theta lies in [0, pi], phi
+ * in [0, 2 pi), unless a range asks for the second branch 2 pi - theta, for whole turns or for clamping: all
+ * of them are chosen before d' is computed.
  *
  * The solver reuses its solution object: read it before the next call. It allocates nothing when called.
  *
@@ -71,7 +81,9 @@ export function createCellSolver(style: CellStyle, snap: number): CellSolver {
     carried: new Float64Array(4),
   };
 
-  /** Sets `overlap` for an internal phase. For an external phase at the output rows and columns change places. */
+  /**
+   * Sets `overlap` for an internal phase. For an external phase at the output rows and columns change places.
+   */
   function overlapAt(request: CellRequest, theta: number): void {
     writeArms(arms, style.internal, theta, 1);
     writeSplitArms(transfer, style.splitterForm, request.firstRatio, request.secondRatio, arms);
@@ -86,7 +98,10 @@ export function createCellSolver(style: CellStyle, snap: number): CellSolver {
     }
   }
 
-  /** The external phase that brings both rows of the overlap into line, in [0, 2 pi); 0 when it does not matter. */
+  /**
+   * The external phase that brings both rows of the overlap into line, in [0, 2 pi); 0 when it does not
+   * matter.
+   */
   function externalPhase(): number {
     const re =
       overlap[0]! * overlap[2]! +
@@ -171,7 +186,10 @@ export function createCellSolver(style: CellStyle, snap: number): CellSolver {
   };
 }
 
-/** theta in [0, pi] for |W11|^2, or for the nearest bar power in reach. The differences are taken between amplitudes, where both ends stay accurate. */
+/**
+ * theta in [0, pi] for |W11|^2, or for the nearest bar power in reach. The differences are taken between
+ * amplitudes, where both ends stay accurate.
+ */
 function internalPhase({ wanted, firstRatio, secondRatio }: CellRequest, realSplitters: boolean): number {
   const divisor = firstRatio * (1 - firstRatio) * secondRatio * (1 - secondRatio);
   if (!(divisor > 0)) return 0;

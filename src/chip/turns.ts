@@ -1,13 +1,17 @@
 import type { PhaseRange } from './Chip.js';
 
 const TURN = 2 * Math.PI;
-/** Rounding at the ends of a range is no reason to clamp; phases that a person could set never differ by so little. */
+/**
+ * Rounding at the ends of a range is no reason to clamp; phases that a person could set never differ by so
+ * little.
+ */
 const SLACK = 1e-12;
 
 /**
- * The angle moved by the fewest whole turns that bring it into the range, or NaN when no number of turns does.
- * Without a range, the angle itself.
- * @param turn what counts as a turn: 2 pi, but 4 pi where a differential pair must come back to the same matrix
+ * The angle moved by the fewest whole turns that bring it into the range, or NaN when no number of turns
+ * does. Without a range, the angle itself.
+ * @param turn what counts as a turn: 2 pi, but 4 pi where a differential pair must come back to the same
+ * matrix
  */
 export function turnIntoRange(angle: number, range: PhaseRange | null, turn = TURN): number {
   if (range === null) return angle;

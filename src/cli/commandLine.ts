@@ -17,7 +17,8 @@ import { addYieldCommand } from './yield.js';
 export const EXIT = { done: 0, notMet: 1, input: 2, internal: 3 } as const;
 
 /**
- * Runs the program with its arguments (without the names of node and of the script). Prints results, messages and errors.
+ * Runs the program with its arguments (without the names of node and of the script). Prints results, messages
+ * and errors.
  * @returns the exit code: 0 done, 1 done and a --require not met, 2 input or usage at fault, 3 internal fault
  */
 export async function runCommandLine(args: readonly string[]): Promise<number> {

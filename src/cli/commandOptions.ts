@@ -109,7 +109,10 @@ export function addRequireOption(command: Command): Command {
   );
 }
 
-/** Reads the number behind an option, for commander. @throws InputError `usage/number` from the reader that it returns */
+/**
+ * Reads the number behind an option, for commander. @throws InputError `usage/number` from the reader that it
+ * returns
+ */
 export function numberFor(option: string): (text: string) => number {
   return (text) => {
     const value = text.trim() === '' ? NaN : Number(text);
@@ -135,7 +138,9 @@ function notANumber(option: string, text: string, wanted: string): InputError {
   );
 }
 
-/** Reads the path behind an option, for commander: an empty one comes from a shell variable that is not set. */
+/**
+ * Reads the path behind an option, for commander: an empty one comes from a shell variable that is not set.
+ */
 export function pathFor(option: string): (text: string) => string {
   return (text) => {
     if (text !== '') return text;

@@ -60,8 +60,8 @@ function shortHash(hash = ''): string {
 }
 
 /**
- * Runs trials, keeping finished chunks in the folder of the results, and reports them. After an interrupt the part that is done is reported, the
- * chunks stay, and a message says how to go on.
+ * Runs trials, keeping finished chunks in the folder of the results, and reports them. After an interrupt the
+ * part that is done is reported, the chunks stay, and a message says how to go on.
  * @returns the exit code: 0, or 130 after an interrupt
  * @throws InputError when other results or another run's chunks are in the way
  */

@@ -51,8 +51,8 @@ export interface LoadedTable {
 }
 
 /**
- * Reads an argument TABLE. A CSV uses the JSON of the same name beside it for chip and target; its own phases win. --chip,
- * --layout and --target come before what the JSON says.
+ * Reads an argument TABLE. A CSV uses the JSON of the same name beside it for chip and target; its own phases
+ * win. --chip, --layout and --target come before what the JSON says.
  * @throws InputError when the chip is not known, or the table is not of it
  */
 export async function loadTable(path: string, options: TableOptions): Promise<LoadedTable> {
@@ -98,7 +98,10 @@ export async function loadTable(path: string, options: TableOptions): Promise<Lo
   return { path, rows: table.rows, settings, outOfRange, readChip, target, achieved, merit, hash };
 }
 
-/** Options that say how a target is to be read mean nothing for the one in a table, which has been read already. */
+/**
+ * Options that say how a target is to be read mean nothing for the one in a table, which has been read
+ * already.
+ */
 function refuseTargetOptions({
   target,
   transpose,

@@ -35,8 +35,8 @@ export interface LoadedTarget extends PreparedTarget {
 }
 
 /**
- * Reads an argument TARGET: an existing file or a name with a known ending is a file, `-` standard input, anything else
- * a formula.
+ * Reads an argument TARGET: an existing file or a name with a known ending is a file, `-` standard input,
+ * anything else a formula.
  * @throws InputError with the source named
  */
 export async function readTarget(argument: string): Promise<RawTarget> {
@@ -78,7 +78,8 @@ function rawTarget(
 }
 
 /**
- * Applies the options that turn what was read into a target for a chip of `modes` ports (undefined: of its own size).
+ * Applies the options that turn what was read into a target for a chip of `modes` ports (undefined: of its
+ * own size).
  * @param index place of the matrix in a batch, from 0
  */
 export function prepareLoaded(
@@ -154,8 +155,8 @@ function refuseBareArgument(argument: string): void {
 }
 
 /**
- * A word with an ending is meant as a file, even if there is none: formulas have brackets or operators. So is anything with
- * an ending that other programs give to matrices and tables.
+ * A word with an ending is meant as a file, even if there is none: formulas have brackets or operators. So is
+ * anything with an ending that other programs give to matrices and tables.
  */
 function looksLikePath(argument: string): boolean {
   return (

@@ -21,7 +21,10 @@ export function stem(path: string): string {
   return basename(path).replace(/(\.chip)?\.[^.]+$/, '') || basename(path);
 }
 
-/** The folder that a command writes to when it is not told: `out/` and the command with the file's stem or the formula's slug. */
+/**
+ * The folder that a command writes to when it is not told: `out/` and the command with the file's stem or the
+ * formula's slug.
+ */
 export function defaultFolder(
   command: string,
   source: { readonly path?: string; readonly text: string },
@@ -30,8 +33,8 @@ export function defaultFolder(
 }
 
 /**
- * The same for a command on a phase table. Tables are all called phases.csv: one that stands in a folder of results is told from the others by
- * the folder's name.
+ * The same for a command on a phase table. Tables are all called phases.csv: one that stands in a folder of
+ * results is told from the others by the folder's name.
  */
 export function defaultTableFolder(command: string, path: string): string {
   const folder = basename(dirname(resolve(path)));

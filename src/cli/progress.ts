@@ -8,7 +8,10 @@ export interface Progress {
 
 const BETWEEN_LINES = 200;
 
-/** Progress of `total` trials with their rate and the time left; silent where standard error is no terminal or --quiet was given. */
+/**
+ * Progress of `total` trials with their rate and the time left; silent where standard error is no terminal or
+ * --quiet was given.
+ */
 export function createProgress(console: Console | undefined, total: number): Progress {
   if (console === undefined || !console.showsProgress)
     return { advance: () => undefined, end: () => undefined };

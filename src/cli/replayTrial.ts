@@ -20,8 +20,8 @@ import type { YieldOptions } from './yieldParts.js';
 import { scenarioBlocks, settledOptions, yieldFolder } from './yieldParts.js';
 
 /**
- * Writes the chip of one trial (number from 1) as a chip file of its own, its phases as they really are (errors and resolution included), and
- * what it is worth: `verify` gives the same.
+ * Writes the chip of one trial (number from 1) as a chip file of its own, its phases as they really are
+ * (errors and resolution included), and what it is worth: `verify` gives the same.
  */
 export async function replayTrial(
   scenario: Scenario,
@@ -77,8 +77,8 @@ export async function replayTrial(
 }
 
 /**
- * The chip file of a sampled chip: every cell measured, no process any more, and no limits of shifters: these bind what is set, and the phases of a
- * trial are what comes of it.
+ * The chip file of a sampled chip: every cell measured, no process any more, and no limits of shifters: these
+ * bind what is set, and the phases of a trial are what comes of it.
  */
 function chipFileOf(base: ChipFile, { chip }: SampledChip, plan: TrialPlan, number: number): ChipFile {
   const { process, shifterLimits, shifterOverrides = [], ...rest } = base;

@@ -56,7 +56,9 @@ export interface JudgedRequirement extends Requirement {
   readonly met: boolean;
 }
 
-/** Judges requirements: errors must not be over their limit, all other figures not under it. NaN meets none. */
+/**
+ * Judges requirements: errors must not be over their limit, all other figures not under it. NaN meets none.
+ */
 export function judge(requirements: readonly Requirement[], merit: Merit): JudgedRequirement[] {
   return requirements.map(({ key, limit }) => {
     const value = merit[key];

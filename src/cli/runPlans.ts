@@ -38,8 +38,8 @@ export interface PlanOutcome {
 }
 
 /**
- * Runs the trials of plans on worker threads. Chunks are of a size that depends on the plan alone and are taken in order, so the results are the same bytes
- * for any number of workers and after a resume.
+ * Runs the trials of plans on worker threads. Chunks are of a size that depends on the plan alone and are
+ * taken in order, so the results are the same bytes for any number of workers and after a resume.
  * @throws InputError `run/size` when the results would fill the memory
  */
 export async function runPlans(run: PlanRun): Promise<PlanOutcome> {

@@ -1,4 +1,7 @@
-/** Rows of text as aligned columns; a column is aligned to the right where every entry below the header looks like a number. */
+/**
+ * Rows of text as aligned columns; a column is aligned to the right where every entry below the header looks
+ * like a number.
+ */
 export function textTable(header: readonly string[], rows: readonly (readonly string[])[]): string {
   const widths = header.map((title, k) => Math.max(title.length, ...rows.map((row) => row[k]?.length ?? 0)));
   const numeric = header.map((_, k) => rows.every((row) => /^-?[\d.]*(e[-+]?\d+)?$/.test(row[k] ?? '')));

@@ -203,7 +203,10 @@ export function parseShare(option: string): (text: string) => number {
   };
 }
 
-/** Any finite number, for commander; its limits are checked where it is used. @throws InputError `usage/number` */
+/**
+ * Any finite number, for commander; its limits are checked where it is used. @throws InputError
+ * `usage/number`
+ */
 export function realNumber(option: string): (text: string) => number {
   return (text) => {
     const value = Number(text);

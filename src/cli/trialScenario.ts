@@ -42,7 +42,8 @@ const HAAR_EACH_TRIAL = /^\s*haar\s*\(\s*(\d+|N)\s*\)\s*$/;
 const OPEN_MODES = /\bN\b/;
 
 /**
- * Reads target and chip of a command that samples chips. A formula may leave the number of ports open as `N`, to be swept, or taken from the chip.
+ * Reads target and chip of a command that samples chips. A formula may leave the number of ports open as `N`,
+ * to be swept, or taken from the chip.
  * @param modes number of ports for a formula with `N` when no chip is named
  */
 export async function loadScenario(
@@ -125,7 +126,10 @@ export async function planAt(
   return planOf(scenario, changed, settled);
 }
 
-/** 1 - F of the chip as it stands, without errors; 0 for Haar-random targets on a chip without flaws is taken as it is. */
+/**
+ * 1 - F of the chip as it stands, without errors; 0 for Haar-random targets on a chip without flaws is taken
+ * as it is.
+ */
 export function infidelityWithoutErrors({ readChip: { chip }, target }: Scenario): number {
   if (target === null) return 0;
   const { settings } = programChip(chip, target.matrix).program;

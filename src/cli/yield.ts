@@ -275,7 +275,10 @@ function showYield(
   });
 }
 
-/** Says what theory expects, and when simulation is off by more than sampling and the theory's own limits allow. */
+/**
+ * Says what theory expects, and when simulation is off by more than sampling and the theory's own limits
+ * allow.
+ */
 function tellTheory(
   console: Console,
   { mean, standardError }: Summary,
@@ -286,7 +289,8 @@ function tellTheory(
   const found = 1 - mean;
   const expected = theory.meanInfidelity;
   console.result(`mean infidelity ${shortNumber(found)}, small-error theory ${shortNumber(expected)}`);
-  // A single cell's infidelity is as a normal number squared, with a spread of sqrt(2) means, and few trials may well miss its tail.
+  // A single cell's infidelity is as a normal number squared, with a spread of sqrt(2) means, and few trials
+  // may well miss its tail.
   const leastError = trials < 1000 ? Math.SQRT2 * (expected / Math.sqrt(trials)) : 0;
   const allowed = 4 * Math.max(standardError ?? 0, leastError) + theory.uncertainty;
   if (Math.abs(found - expected) > allowed) {

@@ -3,13 +3,14 @@ import { identityMatrix } from '../matrix/ComplexMatrix.js';
 import type { Mesh } from '../mesh/Mesh.js';
 
 /**
- * A unitary as one 2x2 factor per cell of a mesh and one diagonal of phases. Factor k acts on the two ports of cell k:
+ * A unitary as one 2x2 factor per cell of a mesh and one diagonal of phases. Factor k acts on the two ports
+ * of cell k:
  *
  *     W_k = [ c  -conj(s) ]     c = cosine[k] >= 0,  s = sineRe[k] + i sineIm[k],  c^2 + |s|^2 = 1
  *           [ s   c       ]
  *
- * |W11|^2 = c^2 is the bar power that is wanted of the cell. c = 1 with s = 0 (bar) and c = 0 with s = 1 (cross) are exact.
- * The factors know nothing of the hardware: no cell style, no splitter ratio.
+ * |W11|^2 = c^2 is the bar power that is wanted of the cell. c = 1 with s = 0 (bar) and c = 0 with s = 1
+ * (cross) are exact. The factors know nothing of the hardware: no cell style, no splitter ratio.
  */
 export interface Decomposition {
   readonly mesh: Mesh;
@@ -18,7 +19,10 @@ export interface Decomposition {
   readonly sineIm: Float64Array;
   /** Phase in radians of the diagonal on each port. */
   readonly diagonal: Float64Array;
-  /** Per port, index of the first cell on it that the light meets behind the diagonal; the number of cells if none. */
+  /**
+   * Per port, index of the first cell on it that the light meets behind the diagonal; the number of cells if
+   * none.
+   */
   readonly diagonalBefore: Int32Array;
 }
 

@@ -6,7 +6,10 @@ import type { Mirrored, Nulling } from './Nulling.js';
 import type { Rotations } from './Rotations.js';
 import { createRotations } from './Rotations.js';
 
-/** Entries up to NEGLIGIBLE N eps count as zero: rounding in the nulling itself was seen to stay below 2 N eps. */
+/**
+ * Entries up to NEGLIGIBLE N eps count as zero: rounding in the nulling itself was seen to stay below 2 N
+ * eps.
+ */
 const NEGLIGIBLE = 4;
 
 /**

@@ -9,8 +9,8 @@ export interface Place {
 }
 
 /**
- * A fault in what the caller handed in. `message` says in one line what is wrong and where, `remedy` in one line how
- * to mend it; `code` is stable (`folder/what`), for programs that react to it.
+ * A fault in what the caller handed in. `message` says in one line what is wrong and where, `remedy` in one
+ * line how to mend it; `code` is stable (`folder/what`), for programs that react to it.
  */
 export class InputError extends Error {
   override readonly name = 'InputError';
@@ -25,7 +25,9 @@ export class InputError extends Error {
     this.place = place;
   }
 
-  /** The same fault, with the source named: readers of bytes do not know the file's name, their callers do. */
+  /**
+   * The same fault, with the source named: readers of bytes do not know the file's name, their callers do.
+   */
   withSource(source: string): InputError {
     if (this.place.source !== undefined) return this;
     const bare = this.message.slice(oneLine(describePlace(this.place)).length).trimStart();

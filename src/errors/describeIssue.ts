@@ -20,8 +20,8 @@ export function fieldPath(path: readonly PropertyKey[]): string {
 }
 
 /**
- * Puts the first fault that a schema found in a document into words: the field's path, what stands there, what is expected, and
- * for an unknown key or word the nearest known one.
+ * Puts the first fault that a schema found in a document into words: the field's path, what stands there,
+ * what is expected, and for an unknown key or word the nearest known one.
  */
 export function describeIssue(
   schema: z.ZodType,

@@ -1,6 +1,7 @@
 /**
- * The name among `known` that a person most likely meant by `name`, or undefined when none is near: at most a third
- * of the letters may differ, one of a short name (Damerau-Levenshtein distance with adjacent exchanges, case ignored).
+ * The name among `known` that a person most likely meant by `name`, or undefined when none is near: at most a
+ * third of the letters may differ, one of a short name (Damerau-Levenshtein distance with adjacent exchanges,
+ * case ignored).
  */
 export function nearestName(name: string, known: Iterable<string>): string | undefined {
   let best: string | undefined;

@@ -14,8 +14,9 @@ export function parseJson(bytes: Uint8Array): unknown {
 
 /**
  * Parses JSON.
- * @throws InputError `input/empty`, `input/too-deep`, `input/not-finite` for NaN and Infinity, which JSON cannot write, or
- * `input/not-json` with the line and the character where the text stops being JSON, when the engine tells them
+ * @throws InputError `input/empty`, `input/too-deep`, `input/not-finite` for NaN and Infinity, which JSON
+ * cannot write, or `input/not-json` with the line and the character where the text stops being JSON, when the
+ * engine tells them
  */
 export function parseJsonText(text: string): unknown {
   if (text.trim() === '') {

@@ -43,8 +43,8 @@ export class SvgPart {
 }
 
 /**
- * The text of an SVG document that `draw` has filled; the root's attributes are asked for afterwards, when sizes are known.
- * Each call builds in a window of its own, so that no call leaves traces in the next.
+ * The text of an SVG document that `draw` has filled; the root's attributes are asked for afterwards, when
+ * sizes are known. Each call builds in a window of its own, so that no call leaves traces in the next.
  */
 export function svgText(draw: (page: SvgPart) => void, rootAttributes: () => Attributes): string {
   const window = createSVGWindow();

@@ -3,8 +3,8 @@ import type { SvgPart } from './SvgPage.js';
 import { rounded } from './SvgPage.js';
 
 /**
- * The mark that tells a phase without its hue: a hand from the middle of a square of the given size, pointing along the
- * phase counterclockwise from the right.
+ * The mark that tells a phase without its hue: a hand from the middle of a square of the given size, pointing
+ * along the phase counterclockwise from the right.
  */
 export function drawHand(group: SvgPart, x: number, y: number, size: number, phase: number): void {
   const length = 0.4 * size;

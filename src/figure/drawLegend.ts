@@ -15,7 +15,9 @@ const STOPS = 32;
 /** Room beside the scale below which the notes stand under it. */
 const LEAST_NOTE_WIDTH = 40;
 
-/** The colour scale over one turn, with the hands, and notes on how to read the figure; returns the bottom. */
+/**
+ * The colour scale over one turn, with the hands, and notes on how to read the figure; returns the bottom.
+ */
 export function drawLegend(page: SvgPart, chip: Chip, layout: MeshFigureLayout, top: number): number {
   const group = page.add('g', { 'id': 'legend', 'font-size': SMALL_TEXT });
   const left = MARGIN + 2;

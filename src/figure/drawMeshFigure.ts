@@ -23,7 +23,10 @@ import { guardedTextWidth, wrapText } from './textWidth.js';
 export const FONTS = "Helvetica, Arial, 'Liberation Sans', 'DejaVu Sans', sans-serif";
 export const TITLE_TEXT = 8 * POINT;
 export const CAPTION_TEXT = 7 * POINT;
-/** The widest number of phases in [0, 2 pi); columns do not depend on the settings as long as phases are wrapped. */
+/**
+ * The widest number of phases in [0, 2 pi); columns do not depend on the settings as long as phases are
+ * wrapped.
+ */
 const USUAL_NUMBER = '0.000π';
 
 /** What may be chosen of a mesh figure. */
@@ -32,23 +35,31 @@ export interface MeshFigureOptions {
   /** Lines below the figure, such as target, layout and fidelity; each is wrapped to the width. */
   readonly captionLines?: readonly string[];
   /**
-   * Printed width: `one-column` 85 mm, `two-column` 178 mm, or millimetres from 30 to 5000. By default the smaller of the
-   * two in which the mesh is legible, and wider only where numbers do not fit in 178 mm.
+   * Printed width: `one-column` 85 mm, `two-column` 178 mm, or millimetres from 30 to 5000. By default the
+   * smaller of the two in which the mesh is legible, and wider only where numbers do not fit in 178 mm.
    */
   readonly width?: FigureWidth;
-  /** Whether phases are written, in multiples of pi. By default up to 12 ports, where a given width has room for them. */
+  /**
+   * Whether phases are written, in multiples of pi. By default up to 12 ports, where a given width has room
+   * for them.
+   */
   readonly numbers?: boolean;
-  /** Whether cells are numbered in the drawing, where they have room; their titles hold the number in any case. */
+  /**
+   * Whether cells are numbered in the drawing, where they have room; their titles hold the number in any
+   * case.
+   */
   readonly cellNumbers?: boolean;
 }
 
 /**
- * The mesh of a chip with the phases of all its shifters, as the text of an SVG document for print: guides from left to
- * right, cells with two splitters, shifters where they stand on the chip. Sizes are millimetres, no text is smaller than 6 pt.
- * Each cell is a group `cell-K`, each shifter a group `shifter-K`, both counted from 1 and with a title that a viewer
- * shows. The same arguments give the same bytes. Cost: about 0.2 ms a cell.
+ * The mesh of a chip with the phases of all its shifters, as the text of an SVG document for print: guides
+ * from left to right, cells with two splitters, shifters where they stand on the chip. Sizes are millimetres,
+ * no text is smaller than 6 pt. Each cell is a group `cell-K`, each shifter a group `shifter-K`, both counted
+ * from 1 and with a title that a viewer shows. The same arguments give the same bytes. Cost: about 0.2 ms a
+ * cell.
  * @param settings phases in radians, of the chip's shape
- * @throws RangeError for settings that are not of the chip's shape, or not finite; InputError for a width out of range or
+ * @throws RangeError for settings that are not of the chip's shape, or not finite; InputError for a width out
+ * of range or
  *   too small for what is asked (see `meshFigureLayout`)
  */
 export function drawMeshFigure(chip: Chip, settings: Settings, options: MeshFigureOptions = {}): string {
@@ -68,7 +79,8 @@ export function drawMeshFigure(chip: Chip, settings: Settings, options: MeshFigu
   const legendTop = columnBaseline + (chip.mesh.columns === 0 ? 0 : 0.9 * SMALL_TEXT);
   const pen = { chip, settings, layout, guideY };
 
-  // The height is known only when the legend and the caption are drawn; the root's attributes come first all the same.
+  // The height is known only when the legend and the caption are drawn; the root's attributes come first all
+  // the same.
   let height = 0;
   const body = (page: SvgPart): void => {
     page.addText('title', title === '' ? `Mesh of ${chip.name}` : title);

@@ -25,7 +25,9 @@ export function drawShifter(parent: SvgPart, pen: MeshPen, shifter: Shifter): vo
   if (layout.numbers) drawNumber(group, pen, shifter, phase);
 }
 
-/** A square in the phase's colour with a hand that points along the phase, counterclockwise from the right. */
+/**
+ * A square in the phase's colour with a hand that points along the phase, counterclockwise from the right.
+ */
 function drawPhaseBlock(group: SvgPart, layout: MeshFigureLayout, x: number, y: number, phase: number): void {
   const size = layout.block;
   const stroke = Math.min(0.13, 0.12 * size);
@@ -97,7 +99,9 @@ function lineOf({ layout, chip }: MeshPen, isExternal: boolean, above: boolean):
   return metFirst === above ? 1 : 0;
 }
 
-/** Centres of a cell's numbers, from the column's left edge: over their blocks as far as the column allows. */
+/**
+ * Centres of a cell's numbers, from the column's left edge: over their blocks as far as the column allows.
+ */
 function numberCentres(
   { layout, settings, chip }: MeshPen,
   cell: number,

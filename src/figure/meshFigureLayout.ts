@@ -15,7 +15,10 @@ const TWO_COLUMN = 178;
 const NARROWEST = 30;
 const WIDEST = 5000;
 
-/** Width of a mesh column below which a smaller page width is not taken by itself, and below which nothing is drawn. */
+/**
+ * Width of a mesh column below which a smaller page width is not taken by itself, and below which nothing is
+ * drawn.
+ */
 const COMFORTABLE = { numbers: 9, plain: 3.4 } as const;
 const LEAST_PLAIN_COLUMN = 0.4;
 const WIDEST_COLUMN = 21;
@@ -40,7 +43,10 @@ export interface LayoutWishes {
   readonly width?: FigureWidth | undefined;
   /** Undefined: numbers up to 12 ports, where they fit. */
   readonly numbers?: boolean | undefined;
-  /** Guarded widths of the widest phase, of the widest port number, and of the widest port number with its name. */
+  /**
+   * Guarded widths of the widest phase, of the widest port number, and of the widest port number with its
+   * name.
+   */
   readonly numberWidth: number;
   readonly portNumberWidth: number;
   readonly portLabelWidth: number;
@@ -79,7 +85,9 @@ export interface MeshFigureLayout {
   readonly cell: CellShape;
 }
 
-/** A cell's parts along x, from the column's left edge, and the distance of its guides where they run close. */
+/**
+ * A cell's parts along x, from the column's left edge, and the distance of its guides where they run close.
+ */
 export interface CellShape {
   /** Centres of the two shifters. */
   readonly external: number;
@@ -93,7 +101,8 @@ export interface CellShape {
 
 /**
  * The sizes for a chip.
- * @throws InputError `figure/width` for a width outside 30 to 5000 mm; `figure/too-narrow` when the width that was asked
+ * @throws InputError `figure/width` for a width outside 30 to 5000 mm; `figure/too-narrow` when the width
+ * that was asked
  *   for cannot hold the mesh, or not with the numbers that were asked for
  */
 export function meshFigureLayout(chip: Chip, wishes: LayoutWishes): MeshFigureLayout {
@@ -128,7 +137,10 @@ export function askedWidth(width: FigureWidth): number {
   return width;
 }
 
-/** One page column where the mesh is comfortable in it, else two, and more only where the numbers would not fit. */
+/**
+ * One page column where the mesh is comfortable in it, else two, and more only where the numbers would not
+ * fit.
+ */
 function automaticWidth(chip: Chip, wishes: LayoutWishes, numbers: boolean): number {
   const comfortable = numbers ? COMFORTABLE.numbers : COMFORTABLE.plain;
   const inOneColumn = columnWidthIn(chip, wishes, numbers, ONE_COLUMN);
@@ -239,13 +251,17 @@ function guidePitch(chip: Chip, column: number, numbers: boolean, lines: NumberL
   return Math.max(betweenCells + 0.3, portColumn + 0.3, Math.min(8.5, 0.52 * column));
 }
 
-/** Baseline of the line-th number (from 0, counted away from the guide), from the guide; negative is above. */
+/**
+ * Baseline of the line-th number (from 0, counted away from the guide), from the guide; negative is above.
+ */
 export function numberBaseline(layout: MeshFigureLayout, above: boolean, line: number): number {
   const edge = layout.block / 2 + NUMBER_CLEARANCE;
   return above ? -(edge + line * SMALL_TEXT) : edge + 0.74 * SMALL_TEXT + line * SMALL_TEXT;
 }
 
-/** Parts of a cell with the external shifter before the splitters, or the mirror image with it behind them. */
+/**
+ * Parts of a cell with the external shifter before the splitters, or the mirror image with it behind them.
+ */
 function cellShape(
   externalBehind: boolean,
   column: number,

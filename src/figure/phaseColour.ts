@@ -1,7 +1,8 @@
 /**
- * The cyclic colour of a phase. In CIELAB, lightness falls evenly from 0 to pi and rises evenly back to 2 pi, so that a
- * grey print shows how far the phase is from 0; between, the colour is orange on the way down and blue on the way up, two
- * hues that every common kind of colour blindness tells apart. At 0 and pi the colour is neutral.
+ * The cyclic colour of a phase. In CIELAB, lightness falls evenly from 0 to pi and rises evenly back to 2 pi,
+ * so that a grey print shows how far the phase is from 0; between, the colour is orange on the way down and
+ * blue on the way up, two hues that every common kind of colour blindness tells apart. At 0 and pi the colour
+ * is neutral.
  */
 
 const LIGHTEST = 95;
@@ -18,7 +19,9 @@ const LINEAR_FROM_XYZ = [
   [0.0556434, -0.2040259, 1.0572252],
 ] as const;
 
-/** Red, green and blue of a phase in radians, from 0 to 255, not rounded and, being inside sRGB, not clipped. */
+/**
+ * Red, green and blue of a phase in radians, from 0 to 255, not rounded and, being inside sRGB, not clipped.
+ */
 export function phaseRgb(phase: number): [red: number, green: number, blue: number] {
   const turn = turnOf(phase);
   const fromZero = distanceFromZero(turn);
@@ -34,10 +37,15 @@ export function phaseColour(phase: number): string {
     .join('')}`;
 }
 
-/** Black and white have the same contrast (WCAG 2) against a luminance of 0.179, which is a lightness of 49.4. */
+/**
+ * Black and white have the same contrast (WCAG 2) against a luminance of 0.179, which is a lightness of 49.4.
+ */
 const MIDDLE = 49.4;
 
-/** The colour, black or white, of a mark upon the phase's colour: the one that contrasts more, by at least 4.5 to 1. */
+/**
+ * The colour, black or white, of a mark upon the phase's colour: the one that contrasts more, by at least 4.5
+ * to 1.
+ */
 export function markColour(phase: number): string {
   return lightness(distanceFromZero(turnOf(phase))) < MIDDLE ? '#ffffff' : '#000000';
 }

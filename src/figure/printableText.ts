@@ -1,6 +1,6 @@
 /**
- * Text as it may stand in an XML document: control characters, lone surrogates and noncharacters become a blank,
- * runs of blanks one blank. Markup is left alone here; the writer escapes it.
+ * Text as it may stand in an XML document: control characters, lone surrogates and noncharacters become a
+ * blank, runs of blanks one blank. Markup is left alone here; the writer escapes it.
  */
 export function printableText(text: string): string {
   return text

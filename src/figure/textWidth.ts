@@ -1,7 +1,7 @@
 /**
- * How wide text may turn out. A figure does not know the font that a viewer will take, so widths are guarded: they are
- * those of DejaVu Sans, the widest of the usual sans-serif faces, rounded up. Helvetica and Arial come out about 12 %
- * narrower.
+ * How wide text may turn out. A figure does not know the font that a viewer will take, so widths are guarded:
+ * they are those of DejaVu Sans, the widest of the usual sans-serif faces, rounded up. Helvetica and Arial
+ * come out about 12 % narrower.
  */
 
 /** Advance widths in em. Everything that is not listed has a default by kind, see `characterWidth`. */
@@ -52,7 +52,10 @@ export function cutText(text: string, width: number, fontSize: number): string {
   return kept.trimEnd() + ELLIPSIS;
 }
 
-/** The text in lines that fit in `width`, broken at blanks, and inside a word only where the word alone is too long. */
+/**
+ * The text in lines that fit in `width`, broken at blanks, and inside a word only where the word alone is too
+ * long.
+ */
 export function wrapText(text: string, width: number, fontSize: number, bold = false): string[] {
   const lines: string[] = [];
   let line = '';

@@ -17,7 +17,10 @@ export function matrixHash({ rows, columns, re, im }: ComplexMatrix): string {
   return contentHash(bytes);
 }
 
-/** Identity of a run: a short hash of the command, the contents of its inputs and the options that change its result. */
+/**
+ * Identity of a run: a short hash of the command, the contents of its inputs and the options that change its
+ * result.
+ */
 export function runIdentity(
   command: string,
   inputs: Readonly<Record<string, string>>,

@@ -15,7 +15,10 @@ export function npyTable(rows: number, columns: number, values: Float64Array): U
   return bytes;
 }
 
-/** Magic, version and length take 10 bytes; the header ends with a line feed on a multiple of 64 (NumPy Enhancement Proposal 1). */
+/**
+ * Magic, version and length take 10 bytes; the header ends with a line feed on a multiple of 64 (NumPy
+ * Enhancement Proposal 1).
+ */
 function npyHeader(rows: number, columns: number): Uint8Array {
   const dictionary = `{'descr': '<f8', 'fortran_order': False, 'shape': (${rows}, ${columns}), }`;
   const length = Math.ceil((10 + dictionary.length + 1) / 64) * 64;

@@ -8,7 +8,9 @@ export function temporaryName(path: string): string {
   return join(dirname(path), `.${basename(path)}.${process.pid}.partial`);
 }
 
-/** Writes the content beside the path and returns the temporary file's path; nothing stays behind on failure. */
+/**
+ * Writes the content beside the path and returns the temporary file's path; nothing stays behind on failure.
+ */
 export async function writeTemporary(path: string, content: string | Uint8Array): Promise<string> {
   const temporary = temporaryName(path);
   try {
@@ -27,7 +29,8 @@ export async function writeTemporary(path: string, content: string | Uint8Array)
 }
 
 /**
- * Makes sure that a file that the user named may be written: nothing stands there, or the same content does already.
+ * Makes sure that a file that the user named may be written: nothing stands there, or the same content does
+ * already.
  * @throws InputError `output/exists` without `force`, `file/unwritable` for a folder of this name
  */
 export async function requireFree(path: string, content: string | Uint8Array, force: boolean): Promise<void> {
@@ -43,8 +46,8 @@ export async function requireFree(path: string, content: string | Uint8Array, fo
 }
 
 /**
- * Makes a folder and those above it. Returns the topmost one that is new, or undefined when all were there. Step by step:
- * the recursive call of Node never ends where folders cannot be made, as in /proc.
+ * Makes a folder and those above it. Returns the topmost one that is new, or undefined when all were there.
+ * Step by step: the recursive call of Node never ends where folders cannot be made, as in /proc.
  * @throws InputError `file/unwritable`; what was made by then is removed
  */
 export async function makeFolder(path: string): Promise<string | undefined> {

@@ -20,7 +20,10 @@ export interface Results {
   readonly command: string;
   /** Replace results of another run, and a file of the user's name. */
   readonly force: boolean;
-  /** A report that stands alone may be replaced by one of the same command: nothing is lost that was asked for by name. */
+  /**
+   * A report that stands alone may be replaced by one of the same command: nothing is lost that was asked for
+   * by name.
+   */
   readonly replacesLoneReport?: boolean;
   /** A file that the user named, written with the results or not at all. */
   readonly named?: NamedFile;
@@ -33,10 +36,10 @@ export interface NamedFile {
 }
 
 /**
- * Writes the results of a run: each file whole or not at all, the report last. Results of the same run (same `runId`)
- * are replaced, and so are, with `force`, those of another one; what else an earlier run of the same command left is removed. Files of
- * another command stay, since they may be what this one has read. When anything fails, or the process is told to end, no new folder and no half file
- * is left behind.
+ * Writes the results of a run: each file whole or not at all, the report last. Results of the same run (same
+ * `runId`) are replaced, and so are, with `force`, those of another one; what else an earlier run of the same
+ * command left is removed. Files of another command stay, since they may be what this one has read. When
+ * anything fails, or the process is told to end, no new folder and no half file is left behind.
  * @throws InputError `output/exists` when other results are in the way, `file/unwritable`
  */
 export async function writeResults(results: Results): Promise<void> {
@@ -69,7 +72,8 @@ export async function writeResults(results: Results): Promise<void> {
     // Once more, now that only renaming is left: another run may have written there meanwhile.
     const earlier = await requireNoOtherRun(results);
     if (earlier !== undefined && earlier.runId !== results.runId && earlier.command === results.command) {
-      // The old report goes first and the new one comes last: at no moment does a report stand beside another run's files.
+      // The old report goes first and the new one comes last: at no moment does a report stand beside another
+      // run's files.
       for (const name of [REPORT_FILE, ...earlier.files]) await rm(join(folder, name), { force: true });
     }
     for (const [k, [path]] of contents.entries()) await rename(temporaries[k]!, path);
@@ -95,7 +99,10 @@ function cleanUpOnSignal(cleanUp: () => void): () => void {
   };
 }
 
-/** What an earlier run left in the folder. @throws InputError `output/exists` when that is another run's, without `force` */
+/**
+ * What an earlier run left in the folder. @throws InputError `output/exists` when that is another run's,
+ * without `force`
+ */
 export async function requireNoOtherRun({
   folder,
   files,
@@ -138,7 +145,10 @@ interface EarlierReport {
   readonly files: readonly string[];
 }
 
-/** What an earlier run left, or undefined. Only plain file names are believed: a report must not make us remove anything else. */
+/**
+ * What an earlier run left, or undefined. Only plain file names are believed: a report must not make us
+ * remove anything else.
+ */
 async function readEarlierReport(folder: string): Promise<EarlierReport | undefined> {
   try {
     const report = JSON.parse(await readFile(join(folder, REPORT_FILE), 'utf8')) as Partial<EarlierReport>;

@@ -4,7 +4,9 @@ const PAGE = 65536;
 /** Below this stand the constants of the compiled kernels. */
 const FIRST_FREE = 65536;
 
-/** The kernels by name. They take addresses in bytes, whole numbers and doubles; they never check anything. */
+/**
+ * The kernels by name. They take addresses in bytes, whole numbers and doubles; they never check anything.
+ */
 export interface Kernels {
   seedTrials(state: number, seedLow: number, seedHigh: number, stream: number, first: number): void;
   /** `layers`: the tables of ziggurat.ts. */
@@ -82,8 +84,8 @@ export interface Kernels {
   ): void;
   /**
    * Lays an N x N matrix out as the nulling kernels want it: see assembly/nullingMatrix.ts. Entry (i, j) is
-   * double number `first` + i `rowStep` + j `columnStep` of the plane at `source`, N^2 doubles for re, then as
-   * many for im.
+   * double number `first` + i `rowStep` + j `columnStep` of the plane at `source`, N^2 doubles for re, then
+   * as many for im.
    */
   layOutMatrix(
     modes: number,
@@ -115,13 +117,18 @@ type NullingKernel = (
 ) => void;
 
 /**
- * An instance of the compiled kernels with a memory of its own, in which arrays are laid out once. Not shared between workers.
+ * An instance of the compiled kernels with a memory of its own, in which arrays are laid out once. Not shared
+ * between workers.
  *
- * The kernel contract: addresses are bytes, multiples of 16; arrays do not overlap; sizes and values have been checked before.
+ * The kernel contract: addresses are bytes, multiples of 16; arrays do not overlap; sizes and values have
+ * been checked before.
  */
 export interface KernelInstance {
   readonly kernels: Kernels;
-  /** Reserves an array of doubles. Views from before a growth of the memory are dead: reserve everything first, then take views. */
+  /**
+   * Reserves an array of doubles. Views from before a growth of the memory are dead: reserve everything
+   * first, then take views.
+   */
   reserve(doubles: number): number;
   /** Reserves so many bytes. */
   reserveBytes(bytes: number): number;

@@ -44,7 +44,9 @@ const exchange = new DataView(new ArrayBuffer(8));
 /** Bits of sqrt(1/2). */
 const ROOT_HALF = 0x3fe6a09e667f3bcdn;
 
-/** log(u) for u in (0, 1]: the mantissa is brought to [sqrt(1/2), sqrt(2)), then 2 artanh((m - 1)/(m + 1)). */
+/**
+ * log(u) for u in (0, 1]: the mantissa is brought to [sqrt(1/2), sqrt(2)), then 2 artanh((m - 1)/(m + 1)).
+ */
 function logarithm(u: number): number {
   exchange.setFloat64(0, u);
   const bits = exchange.getBigInt64(0);

@@ -4,13 +4,16 @@ const DOUBLES = 3;
 /** Doubles that the tables take: one edge more than layers. */
 export const ZIGGURAT_SIZE = (LAYERS + 1) * DOUBLES;
 
-/** Where the tail begins, and the area of each layer: Marsaglia and Tsang, J. Stat. Softw. 5, 8 (2000), for 256 layers. */
+/**
+ * Where the tail begins, and the area of each layer: Marsaglia and Tsang, J. Stat. Softw. 5, 8 (2000), for
+ * 256 layers.
+ */
 const TAIL = 3.6541528853610088;
 const AREA = 0.00492867323399;
 
 /**
- * Writes the tables that `fillNormals` reads. The normal density (without its constant) is covered by layers of one area, from the
- * tail's, which is as wide as its area needs, up to the peak.
+ * Writes the tables that `fillNormals` reads. The normal density (without its constant) is covered by layers
+ * of one area, from the tail's, which is as wide as its area needs, up to the peak.
  */
 export function writeZiggurat(tables: Float64Array): void {
   const density = (x: number): number => Math.exp(-0.5 * x * x);

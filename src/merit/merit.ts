@@ -11,7 +11,10 @@ import { powerDistance } from './powerDistance.js';
 export interface Merit {
   /** abs(Tr(U^dag V))^2 / (N Tr(V^dag V)), blind to a global phase and to uniform loss; 1 is perfect. */
   readonly fidelity: number;
-  /** (N F + 1)/(N + 1): Horodecki et al., Phys. Rev. A 60, 1888 (1999); Nielsen, Phys. Lett. A 303, 249 (2002). */
+  /**
+   * (N F + 1)/(N + 1): Horodecki et al., Phys. Rev. A 60, 1888 (1999); Nielsen, Phys. Lett. A 303, 249
+   * (2002).
+   */
   readonly averageGateFidelity: number;
   /** Fidelity at the best phases of the free ports. */
   readonly portPhaseFreeFidelity: number;
@@ -19,7 +22,10 @@ export interface Merit {
   readonly rmsError: number;
   /** Spectral norm of U - e^{ig} V at the same g. */
   readonly worstCaseError: number;
-  /** Mean over inputs of the total variation between output powers, normalised per input; blind to all phases and to loss. */
+  /**
+   * Mean over inputs of the total variation between output powers, normalised per input; blind to all phases
+   * and to loss.
+   */
   readonly powerDistance: number;
   /** Tr(V^dag V)/N: the power that arrives, averaged over inputs. */
   readonly transmission: number;
@@ -48,7 +54,8 @@ export function isUpperLimit(key: keyof Merit): boolean {
  * @param target U, N x N unitary
  * @param achieved V, N x N, lossy or not
  * @param freePorts where the phases are free in the port-phase-free fidelity
- * @throws RangeError when the shapes differ. A V of zeros has no fidelity: its figures are 0, its errors those of darkness.
+ * @throws RangeError when the shapes differ. A V of zeros has no fidelity: its figures are 0, its errors
+ * those of darkness.
  */
 export function figuresOfMerit(
   target: ComplexMatrix,

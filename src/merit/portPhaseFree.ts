@@ -7,14 +7,17 @@ import { wrapTurn } from '../units/angle.js';
 /** The ports whose phases are free: those before the detectors, or those behind the sources. */
 export type PortSide = 'output' | 'input';
 
-/** The ports whose phases a chip leaves free: those of the port shifters that it does not have, else the outputs. */
+/**
+ * The ports whose phases a chip leaves free: those of the port shifters that it does not have, else the
+ * outputs.
+ */
 export function freePorts(chip: Chip): PortSide {
   return !chip.portShifters && externalAtOutput(chip.style) ? 'input' : 'output';
 }
 
 /**
- * Fidelity maximised over the phases of the free ports: (sum_i abs((V U^dag)_ii))^2 / (N Tr(V^dag V)) over the outputs, with U^dag V
- * over the inputs. 0 for a V of zeros.
+ * Fidelity maximised over the phases of the free ports: (sum_i abs((V U^dag)_ii))^2 / (N Tr(V^dag V)) over
+ * the outputs, with U^dag V over the inputs. 0 for a V of zeros.
  */
 export function portPhaseFreeFidelity(
   target: ComplexMatrix,
@@ -28,8 +31,9 @@ export function portPhaseFreeFidelity(
 }
 
 /**
- * The phases in [0, 2 pi) that the free ports would have to add to V to come nearest to U: e^{i phase_i} V_i. = U_i. for an exact V.
- * What a chip without port shifters leaves undone. One per port; 0 where the port's light does not overlap with the target at all.
+ * The phases in [0, 2 pi) that the free ports would have to add to V to come nearest to U: e^{i phase_i} V_i.
+ * = U_i. for an exact V. What a chip without port shifters leaves undone. One per port; 0 where the port's
+ * light does not overlap with the target at all.
  */
 export function missingPortPhases(
   target: ComplexMatrix,

@@ -1,8 +1,9 @@
 import type { ComplexMatrix } from '../matrix/ComplexMatrix.js';
 
 /**
- * Mean over inputs j of half sum_i abs(abs(U_ij)^2 - p_ij), p the output powers of V normalised per input: the total variation
- * distance between the outputs of one photon. An input from which nothing arrives counts as distance 1. In [0, 1] for a unitary U.
+ * Mean over inputs j of half sum_i abs(abs(U_ij)^2 - p_ij), p the output powers of V normalised per input:
+ * the total variation distance between the outputs of one photon. An input from which nothing arrives counts
+ * as distance 1. In [0, 1] for a unitary U.
  * @param target U
  * @param achieved V, of the same shape
  */

@@ -9,8 +9,8 @@ export const MIRRORS = ['none', 'ports', 'columns', 'both'] as const;
 export type Mirror = (typeof MIRRORS)[number];
 
 /**
- * The places of all cells of a mesh. Cells are held in the order of their numbers: column by column, top to bottom
- * in a column, an order in which light can meet them. Cell number k (from 1) has index k - 1.
+ * The places of all cells of a mesh. Cells are held in the order of their numbers: column by column, top to
+ * bottom in a column, an order in which light can meet them. Cell number k (from 1) has index k - 1.
  */
 export interface Mesh {
   readonly modes: number;
@@ -36,10 +36,9 @@ export function columnCount(layout: Layout, modes: number): number {
 }
 
 /**
- * The mesh of a layout for `modes` ports.
- * Rectangular: Clements et al., Optica 3, 1460 (2016), column c (from 1) starts at port 1 for odd c, at port 2 for
- * even c. Triangular: Reck et al., Phys. Rev. Lett. 73, 58 (1994), the cells on ports (m, m+1) stand in columns m,
- * m+2, ..., 2N-2-m.
+ * The mesh of a layout for `modes` ports. Rectangular: Clements et al., Optica 3, 1460 (2016), column c (from
+ * 1) starts at port 1 for odd c, at port 2 for even c. Triangular: Reck et al., Phys. Rev. Lett. 73, 58
+ * (1994), the cells on ports (m, m+1) stand in columns m, m+2, ..., 2N-2-m.
  * @param modes number of ports, a whole number of at least 1
  * @throws RangeError for any other number
  */
@@ -59,7 +58,8 @@ export function createMesh(layout: Layout, modes: number, mirror: Mirror = 'none
     firstCellOfColumn[column] = cell;
     const [first, last] = portsOfColumn(layout, modes, columnsMirrored ? columns - 1 - column : column);
     for (let port = first; port <= last; port += 2) {
-      // Exchanging top and bottom sends ports (m, m+1) to (N-2-m, N-1-m), counted from 0, and the last cell to the top.
+      // Exchanging top and bottom sends ports (m, m+1) to (N-2-m, N-1-m), counted from 0, and the last cell
+      // to the top.
       upperPortIndex[cell] = portsMirrored ? modes - 2 - (last - (port - first)) : port;
       columnIndex[cell] = column;
       cell++;
@@ -69,7 +69,10 @@ export function createMesh(layout: Layout, modes: number, mirror: Mirror = 'none
   return { modes, layout, mirror, columns, cells, upperPortIndex, columnIndex, firstCellOfColumn };
 }
 
-/** Index (from 0) of the cell in a column whose upper port is `port` (index from 0); the place must hold a cell. */
+/**
+ * Index (from 0) of the cell in a column whose upper port is `port` (index from 0); the place must hold a
+ * cell.
+ */
 export function cellIndexAt(mesh: Mesh, column: number, port: number): number {
   const first = mesh.firstCellOfColumn[column]!;
   return first + (port - mesh.upperPortIndex[first]!) / 2;

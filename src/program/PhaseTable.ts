@@ -20,7 +20,9 @@ export interface PhaseRow {
 /** The header line of `phases.csv`, by which a table is known. */
 export const PHASE_TABLE_HEADER = 'shifter,cell,role,column,port,phase_rad,name';
 
-/** The rows of the phase table of a chip with these settings, one per shifter in the order of their numbers. */
+/**
+ * The rows of the phase table of a chip with these settings, one per shifter in the order of their numbers.
+ */
 export function phaseRows(chip: Chip, settings: Settings): PhaseRow[] {
   return listShifters(chip).map((shifter) => ({
     shifter: shifter.index + 1,
@@ -33,7 +35,9 @@ export function phaseRows(chip: Chip, settings: Settings): PhaseRow[] {
   }));
 }
 
-/** A phase table as CSV: header line first, no comments, full double precision, lines ended by a line feed. */
+/**
+ * A phase table as CSV: header line first, no comments, full double precision, lines ended by a line feed.
+ */
 export function formatPhaseCsv(rows: readonly PhaseRow[]): string {
   const lines = rows.map(({ shifter, cell, role, column, port, phaseRad, name }) =>
     [shifter, cell ?? '', role, column ?? '', port, phaseRad, csvField(name)].join(','),

@@ -35,13 +35,15 @@ export interface Program {
   readonly outOfRange: readonly OutOfRange[];
 }
 
-/** Rounding allowed in phases and amplitudes, in units of N eps; 3 N eps was the most seen over all styles. */
+/**
+ * Rounding allowed in phases and amplitudes, in units of N eps; 3 N eps was the most seen over all styles.
+ */
 const ROUNDING = 16;
 
 /**
- * Finds the phases of a chip from the factors of a target: one sweep through the mesh, with the light for cells that
- * have the external phase at the input, against it for the others, carrying a diagonal of phases from cell to cell
- * (conventions, section 5). What is left at the end are the phases of the port shifters.
+ * Finds the phases of a chip from the factors of a target: one sweep through the mesh, with the light for
+ * cells that have the external phase at the input, against it for the others, carrying a diagonal of phases
+ * from cell to cell (conventions, section 5). What is left at the end are the phases of the port shifters.
  * Losses are ignored. Cost O(N^2).
  * @param couplingRatios the ratios to reckon with, two per cell; by default the chip's own
  * @throws RangeError when the decomposition stands on another mesh than the chip's
@@ -98,10 +100,15 @@ export function carryingSweep(
   return { settings, outOfReach, outOfRange };
 }
 
-/** The phase factors on the guides as the sweep goes on: at 2p and 2p + 1 real and imaginary part for port p. */
+/**
+ * The phase factors on the guides as the sweep goes on: at 2p and 2p + 1 real and imaginary part for port p.
+ */
 interface CarriedPhases {
   readonly phases: Float64Array;
-  /** Takes up the port's phase of the decomposition's diagonal once the sweep, about to treat `cell`, has come to it. */
+  /**
+   * Takes up the port's phase of the decomposition's diagonal once the sweep, about to treat `cell`, has come
+   * to it.
+   */
   meetDiagonal(port: number, cell: number): void;
 }
 

@@ -11,9 +11,9 @@ export interface LimitedSettings {
 }
 
 /**
- * The settings as the chip's shifters can take them: a phase outside its range is moved by turns that change nothing, and
- * where none helps stopped at the end that it ran over. Either is listed, since the table cannot be set as it stands. Phases in
- * range stay as they are, to the last bit.
+ * The settings as the chip's shifters can take them: a phase outside its range is moved by turns that change
+ * nothing, and where none helps stopped at the end that it ran over. Either is listed, since the table cannot
+ * be set as it stands. Phases in range stay as they are, to the last bit.
  */
 export function limitSettings(chip: Chip, settings: Settings): LimitedSettings {
   const limited: Settings = {

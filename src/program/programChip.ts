@@ -7,13 +7,16 @@ import { carryingSweep } from './carryingSweep.js';
 /** A target's program for the chip as it is, and the one that takes the chip for ideal. */
 export interface ChipPrograms {
   readonly program: Program;
-  /** The phases of a chip with all splitters at 1/2; null when this chip's are, and both would be the same. */
+  /**
+   * The phases of a chip with all splitters at 1/2; null when this chip's are, and both would be the same.
+   */
   readonly uncorrected: Program | null;
 }
 
 /**
- * The phase of every shifter of a chip for a target: nulling on the chip's layout, then the carrying sweep with the
- * chip's cell style and its own splitter ratios. Exact when every cell is in reach and no shifter out of range.
+ * The phase of every shifter of a chip for a target: nulling on the chip's layout, then the carrying sweep
+ * with the chip's cell style and its own splitter ratios. Exact when every cell is in reach and no shifter
+ * out of range.
  * @param target N x N unitary (within the precision wanted of the result), N the number of the chip's ports
  * @throws RangeError when target and chip differ in size
  */

@@ -104,7 +104,10 @@ function hasAllColumns(words: readonly string[]): boolean {
   );
 }
 
-/** A number; where fields are parted by semicolons, a comma is a decimal point, as spreadsheets in much of Europe write it. */
+/**
+ * A number; where fields are parted by semicolons, a comma is a decimal point, as spreadsheets in much of
+ * Europe write it.
+ */
 function numberIn(field: string, delimiter: string): number {
   return Number(
     delimiter === ';' && /^[-+]?\d*,\d+(e[-+]?\d+)?$/i.test(field) ? field.replace(',', '.') : field,

@@ -6,7 +6,8 @@ import type { PhaseRow } from './PhaseTable.js';
 
 /**
  * The settings that a phase table gives to a chip. Rows may come in any order.
- * @throws InputError `table/rows` for a shifter that is missing or listed twice, or a row that is not of this chip's mesh and cell style
+ * @throws InputError `table/rows` for a shifter that is missing or listed twice, or a row that is not of this
+ * chip's mesh and cell style
  */
 export function settingsFromRows(chip: Chip, rows: readonly PhaseRow[]): Settings {
   const shifters = listShifters(chip);

@@ -6,9 +6,10 @@ import type { ComplexMatrix } from '../matrix/ComplexMatrix.js';
 import { zeroMatrix } from '../matrix/ComplexMatrix.js';
 
 /**
- * The transfer matrix V of a chip with the given phases, losses included: V[i][j] is the amplitude from input port j to
- * output port i. Facets, splitters, shifters and columns attenuate as conventions section 3 says; a loss never changes a phase.
- * Without loss V is unitary. Cost (28/3) N^3 flops: behind c columns light has spread over 2c + 1 ports only.
+ * The transfer matrix V of a chip with the given phases, losses included: V[i][j] is the amplitude from input
+ * port j to output port i. Facets, splitters, shifters and columns attenuate as conventions section 3 says; a
+ * loss never changes a phase. Without loss V is unitary. Cost (28/3) N^3 flops: behind c columns light has
+ * spread over 2c + 1 ports only.
  * @throws RangeError when the settings are not of the chip's shape
  */
 export function simulate(chip: Chip, settings: Settings): ComplexMatrix {

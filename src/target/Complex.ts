@@ -31,7 +31,9 @@ export function multiplyComplex(a: Complex, b: Complex): Complex {
   return { re: a.re * b.re - a.im * b.im, im: a.re * b.im + a.im * b.re };
 }
 
-/** a / b with the larger part of b as the divisor (Smith, Commun. ACM 5, 435 (1962)): no overflow on the way. */
+/**
+ * a / b with the larger part of b as the divisor (Smith, Commun. ACM 5, 435 (1962)): no overflow on the way.
+ */
 export function divideComplex(a: Complex, b: Complex): Complex {
   if (b.im === 0) return { re: a.re / b.re, im: a.im / b.re };
   if (Math.abs(b.re) >= Math.abs(b.im)) {
@@ -59,7 +61,9 @@ export function exponential({ re, im }: Complex): Complex {
   return im === 0 ? real(size) : { re: size * Math.cos(im), im: size * Math.sin(im) };
 }
 
-/** The angle of z in (-pi, pi]. A zero imaginary part counts as +0: in -8 the sign is in front of both parts. */
+/**
+ * The angle of z in (-pi, pi]. A zero imaginary part counts as +0: in -8 the sign is in front of both parts.
+ */
 export function angleOf({ re, im }: Complex): number {
   return Math.atan2(im + 0, re);
 }
@@ -69,7 +73,9 @@ export function logarithm(z: Complex): Complex {
   return { re: Math.log(Math.hypot(z.re, z.im)), im: angleOf(z) };
 }
 
-/** a^b, principal value. A whole exponent up to 1024 is a chain of products, so that (1 + i)^2 is 2i exactly. */
+/**
+ * a^b, principal value. A whole exponent up to 1024 is a chain of products, so that (1 + i)^2 is 2i exactly.
+ */
 export function power(a: Complex, b: Complex): Complex {
   if (b.im === 0 && a.im === 0 && (a.re >= 0 || Number.isInteger(b.re))) return real(a.re ** b.re);
   if (b.im === 0 && Number.isInteger(b.re) && Math.abs(b.re) <= 1024) return wholePower(a, b.re);

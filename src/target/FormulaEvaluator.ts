@@ -30,8 +30,8 @@ export interface FormulaLibrary {
 }
 
 /**
- * Evaluates a parsed formula. The tree is walked here and never by the library: a node that is not on the list has no
- * way to act, and the size of every result is asked for before it is made.
+ * Evaluates a parsed formula. The tree is walked here and never by the library: a node that is not on the
+ * list has no way to act, and the size of every result is asked for before it is made.
  */
 export class FormulaEvaluator {
   constructor(
@@ -210,7 +210,10 @@ function requireOperator(node: OperatorNode): void {
   if (!OPERATORS.has(node.fn)) throw notAllowed(`the operator ${String(node.op)}`);
 }
 
-/** True for the error of an exhausted stack, which is a RangeError as the library's own errors about sizes are. */
+/**
+ * True for the error of an exhausted stack, which is a RangeError as the library's own errors about sizes
+ * are.
+ */
 export function isStackOverflow(error: unknown): boolean {
   return error instanceof RangeError && /call stack/i.test(error.message);
 }
@@ -236,7 +239,8 @@ function notAllowed(what: string): InputError {
 }
 
 /**
- * `1/2i` is i/2 to the library and -i/2 in most languages; `1/sqrt(2) [1,1;1,-1]` puts the matrix into the divisor.
+ * `1/2i` is i/2 to the library and -i/2 in most languages; `1/sqrt(2) [1,1;1,-1]` puts the matrix into the
+ * divisor.
  * @throws InputError `target/ambiguous`.
  */
 function refuseAmbiguous(node: OperatorNode): void {

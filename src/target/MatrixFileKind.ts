@@ -10,8 +10,8 @@ export function matrixFileKind(name: string): MatrixFileKind | undefined {
 }
 
 /**
- * The kind of a matrix that comes without a file name: `npy` and `mtx` by their first bytes, `json` when the first
- * character that is not blank is `[` or `{`, else `csv`.
+ * The kind of a matrix that comes without a file name: `npy` and `mtx` by their first bytes, `json` when the
+ * first character that is not blank is `[` or `{`, else `csv`.
  */
 export function kindOfText(bytes: Uint8Array): MatrixFileKind {
   let at = bytes[0] === 0xef && bytes[1] === 0xbb && bytes[2] === 0xbf ? 3 : 0;

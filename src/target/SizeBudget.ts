@@ -5,7 +5,10 @@ import { tooLarge } from './limits.js';
 const LARGEST_MATRICES = 16;
 const LEAST_ENTRIES = 1_000_000;
 
-/** Bounds what a formula may allocate: every dimension, every value, and the sum of all values made on the way. */
+/**
+ * Bounds what a formula may allocate: every dimension, every value, and the sum of all values made on the
+ * way.
+ */
 export class SizeBudget {
   private entriesLeft: number;
 
@@ -15,8 +18,8 @@ export class SizeBudget {
 
   /**
    * Asks for an array of this size before it is made.
-   * @throws InputError `target/too-large` when one dimension, or the whole, exceeds the limit; `target/too-much-work`
-   * when all that was made on the way does.
+   * @throws InputError `target/too-large` when one dimension, or the whole, exceeds the limit;
+   * `target/too-much-work` when all that was made on the way does.
    */
   spend(sizes: readonly number[]): void {
     this.requireSize(sizes);

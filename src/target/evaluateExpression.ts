@@ -11,8 +11,8 @@ export interface ExpressionOptions {
   /** Largest number of ports, and of rows or columns of any value on the way; default 1024. */
   readonly maxModes?: number;
   /**
-   * Runs the function and throws when it takes too long; without it nothing limits the time. Calls of ours with numbers alone are
-   * bounded by their sizes and do without.
+   * Runs the function and throws when it takes too long; without it nothing limits the time. Calls of ours
+   * with numbers alone are bounded by their sizes and do without.
    */
   readonly timeLimit?: <T>(run: () => T) => T;
 }
@@ -22,7 +22,8 @@ const MAX_DEPTH = 64;
 
 /**
  * The square matrix that a formula stands for: numbers, `i` (or `j`), `pi`, `tau`, `e`, matrices in brackets
- * (`[1, i; i, 1]/sqrt(2)`), `+ - * / ^ '` and `.* ./ .^`, the usual functions of numbers and matrices, and ours:
+ * (`[1, i; i, 1]/sqrt(2)`), `+ - * / ^ '` and `.* ./ .^`, the usual functions of numbers and matrices, and
+ * ours:
  *
  * - `dft(n)`: U_jk = e^{+2 pi i j k / n} / sqrt(n), j and k from 0;
  * - `haar(n, seed)`: a random unitary matrix, the same for the same seed;
@@ -31,12 +32,12 @@ const MAX_DEPTH = 64;
  * - `splitter(k)`: coupling ratio k, symmetric form;
  * - `direct(A, B, ...)`: block diagonal.
  *
- * Calls of ours with numbers as arguments, also within one another, are answered at once; anything else loads mathjs as
- * the parser and the functions. The text is not trusted: only what is on our lists can be named, every size is bounded
- * before memory is taken, and all other work is done within `timeLimit`.
- * @throws InputError `target/syntax`, `target/unknown-name`, `target/forbidden`, `target/ambiguous`, `target/argument`,
- * `target/haar-seed`, `target/too-large`, `target/too-deep`, `target/too-much-work` (also when `timeLimit` throws),
- * `target/not-square`, `target/ragged`, `target/not-finite`, `target/empty`.
+ * Calls of ours with numbers as arguments, also within one another, are answered at once; anything else loads
+ * mathjs as the parser and the functions. The text is not trusted: only what is on our lists can be named,
+ * every size is bounded before memory is taken, and all other work is done within `timeLimit`.
+ * @throws InputError `target/syntax`, `target/unknown-name`, `target/forbidden`, `target/ambiguous`,
+ * `target/argument`, `target/haar-seed`, `target/too-large`, `target/too-deep`, `target/too-much-work` (also
+ * when `timeLimit` throws), `target/not-square`, `target/ragged`, `target/not-finite`, `target/empty`.
  */
 export async function evaluateExpression(
   text: string,
@@ -46,7 +47,8 @@ export async function evaluateExpression(
   requireModest(text);
   const written = text.replaceAll('\u2212', '-');
   const call = parseLiteralCall(written);
-  // Bounded by the sizes alone: the largest takes seconds, and no loop is in it that another argument would make longer.
+  // Bounded by the sizes alone: the largest takes seconds, and no loop is in it that another argument would
+  // make longer.
   if (call !== undefined) return unlessTooDeep(() => makeLiteralCall(call, budget));
   const library = await loadFormulaLibrary();
   return limited(options, () => new FormulaEvaluator(library, budget).evaluate(written));

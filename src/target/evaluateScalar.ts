@@ -47,11 +47,13 @@ const FUNCTIONS: ReadonlyMap<string, (z: Complex) => Complex> = new Map([
 ]);
 
 /**
- * The value of a complex scalar as a person writes it: numbers, `i` or `j`, `pi`, `e`, `+ - * / ^`, parentheses, and
- * sqrt, exp, cis (e^{iz}), log, sin, cos, tan, asin, acos, atan (of real numbers), abs, arg, conj, re, im of one
- * argument. A factor may stand directly before a name or a parenthesis (`2i`, `3 sqrt(2)`); `1/2i` and `2i^2`, which
- * programs read in two ways, are refused. Works on the text alone: no names of the host language can be reached.
- * @throws InputError `target/entry`, `target/unknown-name` or `target/ambiguous`. The value may be infinite or NaN.
+ * The value of a complex scalar as a person writes it: numbers, `i` or `j`, `pi`, `e`, `+ - * / ^`,
+ * parentheses, and sqrt, exp, cis (e^{iz}), log, sin, cos, tan, asin, acos, atan (of real numbers), abs, arg,
+ * conj, re, im of one argument. A factor may stand directly before a name or a parenthesis (`2i`, `3
+ * sqrt(2)`); `1/2i` and `2i^2`, which programs read in two ways, are refused. Works on the text alone: no
+ * names of the host language can be reached.
+ * @throws InputError `target/entry`, `target/unknown-name` or `target/ambiguous`. The value may be infinite
+ * or NaN.
  */
 export function evaluateScalar(text: string): Complex {
   return new ScalarReader(text).read();

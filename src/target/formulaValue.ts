@@ -5,7 +5,10 @@ import type { Complex } from './Complex.js';
 import { requireSquare } from './limits.js';
 import type { OwnArgument } from './ownFunctions.js';
 
-/** What a formula's parts evaluate to: numbers and nested arrays of them, as the library of functions takes them. */
+/**
+ * What a formula's parts evaluate to: numbers and nested arrays of them, as the library of functions takes
+ * them.
+ */
 export type FormulaValue = number | Complex | readonly FormulaValue[];
 
 /** Size of a value by its first entries: [] for a number, [2, 3] for two rows of three. */
@@ -21,7 +24,8 @@ export function sizesOf(value: FormulaValue): number[] {
 
 /**
  * A value as it came from the library, checked: numbers only, all finite, and arrays rectangular.
- * @throws InputError `target/not-finite`, `target/ragged` or `target/argument`; `label` says whose value it is.
+ * @throws InputError `target/not-finite`, `target/ragged` or `target/argument`; `label` says whose value it
+ * is.
  */
 export function checkedValue(value: unknown, label: string): FormulaValue {
   const bare = isArray(value) || !hasToArray(value) ? value : value.toArray();
@@ -98,7 +102,9 @@ function planarMatrix(value: FormulaValue): ComplexMatrix {
   return matrix;
 }
 
-/** A matrix as nested arrays; `complex` makes the library's complex numbers, left out where the entry is real. */
+/**
+ * A matrix as nested arrays; `complex` makes the library's complex numbers, left out where the entry is real.
+ */
 export function nestedRows(
   { rows, columns, re, im }: ComplexMatrix,
   complex: (re: number, im: number) => Complex,

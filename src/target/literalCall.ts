@@ -13,8 +13,9 @@ export interface LiteralCall {
 }
 
 /**
- * The text as a call of ours with literal arguments (`direct(dft(2), haar(3, 7))`), or undefined when it is anything
- * else, which is no error: a formula in general then. Nothing is computed but the numbers. Cost: length times depth.
+ * The text as a call of ours with literal arguments (`direct(dft(2), haar(3, 7))`), or undefined when it is
+ * anything else, which is no error: a formula in general then. Nothing is computed but the numbers. Cost:
+ * length times depth.
  */
 export function parseLiteralCall(text: string): LiteralCall | undefined {
   const found = /^\s*([A-Za-z_]\w*)\s*\(([^]*)\)\s*$/.exec(text);

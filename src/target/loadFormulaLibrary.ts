@@ -23,7 +23,9 @@ const SWITCHED_OFF = [
 
 let loaded: Promise<FormulaLibrary> | undefined;
 
-/** The library of formulas, loaded at the first call (about a second) and kept: a private instance of mathjs. */
+/**
+ * The library of formulas, loaded at the first call (about a second) and kept: a private instance of mathjs.
+ */
 export function loadFormulaLibrary(): Promise<FormulaLibrary> {
   loaded ??= load();
   return loaded;

@@ -15,9 +15,11 @@ const MAX_HEADER = 65_536;
 const MAGIC = [0x93, 0x4e, 0x55, 0x4d, 0x50, 0x59];
 
 /**
- * Header of NumPy's array format, versions 1.0, 2.0 and 3.0 (NumPy Enhancement Proposal 1 and numpy.lib.format). The
- * dictionary is read by a strict parser of its own for the three keys that may stand there.
- * @throws InputError `target/npy`, `target/truncated`, `target/empty`, or `target/npy-object` for arrays of Python objects.
+ * Header of NumPy's array format, versions 1.0, 2.0 and 3.0 (NumPy Enhancement Proposal 1 and
+ * numpy.lib.format). The dictionary is read by a strict parser of its own for the three keys that may stand
+ * there.
+ * @throws InputError `target/npy`, `target/truncated`, `target/empty`, or `target/npy-object` for arrays of
+ * Python objects.
  */
 export function parseNpyHeader(bytes: Uint8Array): NpyHeader {
   if (bytes.length === 0) throw npyFault('it is empty', 'target/empty');
@@ -39,7 +41,9 @@ export function parseNpyHeader(bytes: Uint8Array): NpyHeader {
   return { ...new DictionaryReader(text).read(), dataStart };
 }
 
-/** Reads `{'descr': '<c16', 'fortran_order': False, 'shape': (4, 4), }`, keys in any order, each exactly once. */
+/**
+ * Reads `{'descr': '<c16', 'fortran_order': False, 'shape': (4, 4), }`, keys in any order, each exactly once.
+ */
 class DictionaryReader {
   private at = 0;
 

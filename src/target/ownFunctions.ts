@@ -15,7 +15,10 @@ interface OwnFunction {
   readonly make: (argumentsGiven: readonly OwnArgument[], budget: SizeBudget) => ComplexMatrix;
 }
 
-/** The makers of targets that a formula may call, by name. They throw InputError `target/argument` and as noted. */
+/**
+ * The makers of targets that a formula may call, by name. They throw InputError `target/argument` and as
+ * noted.
+ */
 export const OWN_FUNCTIONS: ReadonlyMap<string, OwnFunction> = new Map([
   ['dft', { usage: 'dft(4)', make: dft }],
   ['haar', { usage: 'haar(4, 1)', make: haar }],
@@ -26,7 +29,9 @@ export const OWN_FUNCTIONS: ReadonlyMap<string, OwnFunction> = new Map([
   ['direct', { usage: 'direct(dft(2), haar(3, 7))', make: direct }],
 ]);
 
-/** Discrete Fourier transform with positive exponent, U_jk = e^{+2 pi i j k / n} / sqrt(n), j and k from 0. */
+/**
+ * Discrete Fourier transform with positive exponent, U_jk = e^{+2 pi i j k / n} / sqrt(n), j and k from 0.
+ */
 function dft(given: readonly OwnArgument[], budget: SizeBudget): ComplexMatrix {
   const modes = modesOf('dft', given, 1, budget);
   const matrix = zeroMatrix(modes, modes);
@@ -57,7 +62,10 @@ const QUARTER_TURNS: readonly Complex[] = [
   { re: 0, im: -1 },
 ];
 
-/** @throws InputError `target/haar-seed` without a seed: a random target that cannot be had again is of no use. */
+/**
+ * @throws InputError `target/haar-seed` without a seed: a random target that cannot be had again is of no
+ * use.
+ */
 function haar(given: readonly OwnArgument[], budget: SizeBudget): ComplexMatrix {
   if (given.length === 1) {
     throw new InputError(
@@ -73,7 +81,10 @@ function haar(given: readonly OwnArgument[], budget: SizeBudget): ComplexMatrix 
   return haarUnitary(modes, seed);
 }
 
-/** Sylvester's construction, divided by sqrt(n): the sign is that of the number of ones that row and column share. */
+/**
+ * Sylvester's construction, divided by sqrt(n): the sign is that of the number of ones that row and column
+ * share.
+ */
 function hadamard(given: readonly OwnArgument[], budget: SizeBudget): ComplexMatrix {
   const modes = modesOf('hadamard', given, 1, budget);
   if (!Number.isInteger(Math.log2(modes))) throw misuse('hadamard', `${modes} is not a power of two`);

@@ -13,10 +13,12 @@ const PAIR = new RegExp(
 const NOT_FINITE = /(?:^|[^A-Za-z])(?:nan|inf|infinity)(?:(?:[ij]|im)?$|[^A-Za-z])/i;
 
 /**
- * A complex number as NumPy, MATLAB, Julia or a person writes it: `0.5-0.5i`, `(0.5-0.5j)`, `0.5 - 0.5im`, `1e-3`, `1/sqrt(2)`,
- * `exp(i*pi/4)`. Usual literals are read to the last bit, signed zeros included; the rest goes to `evaluateScalar`.
+ * A complex number as NumPy, MATLAB, Julia or a person writes it: `0.5-0.5i`, `(0.5-0.5j)`, `0.5 - 0.5im`,
+ * `1e-3`, `1/sqrt(2)`, `exp(i*pi/4)`. Usual literals are read to the last bit, signed zeros included; the
+ * rest goes to `evaluateScalar`.
  * @param row row of the matrix from 1, for the error; `column` likewise.
- * @throws InputError `target/entry`, `target/unknown-name`, `target/ambiguous` or `target/not-finite`, with the place.
+ * @throws InputError `target/entry`, `target/unknown-name`, `target/ambiguous` or `target/not-finite`, with
+ * the place.
  */
 export function parseEntry(text: string, row: number, column: number): Complex {
   const value = literal(text) ?? evaluated(text, row, column);

@@ -15,7 +15,9 @@ export interface PrepareOptions {
   readonly transpose?: boolean;
   /** The target is written for fields that go as e^{+i omega t}: take its complex conjugate. */
   readonly conjugate?: boolean;
-  /** First and last port of the chip, from 1, that the target acts on; the identity elsewhere. Needs `modes`. */
+  /**
+   * First and last port of the chip, from 1, that the target acts on; the identity elsewhere. Needs `modes`.
+   */
   readonly ports?: readonly [first: number, last: number];
   /** Number of ports of the chip, where the caller knows it. */
   readonly modes?: number;
@@ -36,13 +38,14 @@ export interface PreparedTarget {
 }
 
 /**
- * A matrix made ready as a target: transposed and conjugated as asked, its unitarity checked, the nearest unitary taken
- * when asked, placed on its ports. With `nearest` the nearest unitary U is taken also of a target within the tolerance,
- * so that the result is unitary to rounding either way: M = U H (polar decomposition) minimises the norm of M - U in
- * every unitarily invariant norm (Fan and Hoffman, Proc. AMS 6, 111 (1955), DOI 10.1090/S0002-9939-1955-0067841-7). For
- * a singular M the nearest one is not unique, and none is taken. Cost n^3; with `nearest` that of a decomposition.
- * @throws InputError `target/not-unitary` with the defect, `target/singular` with the smallest singular value,
- * `target/ports`, `target/size`, `target/not-square`, `target/not-finite`, `target/unitary-within`.
+ * A matrix made ready as a target: transposed and conjugated as asked, its unitarity checked, the nearest
+ * unitary taken when asked, placed on its ports. With `nearest` the nearest unitary U is taken also of a
+ * target within the tolerance, so that the result is unitary to rounding either way: M = U H (polar
+ * decomposition) minimises the norm of M - U in every unitarily invariant norm (Fan and Hoffman, Proc. AMS 6,
+ * 111 (1955), DOI 10.1090/S0002-9939-1955-0067841-7). For a singular M the nearest one is not unique, and
+ * none is taken. Cost n^3; with `nearest` that of a decomposition.
+ * @throws InputError `target/not-unitary` with the defect, `target/singular` with the smallest singular
+ * value, `target/ports`, `target/size`, `target/not-square`, `target/not-finite`, `target/unitary-within`.
  */
 export function prepareTarget(matrix: ComplexMatrix, options: PrepareOptions = {}): PreparedTarget {
   requireSquare(matrix.rows, matrix.columns, Infinity);
@@ -100,7 +103,10 @@ function requireFinite({ columns, re, im }: ComplexMatrix): void {
   }
 }
 
-/** Entries near the square root of the largest double: their squares overflow, and no distance can be reported. */
+/**
+ * Entries near the square root of the largest double: their squares overflow, and no distance can be
+ * reported.
+ */
 function tooFar(): InputError {
   return new InputError(
     'target/not-unitary',

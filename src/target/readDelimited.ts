@@ -8,11 +8,12 @@ import { parseEntry } from './parseEntry.js';
 type Delimiter = ',' | ';' | '\t' | ' ';
 
 /**
- * A matrix from separated text: one row a line, entries as `parseEntry` reads them. The separator (semicolon, comma,
- * tab or blanks) is found from the first row. `#` and `%` start a comment that ends with its line; empty lines count
- * for nothing, so rows in errors are rows of the matrix.
- * @throws InputError `target/empty`, `target/ragged`, `target/not-square`, `target/too-large`, `target/header-row`,
- * `target/wrong-file`, `target/separator`, `target/quotes`, `target/blanks-in-entry`, and those of `parseEntry`.
+ * A matrix from separated text: one row a line, entries as `parseEntry` reads them. The separator (semicolon,
+ * comma, tab or blanks) is found from the first row. `#` and `%` start a comment that ends with its line;
+ * empty lines count for nothing, so rows in errors are rows of the matrix.
+ * @throws InputError `target/empty`, `target/ragged`, `target/not-square`, `target/too-large`,
+ * `target/header-row`, `target/wrong-file`, `target/separator`, `target/quotes`, `target/blanks-in-entry`,
+ * and those of `parseEntry`.
  */
 export function readDelimited(text: string, maxModes: number): ComplexMatrix {
   const bare = withoutComments(text);
@@ -55,7 +56,9 @@ function countFilledLines(text: string, limit: number): number {
   return count;
 }
 
-/** Semicolons win, since no entry holds one; a comma beside a blank wins over tabs, which are then padding. */
+/**
+ * Semicolons win, since no entry holds one; a comma beside a blank wins over tabs, which are then padding.
+ */
 function findDelimiter(firstLine: string): Delimiter {
   const line = firstLine.trim();
   if (line.includes(';')) return ';';
@@ -86,7 +89,9 @@ function splitRows(text: string, delimiter: Delimiter): string[][] {
   }
 }
 
-/** Runs of blanks become one, and blanks within parentheses none: `( 0.5 - 0.5j )` is known to be one entry. */
+/**
+ * Runs of blanks become one, and blanks within parentheses none: `( 0.5 - 0.5j )` is known to be one entry.
+ */
 function withSingleBlanks(text: string): string {
   return text
     .replace(/\([^()\r\n]*\)/g, (inside) => inside.replace(/[^\S\r\n]+/g, ''))

@@ -8,8 +8,11 @@ import { parseEntry } from './parseEntry.js';
 
 /**
  * A matrix from JSON: `{"matrix": [[...]]}` or a bare array of rows; an entry is a number, `[re, im]`,
- * `{"re": .., "im": ..}` or a scalar in quotes as `parseEntry` reads it. Other keys beside `matrix` are ignored.
- * @throws InputError as `parseJsonText`, `target/json` (no matrix in it), `target/wrong-file` (a chip or a table), `target/empty`, `target/ragged`, `target/not-square`, `target/too-large`, and those of `parseEntry`.
+ * `{"re": .., "im": ..}` or a scalar in quotes as `parseEntry` reads it. Other keys beside `matrix` are
+ * ignored.
+ * @throws InputError as `parseJsonText`, `target/json` (no matrix in it), `target/wrong-file` (a chip or a
+ * table), `target/empty`, `target/ragged`, `target/not-square`, `target/too-large`, and those of
+ * `parseEntry`.
  */
 export function readJson(text: string, maxModes: number): ComplexMatrix {
   if (text.trim() === '') throw emptyTarget();

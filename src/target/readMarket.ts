@@ -21,9 +21,10 @@ interface Line {
 }
 
 /**
- * A matrix from the Matrix Market exchange format (Boisvert, Pozo, Remington, NISTIR 5935 (1996)): array and coordinate;
- * real, complex, integer, pattern (ones); general, symmetric, skew-symmetric, hermitian, of which the lower triangle
- * stands in the file. An entry given twice is refused, since programs differ in whether to add or to replace.
+ * A matrix from the Matrix Market exchange format (Boisvert, Pozo, Remington, NISTIR 5935 (1996)): array and
+ * coordinate; real, complex, integer, pattern (ones); general, symmetric, skew-symmetric, hermitian, of which
+ * the lower triangle stands in the file. An entry given twice is refused, since programs differ in whether to
+ * add or to replace.
  * @throws InputError `target/mtx` with the line, `target/truncated`, `target/empty`, `target/not-square`,
  * `target/too-large`, `target/not-finite`.
  */
@@ -74,7 +75,10 @@ function readBanner(text: string): Banner {
   return { format, field: knownField, symmetry: knownSymmetry };
 }
 
-/** Column by column; of a symmetric matrix the lower triangle only, of a skew-symmetric one without the diagonal. */
+/**
+ * Column by column; of a symmetric matrix the lower triangle only, of a skew-symmetric one without the
+ * diagonal.
+ */
 function readArray(lines: LineReader, banner: Banner, matrix: ComplexMatrix): void {
   const { rows } = matrix;
   for (let column = 0; column < rows; column++) {

@@ -10,9 +10,10 @@ import { readMarket } from './readMarket.js';
 import { readNpy } from './readNpy.js';
 
 /**
- * The square matrices in a file: one, or K of them from an .npy file of shape (K, N, N). Every entry is finite. The
- * bytes are not changed, and the result shares nothing with them.
- * @throws InputError, with row and column where they are known; the caller adds the file's name with `withSource`.
+ * The square matrices in a file: one, or K of them from an .npy file of shape (K, N, N). Every entry is
+ * finite. The bytes are not changed, and the result shares nothing with them.
+ * @throws InputError, with row and column where they are known; the caller adds the file's name with
+ * `withSource`.
  */
 export function readMatrices(bytes: Uint8Array, kind: MatrixFileKind, limits?: ReadLimits): ComplexMatrix[] {
   const maxModes = maxModesOf(limits);
@@ -25,7 +26,10 @@ export function readMatrices(bytes: Uint8Array, kind: MatrixFileKind, limits?: R
   return [readDelimited(text, maxModes)];
 }
 
-/** No sensible entry takes 300 bytes: a longer text cannot hold a matrix within the limit, and is not worth parsing. */
+/**
+ * No sensible entry takes 300 bytes: a longer text cannot hold a matrix within the limit, and is not worth
+ * parsing.
+ */
 function refuseOverlong(bytes: Uint8Array, maxModes: number): void {
   if (bytes.length <= 1e6 + 300 * maxModes ** 2) return;
   throw new InputError(

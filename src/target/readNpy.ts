@@ -35,10 +35,11 @@ const ELEMENT_TYPES: ReadonlyMap<string, ElementType> = new Map([
 ]);
 
 /**
- * Matrices from NumPy's .npy format: one from shape (N, N), K of them from shape (K, N, N). Types f2, f4, f8, c8, c16,
- * b1, i1 to i8, u1 to u8, either byte order, C or Fortran order. 64-bit integers beyond 2^53 are rounded.
- * @throws InputError `target/npy`, `target/npy-object`, `target/truncated`, `target/empty`, `target/not-square`,
- * `target/too-large`, `target/not-finite`.
+ * Matrices from NumPy's .npy format: one from shape (N, N), K of them from shape (K, N, N). Types f2, f4, f8,
+ * c8, c16, b1, i1 to i8, u1 to u8, either byte order, C or Fortran order. 64-bit integers beyond 2^53 are
+ * rounded.
+ * @throws InputError `target/npy`, `target/npy-object`, `target/truncated`, `target/empty`,
+ * `target/not-square`, `target/too-large`, `target/not-finite`.
  */
 export function readNpy(bytes: Uint8Array, maxModes: number): ComplexMatrix[] {
   const header = parseNpyHeader(bytes);

@@ -2,9 +2,10 @@ import type { ComplexMatrix } from '../matrix/ComplexMatrix.js';
 import type { MatrixFileKind } from './MatrixFileKind.js';
 
 /**
- * The matrix as a file: full double precision, so that `readMatrices` gives the same bits, signed zeros included.
- * Separated text holds entries such as `0.5-0.5j`; JSON `{"matrix": [[[re, im], ...], ...]}`; .npy is `<c16`, C order,
- * format 1.0; .mtx is `matrix array complex general`. The same matrix gives the same bytes.
+ * The matrix as a file: full double precision, so that `readMatrices` gives the same bits, signed zeros
+ * included. Separated text holds entries such as `0.5-0.5j`; JSON `{"matrix": [[[re, im], ...], ...]}`; .npy
+ * is `<c16`, C order, format 1.0; .mtx is `matrix array complex general`. The same matrix gives the same
+ * bytes.
  * @throws RangeError when an entry is not finite: no reader would take the file.
  */
 export function writeMatrix(matrix: ComplexMatrix, kind: MatrixFileKind): Uint8Array {

@@ -3,8 +3,8 @@ import type { ComplexMatrix } from '../matrix/ComplexMatrix.js';
 import type { Merit } from '../merit/merit.js';
 
 /**
- * How each sampled chip is programmed. `none`: once, for the chip file as it stands. `cell`: each by the carrying sweep with its own
- * ratios, as if they had been measured.
+ * How each sampled chip is programmed. `none`: once, for the chip file as it stands. `cell`: each by the
+ * carrying sweep with its own ratios, as if they had been measured.
  */
 export const RETUNINGS = ['none', 'cell'] as const;
 /** A way to program sampled chips. */

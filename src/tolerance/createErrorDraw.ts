@@ -18,8 +18,8 @@ export interface ErrorDraw {
 }
 
 /**
- * The errors of a plan's process. Each source has a stream of random numbers of its own, so that one source can be switched
- * without another one's numbers changing.
+ * The errors of a plan's process. Each source has a stream of random numbers of its own, so that one source
+ * can be switched without another one's numbers changing.
  */
 export function createErrorDraw(
   plan: TrialPlan,

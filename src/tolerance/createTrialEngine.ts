@@ -49,8 +49,8 @@ export interface TrialEngine {
 }
 
 /**
- * Makes an engine for a plan. A trial depends on the plan and its own number alone: not on which trials are run with it, in which order
- * or on which worker.
+ * Makes an engine for a plan. A trial depends on the plan and its own number alone: not on which trials are
+ * run with it, in which order or on which worker.
  * @param instance kernels to use; tests put the plain twins here
  */
 export function createTrialEngine(plan: TrialPlan, instance: KernelInstance = loadKernels()): TrialEngine {
@@ -197,7 +197,8 @@ export function createTrialEngine(plan: TrialPlan, instance: KernelInstance = lo
     run: (first, count, rows) => {
       views.clampedCounts.fill(0);
       for (let done = 0; done < count; done += 2) {
-        // Both lanes are always at work; what the second one does behind the last trial is dropped, clamped ratios included.
+        // Both lanes are always at work; what the second one does behind the last trial is dropped, clamped
+        // ratios included.
         const clampedBefore = views.clampedCounts[2]!;
         prepare(first + done);
         if (done + 1 === count) views.clampedCounts[2] = clampedBefore;

@@ -61,7 +61,8 @@ export function without(errors: ProcessErrors, source: ErrorSource): ProcessErro
 
 /**
  * The process with one source set to a value.
- * @throws InputError `process/...` for a value out of range, a number of bits that is not whole, or a combination that cannot be
+ * @throws InputError `process/...` for a value out of range, a number of bits that is not whole, or a
+ * combination that cannot be
  */
 export function withSource(errors: ProcessErrors, source: ErrorSource, value: number): ProcessErrors {
   const [low, high] = LIMITS[source];

@@ -12,7 +12,9 @@ export interface ToleranceEstimate {
   readonly value: number;
   /** Largest value at which the lower end of the share's interval reaches it. */
   readonly low: number;
-  /** Largest value at which the upper end does; Infinity when no value up to the largest makes it fall below. */
+  /**
+   * Largest value at which the upper end does; Infinity when no value up to the largest makes it fall below.
+   */
   readonly high: number;
   /** Every value that was tried, rising, with what was found. */
   readonly tried: readonly (YieldCount & { readonly value: number })[];
@@ -30,8 +32,8 @@ export interface ToleranceSearch {
   /** Relative width at which the bracketing ends. */
   readonly precision?: number;
   /**
-   * Counts the good chips at a value. The same random numbers at each value (common random numbers) make the count fall
-   * steadily, so that a bracket means something.
+   * Counts the good chips at a value. The same random numbers at each value (common random numbers) make the
+   * count fall steadily, so that a bracket means something.
    */
   readonly count: (value: number) => Promise<YieldCount>;
 }
@@ -41,8 +43,9 @@ const USUAL_PRECISION = 1e-3;
 const LEAST = 1e-9;
 
 /**
- * Finds the largest value of an error source for which a yield still holds, and the values between which the sampling leaves it: three
- * bracketings on the same counts, one each for the share and the two ends of its Clopper-Pearson interval.
+ * Finds the largest value of an error source for which a yield still holds, and the values between which the
+ * sampling leaves it: three bracketings on the same counts, one each for the share and the two ends of its
+ * Clopper-Pearson interval.
  */
 export async function findTolerance(search: ToleranceSearch): Promise<ToleranceEstimate> {
   const { yieldWanted, confidence, precision = USUAL_PRECISION } = search;

@@ -3,8 +3,9 @@ import type { Settings } from '../chip/Settings.js';
 import { listShifters } from '../chip/shifters.js';
 
 /**
- * Rounds phases to the 2^bits values that each shifter can be set to: from end to end of its range, both included, or over a whole
- * turn for one without a range, where both ends are the same. Made once for a chip: it looks up all ranges.
+ * Rounds phases to the 2^bits values that each shifter can be set to: from end to end of its range, both
+ * included, or over a whole turn for one without a range, where both ends are the same. Made once for a chip:
+ * it looks up all ranges.
  */
 export function createQuantiser(chip: Chip, bits: number): (settings: Settings) => Settings {
   const low = { external: [] as number[], internal: [] as number[], port: [] as number[] };

@@ -18,7 +18,8 @@ export interface RunTrialsOptions {
 }
 
 /**
- * Runs the first `trials` trials of a plan in this thread. The rows are the same bits as with any number of workers.
+ * Runs the first `trials` trials of a plan in this thread. The rows are the same bits as with any number of
+ * workers.
  * @throws the signal's reason when it is aborted
  */
 export async function runTrials(

@@ -1,13 +1,19 @@
 import type { Merit } from '../merit/merit.js';
 import { isUpperLimit } from '../merit/merit.js';
 
-/** A figure of merit and the limit that a good chip keeps: an upper limit for errors, a lower one for all others. */
+/**
+ * A figure of merit and the limit that a good chip keeps: an upper limit for errors, a lower one for all
+ * others.
+ */
 export interface Threshold {
   readonly key: keyof Merit;
   readonly limit: number;
 }
 
-/** The figures that must be judged for thresholds: fidelity, which is always reported, and those of the thresholds, each once. */
+/**
+ * The figures that must be judged for thresholds: fidelity, which is always reported, and those of the
+ * thresholds, each once.
+ */
 export function judgedFigures(thresholds: readonly Threshold[]): (keyof Merit)[] {
   return [...new Set<keyof Merit>(['fidelity', ...thresholds.map(({ key }) => key)])];
 }

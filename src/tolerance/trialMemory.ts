@@ -81,8 +81,8 @@ export function reserveTrialMemory(instance: KernelInstance, chip: Chip, correla
 }
 
 /**
- * For each panel of inputs and each column the first cell that their light can have reached and the one behind the last:
- * starting from a few ports, light spreads by one port a column.
+ * For each panel of inputs and each column the first cell that their light can have reached and the one
+ * behind the last: starting from a few ports, light spreads by one port a column.
  */
 function reachedCells({ mesh }: Chip): Int32Array {
   const { modes, columns, upperPortIndex, firstCellOfColumn } = mesh;

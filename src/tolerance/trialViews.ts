@@ -74,7 +74,10 @@ export function takeViews(instance: KernelInstance, memory: TrialMemory, chip: C
   };
 }
 
-/** Amplitude factors of the ports on one side: facets, the columns' loss (counted at the outputs), and the port shifters' where they are. */
+/**
+ * Amplitude factors of the ports on one side: facets, the columns' loss (counted at the outputs), and the
+ * port shifters' where they are.
+ */
 export function portAmplitudes(chip: Chip, atInput: boolean, withShifters = chip.portShifters): Float64Array {
   const { loss, mesh } = chip;
   const others = (atInput ? 1 : loss.column ** mesh.columns) * (withShifters ? loss.shifter : 1);
@@ -148,7 +151,8 @@ export function writeFactors(
     views.diagonal[4 * port + lane] = Math.cos(phase);
     views.diagonal[4 * port + 2 + lane] = Math.sin(phase);
   });
-  // Where the sweep meets the diagonal on each port: at the first cell behind it, or, against the light, at the last one before it.
+  // Where the sweep meets the diagonal on each port: at the first cell behind it, or, against the light, at
+  // the last one before it.
   for (let port = 0; port < mesh.modes; port++) {
     const before = diagonalBefore[port]!;
     views.diagonalAt[port] = againstLight ? -1 : before === mesh.cells ? -1 : before;

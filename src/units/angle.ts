@@ -4,8 +4,8 @@ const TURN = 2 * Math.PI;
 export type AngleUnit = 'rad' | 'pi' | 'deg';
 
 /**
- * The angle's representative in [0, 2 pi). An angle within `tolerance` of a whole number of turns becomes exactly 0:
- * rounding noise just below zero is not a shifter driven to its far end.
+ * The angle's representative in [0, 2 pi). An angle within `tolerance` of a whole number of turns becomes
+ * exactly 0: rounding noise just below zero is not a shifter driven to its far end.
  */
 export function wrapTurn(angle: number, tolerance = 0): number {
   const wrapped = angle - TURN * Math.floor(angle / TURN);

@@ -35,7 +35,9 @@ export interface Yardstick {
   close(): void;
 }
 
-/** Starts a script of this folder, with Debian's Python before any other; null when none has NumPy and SciPy. */
+/**
+ * Starts a script of this folder, with Debian's Python before any other; null when none has NumPy and SciPy.
+ */
 export async function startYardstick(script: string): Promise<Yardstick | null> {
   return (await startWith('/usr/bin/python3', script)) ?? (await startWith('python3', script));
 }

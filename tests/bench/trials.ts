@@ -144,7 +144,8 @@ async function runWorkers(plan: TrialPlan, trials: number, workers: number): Pro
 }
 
 /**
- * On a busy machine two workers get no more time than one; what a trial costs then tells how well they would do.
+ * On a busy machine two workers get no more time than one; what a trial costs then tells how well they would
+ * do.
  */
 async function printWorkers(): Promise<void> {
   print('\nWorkers, taken in turns: trials a second by the time of day, and us of processor time a trial');

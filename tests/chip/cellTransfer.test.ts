@@ -62,7 +62,8 @@ describe('conversions between conventions', () => {
     same(cell(style({ internal: 'differential' }), theta, phi), turnPhase(reference(theta, phi), -theta / 2));
     // Phase on the lower input: e^{i phi} M(theta, -phi).
     same(cell(style({ external: 'lower-input' }), theta, phi), turnPhase(reference(theta, -phi), phi));
-    // Phase on the upper output, Reck's form: diag(e^{i phi}, 1) M(theta, 0) = i e^{i theta/2} [[e^{i phi} s, e^{i phi} c], [c, -s]].
+    // Phase on the upper output, Reck's form: diag(e^{i phi}, 1) M(theta, 0) = i e^{i theta/2} [[e^{i phi} s,
+    // e^{i phi} c], [c, -s]].
     const s = Math.sin(theta / 2);
     const c = Math.cos(theta / 2);
     const reck = turnPhase(

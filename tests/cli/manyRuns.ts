@@ -1,6 +1,6 @@
 /**
- * Runs the built program many times in one process, which spares its start: reads a list of {folder, args} as JSON from standard
- * input, and prints a list of {code, stdout, stderr}. Run by `runMany`.
+ * Runs the built program many times in one process, which spares its start: reads a list of {folder, args} as
+ * JSON from standard input, and prints a list of {code, stdout, stderr}. Run by `runMany`.
  */
 import { text } from 'node:stream/consumers';
 

@@ -10,7 +10,10 @@ const MERIT_KEYS = [
   ...['fidelity', 'averageGateFidelity', 'portPhaseFreeFidelity', 'rmsError', 'worstCaseError'],
   ...['powerDistance', 'transmission', 'transmissionDb'],
 ];
-/** Ratios of which the bar state is out of reach: cos^2(a-b) = 4 * 0.45 * 0.55 = 0.99 (conventions, cell solver). */
+/**
+ * Ratios of which the bar state is out of reach: cos^2(a-b) = 4 * 0.45 * 0.55 = 0.99 (conventions, cell
+ * solver).
+ */
 const SHORT_OF_BAR = JSON.stringify({
   name: 'short of bar',
   modes: 2,

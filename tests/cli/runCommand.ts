@@ -60,8 +60,9 @@ export async function runCommand(args: readonly string[], options: RunOptions = 
 }
 
 /**
- * Runs the built program once for each call, all in one process, each in a fresh folder of its own: for tables of faults, where
- * starting it anew would take most of the time. Exit codes are those that the program returns; standard input is not served.
+ * Runs the built program once for each call, all in one process, each in a fresh folder of its own: for
+ * tables of faults, where starting it anew would take most of the time. Exit codes are those that the program
+ * returns; standard input is not served.
  */
 export async function runMany(
   calls: readonly { readonly args: readonly string[]; readonly files: RunOptions['files'] }[],
@@ -75,7 +76,8 @@ export async function runMany(
   );
   const input = JSON.stringify(calls.map(({ args }, k) => ({ args, folder: folders[k] })));
   const commandLine = pathToFileURL(join(dirname(COMMAND), 'commandLine.js')).href;
-  // As JavaScript: worker threads inherit the arguments of node, and find no loader of TypeScript from a folder of their own.
+  // As JavaScript: worker threads inherit the arguments of node, and find no loader of TypeScript from a
+  // folder of their own.
   const source = await readFile(fileURLToPath(new URL('manyRuns.ts', import.meta.url)), 'utf8');
   const { outputText: script } = ts.transpileModule(source, {
     compilerOptions: { module: ts.ModuleKind.ESNext, target: ts.ScriptTarget.ES2022 },
@@ -153,7 +155,10 @@ export function meritOf(report: string, key = 'merit'): Record<string, number> {
   return asRecord(report)[key] as Record<string, number>;
 }
 
-/** An .npy file, format 1.0, of complex numbers given as pairs in C order (numpy.lib.format, NumPy Enhancement Proposal 1). */
+/**
+ * An .npy file, format 1.0, of complex numbers given as pairs in C order (numpy.lib.format, NumPy Enhancement
+ * Proposal 1).
+ */
 export function npyFile(shape: readonly number[], pairs: readonly (readonly [number, number])[]): Uint8Array {
   const sizes = shape.length === 1 ? `${shape[0]},` : shape.join(', ');
   return npyBytes(

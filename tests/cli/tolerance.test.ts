@@ -47,12 +47,14 @@ describe('tolerance', () => {
   const report = (name: string): ToleranceReport => JSON.parse(runOf(name).stdout) as ToleranceReport;
 
   it('finds what can be worked out by hand: the cross state of one cell', () => {
-    // F = cos^2(alpha + beta) of two normal angles: F >= 0.99 with probability 0.9 when 1.644854 sqrt(2) s = acos(sqrt(0.99)).
+    // F = cos^2(alpha + beta) of two normal angles: F >= 0.99 with probability 0.9 when 1.644854 sqrt(2) s =
+    // acos(sqrt(0.99)).
     const exact = Math.acos(Math.sqrt(0.99)) / (1.644854 * Math.SQRT2);
     const { value, low, high } = report('angles').tolerance;
     expect(low).toBeLessThan(exact);
     expect(high).toBeGreaterThan(exact);
-    // 2000 trials: the share at 0.9 is known to sqrt(0.09/2000), and falls by 0.4765 for a relative change of s of 1 (2 z pdf(z), halved).
+    // 2000 trials: the share at 0.9 is known to sqrt(0.09/2000), and falls by 0.4765 for a relative change of
+    // s of 1 (2 z pdf(z), halved).
     const relative = Math.sqrt(0.09 / 2000) / (2 * 1.644854 * 0.103136);
     expect(Math.abs(value! / exact - 1)).toBeLessThan(4 * relative + 1e-3);
     expect(high! / low! - 1).toBeGreaterThan(2 * relative);
@@ -75,7 +77,8 @@ describe('tolerance', () => {
     });
     expect(run.stdout).toBe(await run.read('r/report.json'));
     const { tolerance, theory, tried } = report('haar');
-    // A mean infidelity of 2 (N - 1) s^2 with a scatter of 2.2/N from chip to chip, 1.2816 of which are allowed for.
+    // A mean infidelity of 2 (N - 1) s^2 with a scatter of 2.2/N from chip to chip, 1.2816 of which are
+    // allowed for.
     const estimate = Math.sqrt(0.01 / (14 * (1 + (2.2 / 8) * 1.281552)));
     expect(theory.value).toBeCloseTo(estimate, 6);
     expect(Math.abs(tolerance.value! / estimate - 1)).toBeLessThan(0.05);

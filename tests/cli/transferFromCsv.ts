@@ -6,9 +6,9 @@ const plus = ([a, b]: Pair, [c, d]: Pair): Pair => [a + c, b + d];
 const turn = (angle: number): Pair => [Math.cos(angle), Math.sin(angle)];
 
 /**
- * What a phases.csv does on an ideal chip in the reference style, worked out from the text alone with the textbook cell
- * T = i e^{i theta/2} [[e^{i phi} sin(theta/2), cos(theta/2)], [e^{i phi} cos(theta/2), -sin(theta/2)]]: nothing of the program
- * is used. Rows are taken in the order of the file.
+ * What a phases.csv does on an ideal chip in the reference style, worked out from the text alone with the
+ * textbook cell T = i e^{i theta/2} [[e^{i phi} sin(theta/2), cos(theta/2)], [e^{i phi} cos(theta/2),
+ * -sin(theta/2)]]: nothing of the program is used. Rows are taken in the order of the file.
  */
 export function transferFromCsv(csv: string, modes: number): Pair[][] {
   const transfer: Pair[][] = Array.from({ length: modes }, (_, i) =>

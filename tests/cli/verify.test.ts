@@ -33,7 +33,8 @@ describe.concurrent('verify', () => {
   it('lets the phases of an edited CSV win over those of the JSON beside it', async () => {
     const table = await withTable();
     const lines = (await table.read('t/phases.csv')).split('\n');
-    // Output phase of port 1 half a turn on: each row of a unitary gives a third to Tr(U^dagger U)/3, so F = (1 - 2/3)^2.
+    // Output phase of port 1 half a turn on: each row of a unitary gives a third to Tr(U^dagger U)/3, so F =
+    // (1 - 2/3)^2.
     const output = lines.findIndex((line) => line.startsWith('7,,output'));
     const fields = lines[output]!.split(',');
     lines[output] = [...fields.slice(0, 5), Number(fields[5]) + Math.PI, ''].join(',');

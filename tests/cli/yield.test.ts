@@ -71,7 +71,8 @@ describe.concurrent('yield', () => {
       clamped: 0,
       files: ['trials.npy', 'histogram.svg', 'cumulative.svg', 'report.json'],
     });
-    // The exact Gaussian average for DFT2 with both angles spread by 0.02: expansion of exp(i alpha) by characteristic functions.
+    // The exact Gaussian average for DFT2 with both angles spread by 0.02: expansion of exp(i alpha) by
+    // characteristic functions.
     const { mean, standardError } = report.fidelity;
     expect(Math.abs(1 - mean - 7.9952021e-4)).toBeLessThan(4 * standardError);
     expect(standardError).toBeLessThan(2e-5);
@@ -129,7 +130,8 @@ describe.concurrent('yield', () => {
     expect(eight).toEqual(one);
     const { trials, low, high } = reportOf(readFileSync(join(folders[0]!, 'report.json'), 'utf8')).yield;
     expect(high - low).toBeLessThanOrEqual(0.1);
-    // It stopped, and not before a chunk less was too few: a share p of n trials leaves 2 z sqrt(p (1 - p)/n), a little more if exact.
+    // It stopped, and not before a chunk less was too few: a share p of n trials leaves 2 z sqrt(p (1 -
+    // p)/n), a little more if exact.
     expect(trials).toBeLessThan(4000);
     const [{ shape, values }] = await Promise.all([readTable(join(folders[0]!, 'trials.npy'))]);
     expect(shape).toEqual([trials, 1]);
@@ -265,7 +267,8 @@ describe('yield, small runs', () => {
     const { mean, standardError } = report('large chip').fidelity;
     expect(Math.abs(1 - mean - 0.0504 * (1 - 0.0252))).toBeLessThan(4 * standardError + 5e-4);
     const { clamped } = report('large errors');
-    // A normal number leaves one standard deviation with probability 0.3173 (4000 of them, 4 standard deviations of the count).
+    // A normal number leaves one standard deviation with probability 0.3173 (4000 of them, 4 standard
+    // deviations of the count).
     expect(Math.abs(clamped - 4000 * 0.3173)).toBeLessThan(4 * Math.sqrt(4000 * 0.3173 * 0.6827));
     expect(runOf('large errors').stderr).toContain(`${clamped} coupling ratios were clamped to [0, 1]`);
   });
@@ -282,7 +285,8 @@ describe('yield, small runs', () => {
   });
 
   it('retunes cells, also where limits of shifters bind', () => {
-    // Retuning leaves fourth powers of the spread: s^4 (2/3 (N^2 - 1) + 4 (N - 1)/N) = 1.7e-4 against 2 (N - 1) s^2 = 2.5e-2.
+    // Retuning leaves fourth powers of the spread: s^4 (2/3 (N^2 - 1) + 4 (N - 1)/N) = 1.7e-4 against 2 (N -
+    // 1) s^2 = 2.5e-2.
     expect(1 - report('not retuned').fidelity.mean).toBeGreaterThan(0.02);
     expect(1 - report('cells retuned').fidelity.mean).toBeLessThan(0.001);
     // With phases out of range both fall far below; retuning works under the same limits.
@@ -324,7 +328,8 @@ describe('yield, small runs', () => {
   });
 
   it('sweeps the design: ports, nominal ratio, loss and bits', () => {
-    // 2 (N - 1) s^2 for each number of ports; 300 chips each, whose infidelities scatter by less than their mean.
+    // 2 (N - 1) s^2 for each number of ports; 300 chips each, whose infidelities scatter by less than their
+    // mean.
     for (const { value, fidelity } of sweepOf('sweep modes')) {
       const expected = 2 * (value - 1) * 4e-4;
       expect(Math.abs(1 - fidelity.mean - expected)).toBeLessThan((4 * 1.2 * expected) / Math.sqrt(300));

@@ -11,7 +11,10 @@ export interface Table {
   readonly values: Float64Array;
 }
 
-/** Reads an .npy file of little-endian doubles in C order by the description of the format (NumPy Enhancement Proposal 1). */
+/**
+ * Reads an .npy file of little-endian doubles in C order by the description of the format (NumPy Enhancement
+ * Proposal 1).
+ */
 export async function readTable(path: string): Promise<Table> {
   const bytes = await readFile(path);
   if (bytes.toString('latin1', 1, 6) !== 'NUMPY' || bytes[0] !== 0x93 || bytes[6] !== 1) {
@@ -55,7 +58,10 @@ export interface StoppedRun {
   readonly stderr: string;
 }
 
-/** Starts the built command and sends it a signal as soon as `when` holds; gives up on `when` at the command's end. */
+/**
+ * Starts the built command and sends it a signal as soon as `when` holds; gives up on `when` at the command's
+ * end.
+ */
 export async function stopCommand(
   args: readonly string[],
   folder: string,

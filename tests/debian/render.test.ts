@@ -11,7 +11,10 @@ import { programChip } from '../../src/program/programChip.js';
 const folder = mkdtempSync(join(tmpdir(), 'phasewright-render-'));
 afterAll(() => rmSync(folder, { recursive: true, force: true }));
 
-/** Renders with rsvg-convert (Debian's librsvg2-bin) and returns what it says and the picture's size in pixels. */
+/**
+ * Renders with rsvg-convert (Debian's librsvg2-bin) and returns what it says and the picture's size in
+ * pixels.
+ */
 function render(svg: string, name: string): { messages: string; width: number; height: number } {
   const path = join(folder, `${name}.svg`);
   const png = join(folder, `${name}.png`);

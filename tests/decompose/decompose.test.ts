@@ -93,7 +93,8 @@ describe.each(LAYOUTS)(
       const mesh = createMesh(layout, 5);
       const target = withNoise(blockDiagonal(haarUnitary(2, 3), haarUnitary(3, 4)));
       const { cosine } = decompose(target, mesh);
-      // No light passes from ports 1, 2 to ports 3, 4, 5: 1 + 3 cells are at work, the others at bar or in pairs of crosses.
+      // No light passes from ports 1, 2 to ports 3, 4, 5: 1 + 3 cells are at work, the others at bar or in
+      // pairs of crosses.
       const working = Array.from(cosine).filter((c) => c !== 0 && c !== 1);
       expect(working.length).toBeLessThanOrEqual(4);
     });
@@ -143,8 +144,8 @@ describe('worked examples: bar powers', () => {
   });
 });
 
-// Russell, Chakhmakhchyan, O'Brien, Laing, New J. Phys. 19, 033007 (2017): the bar power R of each cell of a Haar-random target is
-// independent with CDF 1-(1-R)^k. The exponents k are those of check-values section 3.
+// Russell, Chakhmakhchyan, O'Brien, Laing, New J. Phys. 19, 033007 (2017): the bar power R of each cell of a
+// Haar-random target is independent with CDF 1-(1-R)^k. The exponents k are those of check-values section 3.
 describe('Haar statistics of the cells', () => {
   const modes = 5;
   const samples = 5000;
@@ -164,7 +165,8 @@ describe('Haar statistics of the cells', () => {
         (largest, u, i) => Math.max(largest, (i + 1) / samples - u, u - i / samples),
         0,
       );
-      // The Kolmogorov quantile .9999 is 2.2253 (from Kolmogorov's series); ten cells a layout at a fixed seed.
+      // The Kolmogorov quantile .9999 is 2.2253 (from Kolmogorov's series); ten cells a layout at a fixed
+      // seed.
       expect(distance * Math.sqrt(samples), `cell ${cell + 1}`).toBeLessThan(2.2253);
     }
   });

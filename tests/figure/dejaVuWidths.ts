@@ -1,6 +1,6 @@
 /**
- * Advance widths of DejaVu Sans 2.37 in units of 1/2048 em, U+0020 to U+007E, read from the `hmtx` table of the font as
- * Debian's fonts-dejavu-core ships it; the widest sans-serif face in usual use.
+ * Advance widths of DejaVu Sans 2.37 in units of 1/2048 em, U+0020 to U+007E, read from the `hmtx` table of
+ * the font as Debian's fonts-dejavu-core ships it; the widest sans-serif face in usual use.
  */
 const ASCII = [
   651, 821, 942, 1716, 1303, 1946, 1597, 563, 799, 799, 1024, 1716, 651, 739, 651, 690, 1303, 1303, 1303,
@@ -12,7 +12,10 @@ const ASCII = [
 ];
 const OTHERS: Readonly<Record<string, number>> = { 'π': 1233, '−': 1716, '…': 2048, 'θ': 1253, 'φ': 1351 };
 
-/** Width of a line in DejaVu Sans, in the unit of `fontSize`; bold faces are at most 1.15 times as wide on a line. */
+/**
+ * Width of a line in DejaVu Sans, in the unit of `fontSize`; bold faces are at most 1.15 times as wide on a
+ * line.
+ */
 export function dejaVuWidth(text: string, fontSize: number, bold = false): number {
   let units = 0;
   for (const character of text) units += ASCII[character.codePointAt(0)! - 32] ?? OTHERS[character] ?? 2048;

@@ -272,7 +272,9 @@ describe('a mesh figure shows the chip', () => {
   });
 });
 
-/** How many of its cell's splitters lie wholly before x: drawn parts of the path, not the layout's numbers. */
+/**
+ * How many of its cell's splitters lie wholly before x: drawn parts of the path, not the layout's numbers.
+ */
 function splittersBefore(
   chip: Chip,
   root: XmlElement,

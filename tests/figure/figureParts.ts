@@ -42,7 +42,10 @@ export function numberOf(element: XmlElement, attribute: string): number {
   return Number(value);
 }
 
-/** The box of a line of text set in DejaVu Sans: digits and capitals 0.73 em high, ascenders 0.76, descenders 0.24. */
+/**
+ * The box of a line of text set in DejaVu Sans: digits and capitals 0.73 em high, ascenders 0.76, descenders
+ * 0.24.
+ */
 export function textBox(text: XmlElement): Box {
   const size = numberOf(text, 'font-size');
   const width = dejaVuWidth(text.text, size, inherited(text, 'font-weight') === 'bold');

@@ -1,6 +1,8 @@
 import ts from 'typescript';
 
-/** The folders of src/ from the top down; those of one row stand side by side and know nothing of one another. */
+/**
+ * The folders of src/ from the top down; those of one row stand side by side and know nothing of one another.
+ */
 export const ROWS: readonly (readonly string[])[] = [
   ['cli'],
   ['files'],
@@ -23,7 +25,10 @@ const NODE_FOLDERS: readonly string[] = ['cli', 'files'];
 /** Sources in AssemblyScript, whose imports have no ending. */
 const ASSEMBLY = 'kernel/assembly/';
 
-/** Every module that a source names: imports, re-exports, `import(...)` of both kinds, `import x = require(...)`. */
+/**
+ * Every module that a source names: imports, re-exports, `import(...)` of both kinds, `import x =
+ * require(...)`.
+ */
 export function importedModules(path: string, source: string): string[] {
   const modules: string[] = [];
   const take = (node: ts.Node | undefined): void => {

@@ -7,8 +7,9 @@ writeZiggurat(tables);
 const edge = (layer: number): number => tables[3 * layer]!;
 const density = (x: number): number => Math.exp(-0.5 * x * x);
 
-// Marsaglia and Tsang, J. Stat. Softw. 5, 8 (2000): all layers have one area, the lowest with the tail that it stands for; the
-// last one ends at the peak. The two constants are from memory, and this is what holds for no others.
+// Marsaglia and Tsang, J. Stat. Softw. 5, 8 (2000): all layers have one area, the lowest with the tail that
+// it stands for; the last one ends at the peak. The two constants are from memory, and this is what holds for
+// no others.
 it('has layers of one area that end at the peak of the density', () => {
   const area = edge(0) * density(edge(1));
   const tail = Math.sqrt(Math.PI / 2) * complementaryErrorFunction(edge(1) / Math.SQRT2);

@@ -51,7 +51,8 @@ describe('a perfect chip', () => {
 });
 
 describe('fidelities', () => {
-  // check-values section 7, derived and checked there: average over Haar states of overlap, over mean transmission for lossy V.
+  // check-values section 7, derived and checked there: average over Haar states of overlap, over mean
+  // transmission for lossy V.
   it.each([
     ['unitary', unitary],
     ['lossy', lossy],

@@ -11,7 +11,8 @@ function places(mesh: Mesh): [number, number][] {
 }
 
 describe('counts', () => {
-  // Reck et al., Phys. Rev. Lett. 73, 58 (1994); Clements et al., Optica 3, 1460 (2016): N(N-1)/2 cells, depth 2N-3 and N.
+  // Reck et al., Phys. Rev. Lett. 73, 58 (1994); Clements et al., Optica 3, 1460 (2016): N(N-1)/2 cells,
+  // depth 2N-3 and N.
   it.each([2, 3, 4, 5, 8, 16, 33])('has N(N-1)/2 cells and the published depth, N = %i', (modes) => {
     for (const mirror of MIRRORS) {
       const rectangular = createMesh('rectangular', modes, mirror);

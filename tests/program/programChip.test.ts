@@ -256,7 +256,8 @@ describe.each(ALL_STYLES.map((style) => [styleName(style), style] as const))('ce
   });
 
   it('carry on the best port phases when a phase must be clamped', () => {
-    // One cell, so that the port phases are all that may still be chosen: no choice may do better than what is set.
+    // One cell, so that the port phases are all that may still be chosen: no choice may do better than what
+    // is set.
     const chip = { ...idealChip(2, { style }), shifterRanges: new Map<number, PhaseRange>() };
     const free = programChip(chip, haarUnitary(2, 9)).program.settings;
     const ownRanges = new Map<number, PhaseRange>();

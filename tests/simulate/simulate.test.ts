@@ -22,7 +22,10 @@ function withLoss(chip: Chip, loss: Partial<ChipLoss>): Chip {
 
 const amplitude = (lossDb: number): number => 10 ** (-lossDb / 20);
 
-/** The chip as the product of one N x N matrix per element that the light meets, each written from conventions sections 2 and 3. */
+/**
+ * The chip as the product of one N x N matrix per element that the light meets, each written from conventions
+ * sections 2 and 3.
+ */
 function elementByElement(chip: Chip, settings: ReturnType<typeof zeroSettings>): ComplexMatrix {
   const { modes } = chip.mesh;
   const { loss, style } = chip;
@@ -192,7 +195,8 @@ function figuresOfMeritFast(target: ComplexMatrix, achieved: ComplexMatrix): num
   return (re * re + im * im) / (target.rows * power);
 }
 
-// check-values section 5: fidelity with all splitters off by alpha = 0.05, beta = +-0.05, phases of the ideal chip.
+// check-values section 5: fidelity with all splitters off by alpha = 0.05, beta = +-0.05, phases of the ideal
+// chip.
 describe('splitter errors', () => {
   it.each([
     [2, 0.05, 0.9950104049],

@@ -121,7 +121,10 @@ export function unitaryMatrices(modes: number): [name: string, matrix: ComplexMa
   return matrices;
 }
 
-/** The nonlinear-sign gate of Knill, Laflamme, Milburn, Nature 409, 46 (2001); entries from memory, unitarity checked. */
+/**
+ * The nonlinear-sign gate of Knill, Laflamme, Milburn, Nature 409, 46 (2001); entries from memory, unitarity
+ * checked.
+ */
 export function nonlinearSignGate(): ComplexMatrix {
   const a = 2 ** -0.25;
   const b = Math.sqrt(3 / Math.SQRT2 - 2);

@@ -71,8 +71,8 @@ describe('damaged files', () => {
     const whole = outcome(bytes, kind);
     for (let length = 0; length < bytes.length; length++) {
       const result = outcome(bytes.subarray(0, length), kind);
-      // A binary file without its end never passes. Text may lose its last digits unseen, or be cut within its first
-      // entry and be a matrix of one port; but it never loses a row.
+      // A binary file without its end never passes. Text may lose its last digits unseen, or be cut within
+      // its first entry and be a matrix of one port; but it never loses a row.
       const accepted = kind === 'npy' ? [null] : [null, 1, whole];
       expect(accepted, `cut at ${length}`).toContain(result);
     }

@@ -46,7 +46,10 @@ const { formula } = fc.letrec<{
     .map(([name, given]) => `${name}(${given.join(', ')})`),
 }));
 
-/** What mathjs gives for the text, evaluated by itself: rows of a finite square matrix, or undefined for the rest. */
+/**
+ * What mathjs gives for the text, evaluated by itself: rows of a finite square matrix, or undefined for the
+ * rest.
+ */
 function byLibrary(text: string): mathjs.Complex[][] | undefined {
   const value = mathjs.evaluate(text) as mathjs.Matrix;
   const rows = (mathjs.isMatrix(value) ? value.toArray() : value) as mathjs.MathNumericType[][];
@@ -67,7 +70,8 @@ describe('formulas at random', () => {
         expect([rows.length, rows[0]!.length]).toEqual([ours.rows, ours.columns]);
         const size = Math.max(1, ...ours.re.map(Math.abs), ...ours.im.map(Math.abs));
         rows.flat().forEach(({ re, im }, k) => {
-          // Products are summed in another order: roundings of a few eps of the largest entry, powers of ill matrices aside.
+          // Products are summed in another order: roundings of a few eps of the largest entry, powers of ill
+          // matrices aside.
           expect(Math.hypot(re - ours.re[k]!, im - ours.im[k]!)).toBeLessThan(1e-11 * size);
         });
         matrices++;

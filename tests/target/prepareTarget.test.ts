@@ -62,8 +62,8 @@ describe('unitarity', () => {
 
 describe('the nearest unitary', () => {
   it('of [[1, 1], [0, 1]] is [[2, 1], [-1, 2]]/sqrt(5)', () => {
-    // Closed form by hand: M^T M = [[1, 1], [1, 2]], singular values (sqrt(5) +- 1)/2, so the squared distance is
-    // the sum of (s - 1)^2 = ((sqrt(5) - 1)/2)^2 + ((sqrt(5) - 3)/2)^2 = 5 - 2 sqrt(5).
+    // Closed form by hand: M^T M = [[1, 1], [1, 2]], singular values (sqrt(5) +- 1)/2, so the squared
+    // distance is the sum of (s - 1)^2 = ((sqrt(5) - 1)/2)^2 + ((sqrt(5) - 3)/2)^2 = 5 - 2 sqrt(5).
     const {
       matrix,
       unitarityDefect: defect,

@@ -152,8 +152,8 @@ describe('the share of exactly realisable Haar targets', () => {
 });
 
 describe('the error that retuning leaves', () => {
-  // s^4 (2/3 (N^2 - 1) + 4 (N - 1)/N), to 15 % (check-values, section 2). The tail is heavy, the more so the smaller
-  // N: with these numbers of chips the mean is known to about 4 %.
+  // s^4 (2/3 (N^2 - 1) + 4 (N - 1)/N), to 15 % (check-values, section 2). The tail is heavy, the more so the
+  // smaller N: with these numbers of chips the mean is known to about 4 %.
   it.each([
     [4, 100_000],
     [8, 20_000],

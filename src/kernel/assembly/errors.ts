@@ -4,8 +4,8 @@ import { add, both, cosine, multiply, productIm, productRe, root, sine, subtract
 
 /**
  * Makes the numbers of a grid of `columns` x `rows` places dependent on each other: their covariance becomes
- * columnStep^|dc| rowStep^|dr| (a product of two first-order autoregressions: positive definite by construction, variance kept).
- * Place (c, r) stands at index c * rows + r.
+ * columnStep^|dc| rowStep^|dr| (a product of two first-order autoregressions: positive definite by
+ * construction, variance kept). Place (c, r) stands at index c * rows + r.
  */
 export function correlateGrid(grid: usize, columns: i32, rows: i32, columnStep: f64, rowStep: f64): void {
   const alongRow = both(rowStep);
@@ -29,7 +29,10 @@ export function correlateGrid(grid: usize, columns: i32, rows: i32, columnStep: 
   }
 }
 
-/** Picks the numbers of `count` places (indices at `places`) from a grid; they are written `stride` bytes apart. */
+/**
+ * Picks the numbers of `count` places (indices at `places`) from a grid; they are written `stride` bytes
+ * apart.
+ */
 export function pickPlaces(out: usize, stride: i32, grid: usize, places: usize, count: i32): void {
   for (let k = 0; k < count; k++) {
     v128.store(out, v128.load(grid + usize(load<i32>(places + usize(k) * 4)) * 16));
@@ -37,7 +40,9 @@ export function pickPlaces(out: usize, stride: i32, grid: usize, places: usize, 
   }
 }
 
-/** Gives the two numbers of each pair the correlation `correlation`; the first is kept, both variances stay 1. */
+/**
+ * Gives the two numbers of each pair the correlation `correlation`; the first is kept, both variances stay 1.
+ */
 export function correlatePairs(numbers: usize, pairs: i32, correlation: f64): void {
   const kept = both(correlation);
   const fresh = both(sqrt(1.0 - correlation * correlation));
@@ -48,8 +53,9 @@ export function correlatePairs(numbers: usize, pairs: i32, correlation: f64): vo
 }
 
 /**
- * Writes cos a and sin a (2 x 16 bytes) of `count` splitters of coupling ratio sin^2 a = nominal + shift + sigma * number, clamped to [0, 1].
- * `nominal`: one double a splitter, the same for both lanes. `shift`: 16 bytes. The numbers clamped are added to the two 64-bit counts at `clamped`.
+ * Writes cos a and sin a (2 x 16 bytes) of `count` splitters of coupling ratio sin^2 a = nominal + shift +
+ * sigma * number, clamped to [0, 1]. `nominal`: one double a splitter, the same for both lanes. `shift`: 16
+ * bytes. The numbers clamped are added to the two 64-bit counts at `clamped`.
  */
 export function drawSplitters(
   out: usize, count: i32, nominal: usize, numbers: usize, sigma: f64, shift: usize, clamped: usize,
@@ -73,7 +79,10 @@ export function drawSplitters(
   v128.store(clamped, counts);
 }
 
-/** Adds sigma * number to the angle a of each splitter. Only the coupling ratio counts: cos a and sin a stay positive. */
+/**
+ * Adds sigma * number to the angle a of each splitter. Only the coupling ratio counts: cos a and sin a stay
+ * positive.
+ */
 export function turnSplitters(splitters: usize, count: i32, numbers: usize, sigma: f64): void {
   const spread = both(sigma);
   for (let k = 0; k < count; k++) {

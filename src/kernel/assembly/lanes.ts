@@ -1,4 +1,5 @@
-// Two trials side by side: every 128-bit value holds a number of one trial in its first lane and the same number of the next trial in its second.
+// Two trials side by side: every 128-bit value holds a number of one trial in its first lane and the same
+// number of the next trial in its second.
 
 @inline export function both(x: f64): v128 { return f64x2.splat(x); }
 @inline export function add(a: v128, b: v128): v128 { return f64x2.add(a, b); }

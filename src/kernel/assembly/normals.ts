@@ -1,7 +1,11 @@
-// The random numbers of two trials. Philox4x32-10 (Salmon, Moraes, Dror, Shaw, SC'11) gives each trial its starting state, so that a trial has the same numbers
-// whoever runs it; from there on xoroshiro128+ (Blackman and Vigna, ACM Trans. Math. Softw. 47, 36 (2021)), a stream of its own in each lane.
+// The random numbers of two trials. Philox4x32-10 (Salmon, Moraes, Dror, Shaw, SC'11) gives each trial its
+// starting state, so that a trial has the same numbers whoever runs it; from there on xoroshiro128+ (Blackman
+// and Vigna, ACM Trans. Math. Softw. 47, 36 (2021)), a stream of its own in each lane.
 
-/** Writes the states of trials `trial` and `trial + 1` into the two lanes of the 32 bytes at `state`: counters [0, 0, trial, stream], the key the seed. */
+/**
+ * Writes the states of trials `trial` and `trial + 1` into the two lanes of the 32 bytes at `state`: counters
+ * [0, 0, trial, stream], the key the seed.
+ */
 export function seedTrials(state: usize, seedLow: u32, seedHigh: u32, stream: u32, trial: u32): void {
   seedLane(state, seedLow, seedHigh, stream, trial);
   seedLane(state + 8, seedLow, seedHigh, stream, trial + 1);
@@ -36,7 +40,9 @@ function seedLane(at: usize, seedLow: u32, seedHigh: u32, stream: u32, trial: u3
   return reinterpret<f64>((bits >> 12) | 0x3ff0000000000000);
 }
 
-/** log(u) for u in (0, 1]: the mantissa is brought to [sqrt(1/2), sqrt(2)), then 2 artanh((m - 1)/(m + 1)). */
+/**
+ * log(u) for u in (0, 1]: the mantissa is brought to [sqrt(1/2), sqrt(2)), then 2 artanh((m - 1)/(m + 1)).
+ */
 function logarithm(u: f64): f64 {
   const bits = reinterpret<i64>(u);
   const exponent = (bits - 0x3fe6a09e667f3bcd) >> 52;
@@ -60,7 +66,8 @@ function exponential(x: f64): f64 {
 /** Bytes of a layer in the tables: its right edge, the next edge as a share of it, the density at it. */
 const LAYER = 24;
 
-// The state of the lane at work, for the numbers that need more than one word. The loop keeps it in locals, which is faster.
+// The state of the lane at work, for the numbers that need more than one word. The loop keeps it in locals,
+// which is faster.
 let first: u64 = 0;
 let second: u64 = 0;
 
@@ -77,10 +84,10 @@ let second: u64 = 0;
 }
 
 /**
- * Writes `count` normals of mean 0 and standard deviation 1 for each lane, 16 bytes each, at `out`; `state` is moved on. By the
- * ziggurat of Marsaglia and Tsang, J. Stat. Softw. 5, 8 (2000), with 256 layers: 99 of 100 numbers cost one random word, one
- * product and one comparison. The upper 52 bits of a word place the number, bits 4 to 11 choose its layer (the lowest bits of
- * xoroshiro128+ are weak).
+ * Writes `count` normals of mean 0 and standard deviation 1 for each lane, 16 bytes each, at `out`; `state`
+ * is moved on. By the ziggurat of Marsaglia and Tsang, J. Stat. Softw. 5, 8 (2000), with 256 layers: 99 of
+ * 100 numbers cost one random word, one product and one comparison. The upper 52 bits of a word place the
+ * number, bits 4 to 11 choose its layer (the lowest bits of xoroshiro128+ are weak).
  */
 export function fillNormals(out: usize, count: i32, state: usize, layers: usize): void {
   for (let lane: usize = 0; lane < 16; lane += 8) {
@@ -109,7 +116,9 @@ export function fillNormals(out: usize, count: i32, state: usize, layers: usize)
   }
 }
 
-/** A number that fell beyond the next layer's edge: in the tail, under the density, or, after all, a new one. */
+/**
+ * A number that fell beyond the next layer's edge: in the tail, under the density, or, after all, a new one.
+ */
 function atTheEdge(u: f64, x: f64, layer: usize, layers: usize): f64 {
   while (true) {
     if (layer == layers) return u < 0.0 ? -tail(load<f64>(layers, LAYER)) : tail(load<f64>(layers, LAYER));
@@ -133,7 +142,10 @@ function tail(edge: f64): f64 {
   }
 }
 
-/** Writes `count` numbers for each lane, uniform with mean 0 and standard deviation 1: between -sqrt(3) and sqrt(3). */
+/**
+ * Writes `count` numbers for each lane, uniform with mean 0 and standard deviation 1: between -sqrt(3) and
+ * sqrt(3).
+ */
 export function fillUniforms(out: usize, count: i32, state: usize): void {
   for (let lane: usize = 0; lane < 16; lane += 8) {
     first = load<u64>(state + lane);

@@ -1,5 +1,6 @@
-// From cells to the light that arrives. Two trials side by side make the cells' coefficients; then each trial is propagated by itself, eight input ports
-// at a time (a panel), so that a panel stays in the first-level cache through all columns of the mesh.
+// From cells to the light that arrives. Two trials side by side make the cells' coefficients; then each trial
+// is propagated by itself, eight input ports at a time (a panel), so that a panel stays in the first-level
+// cache through all columns of the mesh.
 
 import { add, both, divide, multiply, overlapIm, overlapRe, productIm, productRe, square, subtract } from './lanes';
 
@@ -13,17 +14,18 @@ const ROW = 128;
 const CELL = 80;
 
 /**
- * Makes the coefficients of all cells. Every guide's field is held as a factor times what the panels hold, so that a cell costs the panels two complex
- * multiplications and additions in place of four:
+ * Makes the coefficients of all cells. Every guide's field is held as a factor times what the panels hold, so
+ * that a cell costs the panels two complex multiplications and additions in place of four:
  *
  *     x' = x + u y, y' = y + v x     or, where more light crosses than stays, x' = y + u x, y' = x + v y
  *
- * with the factors f1' = T11 f1, f2' = T22 f2 (or T12 f2, T21 f1). No factor is ever less than 1/sqrt(2) of the one before without loss, so
- * nothing underflows up to 1024 cells in a row.
+ * with the factors f1' = T11 f1, f2' = T22 f2 (or T12 f2, T21 f1). No factor is ever less than 1/sqrt(2) of
+ * the one before without loss, so nothing underflows up to 1024 cells in a row.
  *
- * splitters: 4 x 16 bytes a cell (cos a, sin a, cos b, sin b). arms: 4 x 16 bytes a cell. external: 2 x 16 bytes a cell. gain: 16 bytes a cell, the
- * amplitude factor of its splitters' losses. input: 2 x 16 bytes a port, the fields' factors at the inputs; factors: written, those at the outputs. place: 0 upper
- * input, 1 lower input, 2 upper output, 3 lower output.
+ * splitters: 4 x 16 bytes a cell (cos a, sin a, cos b, sin b). arms: 4 x 16 bytes a cell. external: 2 x 16
+ * bytes a cell. gain: 16 bytes a cell, the amplitude factor of its splitters' losses. input: 2 x 16 bytes a
+ * port, the fields' factors at the inputs; factors: written, those at the outputs. place: 0 upper input, 1
+ * lower input, 2 upper output, 3 lower output.
  */
 export function composeCells(
   cells: i32, upperPort: usize, splitters: usize, arms: usize, external: usize, gain: usize, modes: i32, input: usize,
@@ -146,9 +148,10 @@ export function composeCells(
 }
 
 /**
- * Sends light through the mesh of one trial (lane) from the eight input ports of a panel; the panel holds the fields without their factors. ranges: for each
- * column the first cell that the light can have reached and the one behind the last, 32 bits each. Places that no light reaches hold 1e-40
- * instead of 0, since products of small numbers would become denormal, which is slow.
+ * Sends light through the mesh of one trial (lane) from the eight input ports of a panel; the panel holds the
+ * fields without their factors. ranges: for each column the first cell that the light can have reached and
+ * the one behind the last, 32 bits each. Places that no light reaches hold 1e-40 instead of 0, since products
+ * of small numbers would become denormal, which is slow.
  */
 export function propagatePanel(
   modes: i32, columns: i32, firstInput: i32, lane: i32, ranges: usize, upperPort: usize, coefficients: usize, panel: usize,
@@ -183,7 +186,10 @@ export function propagatePanel(
 
 @inline function laneSum(a: v128): f64 { return f64x2.extract_lane(a, 0) + f64x2.extract_lane(a, 1); }
 
-/** Adds a panel's part to the sums of each row: of conj(U) times the field (re, im) and of the field's square; 24 bytes a row. target: a panel of U. */
+/**
+ * Adds a panel's part to the sums of each row: of conj(U) times the field (re, im) and of the field's square;
+ * 24 bytes a row. target: a panel of U.
+ */
 export function accumulatePanel(modes: i32, panel: usize, target: usize, sums: usize): void {
   for (let row = 0; row < modes; row++) {
     let re = both(0.0);
@@ -208,8 +214,9 @@ export function accumulatePanel(modes: i32, panel: usize, target: usize, sums: u
 }
 
 /**
- * Runs all panels of one trial and judges it. factors: what composeCells left at the outputs; output: 2 x 16 bytes a port, facets and port phases. result
- * (one lane of 4 x 16 bytes): Re and Im of Tr(U^dag V), Tr(V^dag V), and the sum over the outputs of |(V U^dag)_ii|.
+ * Runs all panels of one trial and judges it. factors: what composeCells left at the outputs; output: 2 x 16
+ * bytes a port, facets and port phases. result (one lane of 4 x 16 bytes): Re and Im of Tr(U^dag V), Tr(V^dag
+ * V), and the sum over the outputs of |(V U^dag)_ii|.
  */
 export function judgeTrial(
   modes: i32, columns: i32, lane: i32, ranges: usize, upperPort: usize, coefficients: usize, panel: usize,

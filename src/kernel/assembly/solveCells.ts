@@ -1,5 +1,6 @@
-// The cell solver for two trials side by side: the sweep of src/program/carryingSweep.ts with the solver of src/chip/solveCell.ts, where no shifter range
-// binds. It finds e^{i theta} and e^{i phi} by roots alone; no angle is ever computed.
+// The cell solver for two trials side by side: the sweep of src/program/carryingSweep.ts with the solver of
+// src/chip/solveCell.ts, where no shifter range binds. It finds e^{i theta} and e^{i phi} by roots alone; no
+// angle is ever computed.
 
 import { add, both, divide, multiply, overlapIm, overlapRe, productIm, productRe, root, square, subtract } from './lanes';
 
@@ -30,14 +31,18 @@ const ARM_DIFFERENTIAL = 2;
 }
 
 /**
- * Finds the phases of all cells of two chips, sweeping with the light (againstLight = 0: external phase at the input) or against it.
+ * Finds the phases of all cells of two chips, sweeping with the light (againstLight = 0: external phase at
+ * the input) or against it.
  *
- * upperPort: 32-bit index of each cell's upper port. splitters: 4 x 16 bytes a cell, cos a, sin a of the first splitter, then of the second. wanted:
- * 4 x 16 bytes a cell: c, Re s, Im s, |s| of the factor [[c, -conj(s)], [s, c]]. diagonal: 2 x 16 bytes a port, the decomposition's diagonal. diagonalAt: 32-bit
- * index, for each port, of the cell at which the sweep takes it up, -1 for the end. carried: 2 x 16 bytes a port; holds the
- * factors of the port phases at the end. arms: 4 x 16 bytes a cell, written: amplitude factors of the upper and the lower arm.
- * external: 2 x 16 bytes a cell, written: factor of the external phase. internalArm: 0 upper, 1 lower, 2 differential. onLower: external phase on the lower
- * guide. realSplitters: the form [[cos, sin], [sin, -cos]]. shifterLoss: amplitude factor, multiplied into what is written but not reckoned with.
+ * upperPort: 32-bit index of each cell's upper port. splitters: 4 x 16 bytes a cell, cos a, sin a of the
+ * first splitter, then of the second. wanted: 4 x 16 bytes a cell: c, Re s, Im s, |s| of the factor [[c,
+ * -conj(s)], [s, c]]. diagonal: 2 x 16 bytes a port, the decomposition's diagonal. diagonalAt: 32-bit index,
+ * for each port, of the cell at which the sweep takes it up, -1 for the end. carried: 2 x 16 bytes a port;
+ * holds the factors of the port phases at the end. arms: 4 x 16 bytes a cell, written: amplitude factors of
+ * the upper and the lower arm. external: 2 x 16 bytes a cell, written: factor of the external phase.
+ * internalArm: 0 upper, 1 lower, 2 differential. onLower: external phase on the lower guide. realSplitters:
+ * the form [[cos, sin], [sin, -cos]]. shifterLoss: amplitude factor, multiplied into what is written but not
+ * reckoned with.
  */
 export function solveCells(
   cells: i32, modes: i32, upperPort: usize, splitters: usize, wanted: usize, diagonal: usize, diagonalAt: usize,
@@ -81,7 +86,8 @@ export function solveCells(
   const sr = v128.load(wanted, 16);
   const si = v128.load(wanted, 32);
 
-  // sin^2(theta/2) : cos^2(theta/2) = |W11|^2 - cos^2(a+b) : |W12|^2 - sin^2(a-b), exchanged for real splitters.
+  // sin^2(theta/2) : cos^2(theta/2) = |W11|^2 - cos^2(a+b) : |W12|^2 - sin^2(a-b), exchanged for real
+  // splitters.
   const leastBar = f64x2.abs(subtract(cc, ss));
   const leastCross = f64x2.abs(subtract(cs, sc));
   const crossAmplitude = v128.load(wanted, 48);
