@@ -301,6 +301,30 @@ describe.concurrent('phases', () => {
     expect(asRecord(await run.read('r/report.json'))['worst']).toBe(1);
   });
 
+  it('takes a batch of one for a batch, and names the matrix that is not unitary', async () => {
+    const [one, zero, two]: [Pair, Pair, Pair] = [
+      [1, 0],
+      [0, 0],
+      [2, 0],
+    ];
+    const files = {
+      'one.npy': npyFile([1, 2, 2], [one, zero, zero, one]),
+      'bad.npy': npyFile([2, 2, 2], [one, zero, zero, one, one, zero, zero, two]),
+    };
+    const single = await runCommand(['phases', 'one.npy', '--out', 'r'], { files });
+    expect(single.code).toBe(0);
+    expect(single.listing).toEqual(expect.arrayContaining(['r/merit.csv', 'r/phases-001.csv']));
+    const bad = await runCommand(['phases', 'bad.npy', '--out', 'r'], { files });
+    expect(bad.code).toBe(2);
+    expect(bad.stderr).toContain('bad.npy, matrix 2: the target is not unitary');
+  });
+
+  it('says how far the nearest unitary is', async () => {
+    const run = await runCommand(['phases', '[1, 0; 0, 1.001]', '--nearest', '--out', 'r']);
+    // Fan and Hoffman 1955: the distance of singular values 1 and 1.001 from 1.
+    expect(run.stdout).toContain('nearest unitary taken, at distance 0.001 (Frobenius)');
+  });
+
   it('reads standard input as CSV, as JSON and as .npy', async () => {
     const inputs = {
       csv: '0, 1\n1, 0\n',

@@ -36,15 +36,43 @@ describe.concurrent('results of a run', () => {
     const { folder } = await runCommand(['phases', 'dft(3)', '--out', 'r'], {
       files: { 'r/notes.txt': 'mine' },
     });
-    const run = await runCommand(['target', 'dft(4)', '--out', 'r', '--force'], { folder });
+    // More than 64 ports are not drawn: the figure of the old run must go.
+    const run = await runCommand(['phases', 'dft(65)', '--out', 'r', '--force'], { folder });
     expect(run.code).toBe(0);
-    expect(run.listing).toEqual(['r/', 'r/notes.txt', 'r/report.json']);
-    expect(asRecord(await run.read('r/report.json'))['command']).toBe('target');
+    expect(run.listing).toEqual(['r/', 'r/notes.txt', 'r/phases.csv', 'r/phases.json', 'r/report.json']);
+  });
+
+  it('never lose what another command left: it may be what this one has read', async () => {
+    const { folder } = await runCommand(['phases', 'dft(3)', '--out', 'r']);
+    const run = await runCommand(['verify', 'r/phases.json', '--out', 'r', '--force'], { folder });
+    expect(run.code).toBe(0);
+    expect(run.listing).toEqual(['r/', 'r/mesh.svg', 'r/phases.csv', 'r/phases.json', 'r/report.json']);
+    expect(asRecord(await run.read('r/report.json'))['command']).toBe('verify');
+  });
+
+  it('of a command that only reports may be replaced in their own folder', async () => {
+    const { folder } = await runCommand(['target', 'dft(3)']);
+    const again = await runCommand(['target', 'dft(3)', '--against', 'haar(3, 1)'], { folder });
+    expect(again.code).toBe(0);
+    expect(asRecord(await again.read('out/target-dft-3/report.json'))).toHaveProperty('merit');
+    const named = await runCommand(['target', 'dft(3)', '--out', 'out/target-dft-3'], { folder });
+    expect(named.code).toBe(2);
+  });
+
+  it('of tables in different folders do not meet', async () => {
+    const { folder } = await runCommand(['phases', 'dft(3)']);
+    await runCommand(['phases', 'dft(4)'], { folder });
+    for (const modes of [3, 4]) {
+      const run = await runCommand(['verify', `out/phases-dft-${modes}/phases.csv`], { folder });
+      expect(run.code).toBe(0);
+      expect(run.listing).toContain(`out/verify-phases-dft-${modes}/report.json`);
+    }
   });
 
   it('leave files alone that a forged report names outside of the folder', async () => {
     const forged = JSON.stringify({
       runId: 'x',
+      command: 'target',
       files: ['../mine.txt', '/etc/hostname', '.hidden', 'inner/a', 'old.csv'],
     });
     const run = await runCommand(['target', 'dft(2)', '--out', 'r', '--force'], {

@@ -133,7 +133,36 @@ describe.concurrent('verify', () => {
     expect(run.code).toBe(1);
     // (1 + 1 + 10^-0.3)/3
     expect(run.stderr).toContain('required transmission=0.9 is not met: it is 0.833729');
-    expect(run.listing).toContain('out/verify-phases/report.json');
+    expect(run.listing).toContain('out/verify-t/report.json');
+  });
+
+  it('refuses options for reading a target that is not read', async () => {
+    const { folder } = await withTable();
+    for (const command of ['verify', 'figure']) {
+      const run = await runCommand([command, 't/phases.csv', '--conjugate'], { folder });
+      expect(run.code).toBe(2);
+      expect(run.stderr).toContain('--conjugate says how a target is read');
+    }
+  });
+
+  it('judges, as figure does, what the chip can set, and lists what it cannot', async () => {
+    const { folder } = await withTable();
+    const files = {
+      'limited.chip.json': '{"modes": 3, "shifterOverrides": [{"shifter": 2, "rangeRad": [0, 1]}]}',
+    };
+    const options = ['t/phases.csv', '--chip', 'limited.chip.json', '--json'];
+    const verified = await runCommand(['verify', ...options], { folder, files });
+    const judged = asRecord(verified.stdout);
+    const drawn = await runCommand(['figure', ...options], { folder, files });
+    // The first internal phase of the three-port Fourier transform is pi/2.
+    const list = [{ shifter: 2, wantedRad: expect.closeTo(Math.PI / 2, 12) as number, setRad: 1 }];
+    expect(judged['outOfRange']).toEqual(list);
+    expect(asRecord(drawn.stdout)['outOfRange']).toEqual(list);
+    const fidelity = meritOf(verified.stdout)['fidelity'] as number;
+    expect(fidelity).toBeLessThan(0.99);
+    expect(await drawn.read('out/figure-t/mesh.svg')).toContain(
+      `fidelity ${Number(fidelity.toPrecision(6))}`,
+    );
   });
 
   it('stops phases at the limits of the chip and says so', async () => {

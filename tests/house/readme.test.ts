@@ -7,6 +7,7 @@ import {
   mkdtempSync,
   readFileSync,
   rmSync,
+  statSync,
   symlinkSync,
   writeFileSync,
 } from 'node:fs';
@@ -71,6 +72,10 @@ describe('every command of the README', () => {
     const { status, stderr } = run(line);
     expect(status, stderr).toBe(0);
   });
+});
+
+it('the built command can be run as it is, as npm link has it', () => {
+  expect(statSync(join(ROOT, 'dist/cli/main.js')).mode & 0o111).toBe(0o111);
 });
 
 it('npm start leaves table, report and figure, again and again; the figure is the one in the README', () => {

@@ -84,6 +84,11 @@ describe('reading back', () => {
     expect(readPhaseTable(encode(`\ufeff${csv.replaceAll('\n', '\r\n')}`)).rows).toEqual(rows);
     expect(readPhaseTable(encode(csv.replaceAll(',', ';'))).rows).toEqual(rows);
     expect(readPhaseTable(encode(csv.replaceAll(/[^,\n]+/g, '"$&"'))).rows).toEqual(rows);
+    // Columns in another order, and decimal commas where fields are parted by semicolons.
+    const turned = csv.replace(/^.*$/gm, (line) => line.split(',').reverse().join(','));
+    expect(readPhaseTable(encode(turned)).rows).toEqual(rows);
+    const european = csv.replaceAll(',', ';').replaceAll('.', ',');
+    expect(readPhaseTable(encode(european)).rows).toEqual(rows);
     const [header, ...lines] = csv.trimEnd().split('\n');
     const { chip } = chipFromDocument({ modes: 3 });
     const shuffled = readPhaseTable(encode([header, ...lines.reverse()].join('\n')));
