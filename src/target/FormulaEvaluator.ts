@@ -192,7 +192,7 @@ export class FormulaEvaluator {
       const message = cause instanceof Error ? cause.message : String(cause);
       throw new InputError(
         'target/argument',
-        `${name}: ${cut(message.replace(/ To call it elementwise.*$/, ''), 160)}`,
+        `${name}: ${cut(message.replace(/ To call it elementwise.*$| \(try increasing .*$/, ''), 160)}`,
         'Check the number, the kind and the sizes of its arguments; of a matrix, e^A is expm(A).',
         {},
         { cause },
