@@ -1,5 +1,5 @@
 import { spawnSync } from 'node:child_process';
-import { existsSync, mkdirSync, mkdtempSync, readFileSync, rmSync, writeFileSync } from 'node:fs';
+import { existsSync, mkdirSync, mkdtempSync, readFileSync, renameSync, rmSync, writeFileSync } from 'node:fs';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { fileURLToPath } from 'node:url';
@@ -70,6 +70,22 @@ describe('the package', () => {
     expect(existsSync(join(place, 'out/phases-dft-3/mesh.svg'))).toBe(true);
     // A formula that needs the formula library, which is loaded late.
     expect(run(command, ['target', 'kron(dft(2), identity(2))'], place)).toContain('4 x 4');
+  });
+
+  it('starts without the formula library for help, calls with numbers and matrix files', () => {
+    const command = join(place, 'node_modules/.bin/phasewright');
+    const [library, away] = [join(place, 'node_modules/mathjs'), join(place, 'mathjs-away')];
+    renameSync(library, away);
+    try {
+      expect(run(command, ['--help'], place)).toContain('phases');
+      expect(run(command, ['target', 'direct(dft(2), haar(2, 1))'], place)).toContain('4 x 4');
+      const target = join(place, 'node_modules/phasewright/meshes/beacon-6.csv');
+      expect(run(command, ['target', target, '--to', 'beacon.npy'], place)).toContain('6 x 6');
+      expect(run(command, ['phases', 'beacon.npy', '--out', 'npy'], place)).toContain('fidelity');
+      expect(() => run(command, ['target', 'dft(2) * dft(2)'], place)).toThrow();
+    } finally {
+      renameSync(away, library);
+    }
   });
 
   it('is imported as a library, by its contents page alone', () => {
