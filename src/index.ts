@@ -76,7 +76,7 @@ export { runTrials } from './tolerance/runTrials.js';
 export type { Threshold } from './tolerance/thresholds.js';
 export { columnOf, countPassed, judgedFigures } from './tolerance/thresholds.js';
 export type { ToleranceEstimate, ToleranceSearch, YieldCount } from './tolerance/findTolerance.js';
-export { findTolerance } from './tolerance/findTolerance.js';
+export { findFewestBits, findTolerance } from './tolerance/findTolerance.js';
 export type { InfidelityTheory } from './tolerance/smallErrorTheory.js';
 export { infidelityTheory, toleranceTheory } from './tolerance/smallErrorTheory.js';
 

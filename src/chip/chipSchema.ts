@@ -128,7 +128,9 @@ export const chipFileSchema = z
           .min(0)
           .max(1e6)
           .exactOptional()
-          .describe('Cells over which the correlation of local errors falls to 1/e; 0 for none.'),
+          .describe(
+            'L in cells: local errors are correlated by exp(-(columns apart + ports apart / 2) / L); 0 for none.',
+          ),
         phaseSigma: spread.exactOptional().describe('Standard deviation of every phase, in radians.'),
         bits: z
           .int()
@@ -141,7 +143,7 @@ export const chipFileSchema = z
           .min(0)
           .max(100)
           .exactOptional()
-          .describe('Standard deviation of each splitter loss in dB.'),
+          .describe('Standard deviation of each splitter loss in dB; losses stay at or above 0.'),
         distribution: z.enum(ERROR_DISTRIBUTIONS).exactOptional().describe('Of all errors; default normal.'),
       })
       .exactOptional()

@@ -5,6 +5,11 @@ import { matrixFileKind } from '../target/MatrixFileKind.js';
 import { counted } from './messages.js';
 import { shownMerit } from './reportParts.js';
 
+/** A target's source as it stands in a figure: the folders of somebody's machine have no place there. */
+export function shownSource(source: string): string {
+  return matrixFileKind(source) === undefined ? source : basename(source);
+}
+
 /** The caption of a mesh figure: target, layout and fidelity. */
 export function captionLines(chip: Chip, targetSource: string | null, merit: Merit | null): string[] {
   const { layout, mirror, modes, cells, columns } = chip.mesh;
@@ -12,11 +17,7 @@ export function captionLines(chip: Chip, targetSource: string | null, merit: Mer
   const lines = [
     `${layout} mesh${mirrored}: ${counted(modes, 'port')}, ${counted(cells, 'cell')} in ${counted(columns, 'column')}`,
   ];
-  if (targetSource !== null) {
-    // The folders of somebody's machine have no place in a figure.
-    const isFile = matrixFileKind(targetSource) !== undefined;
-    lines.unshift(`target: ${isFile ? basename(targetSource) : targetSource}`);
-  }
+  if (targetSource !== null) lines.unshift(`target: ${shownSource(targetSource)}`);
   if (merit !== null) {
     lines.push(
       chip.portShifters

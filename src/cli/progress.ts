@@ -2,7 +2,8 @@ import type { Console } from './console.js';
 
 /** A line on a terminal that says how far a run is. */
 export interface Progress {
-  advance(by: number): void;
+  /** So many trials more are done; `known` when they were taken from disk and tell nothing of the rate. */
+  advance(by: number, known: boolean): void;
   end(): void;
 }
 
@@ -17,14 +18,16 @@ export function createProgress(console: Console | undefined, total: number): Pro
     return { advance: () => undefined, end: () => undefined };
   const started = performance.now();
   let done = 0;
+  let fresh = 0;
   let shown = -Infinity;
   return {
-    advance: (by) => {
+    advance: (by, known) => {
       done += by;
+      if (!known) fresh += by;
       const now = performance.now();
-      if (now - shown < BETWEEN_LINES) return;
+      if (fresh === 0 || now - shown < BETWEEN_LINES) return;
       shown = now;
-      const rate = (1000 * done) / (now - started);
+      const rate = (1000 * fresh) / (now - started);
       const left = Math.ceil((total - done) / rate);
       const percent = Math.floor((100 * done) / total);
       process.stderr.write(`\r\u001b[K${percent} %  ${Math.round(rate)} trials/s  ${left} s left`);

@@ -37,7 +37,7 @@ export async function replayTrial(
   const { chip } = readChip;
   const { target, settings } = sampled;
   const merit = figuresOfMerit(target, simulate(chip, settings), freePorts(chip));
-  const thresholds = thresholdsOf(options);
+  const thresholds = thresholdsOf(options, scenario.readChip.chip);
   const judged = judge(thresholds, merit);
   const rows = phaseRows(chip, settings);
   const csv = formatPhaseCsv(rows);

@@ -70,11 +70,12 @@ export async function runPlans(run: PlanRun): Promise<PlanOutcome> {
       rows[plan]!.set(chunk.rows, first * columns);
       done[plan] = first + count;
       clamped[plan]! += chunk.clamped;
-      if (store?.has(number) !== true) {
+      const known = store?.has(number) === true;
+      if (!known) {
         fresh += count;
         await store?.save({ number, firstTrial: first + 1, rows: chunk.rows, counters: [chunk.clamped] });
       }
-      progress.advance(count);
+      progress.advance(count, known);
       return run.enough?.(resultsOf(plan)) === true ? 'stop' : undefined;
     },
   };
@@ -87,8 +88,8 @@ export async function runPlans(run: PlanRun): Promise<PlanOutcome> {
   };
 }
 
-/** All judged figures are held in memory until they are written: two gigabytes of them are enough. */
-const MOST_VALUES = 2 ** 28;
+/** All judged figures are held in memory until they are written, in all about 60 bytes each: two gigabytes are enough. */
+const MOST_VALUES = 2 ** 25;
 
 function requireRoom(plans: readonly TrialPlan[], trials: number): void {
   const values = plans.length * trials * plans[0]!.figures.length;

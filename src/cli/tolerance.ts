@@ -10,12 +10,14 @@ import { clopperPearson } from '../statistics/binomialInterval.js';
 import { normalQuantile } from '../statistics/normalDistribution.js';
 import type { ErrorSource } from '../tolerance/errorSources.js';
 import { ERROR_SOURCES } from '../tolerance/errorSources.js';
-import { findTolerance } from '../tolerance/findTolerance.js';
+import type { YieldCount } from '../tolerance/findTolerance.js';
+import { findFewestBits, findTolerance } from '../tolerance/findTolerance.js';
 import { toleranceTheory } from '../tolerance/smallErrorTheory.js';
 import { countPassed, judgedFigures } from '../tolerance/thresholds.js';
 import type { ChipOptions, OutputOptions, TargetOptions } from './commandOptions.js';
 import { addChipOptions, addOutputOptions, addTargetOptions } from './commandOptions.js';
 import { createConsole } from './console.js';
+import { shownSource } from './figureText.js';
 import { finish } from './finish.js';
 import { shortNumber } from './messages.js';
 import { reportHead } from './reportParts.js';
@@ -29,7 +31,7 @@ import {
   tellMissingPortShifters,
   thresholdsOf,
 } from './trialOptions.js';
-import { loadScenario, planAt } from './trialScenario.js';
+import { infidelityWithoutErrors, loadScenario, planAt } from './trialScenario.js';
 import { QUANTITY_LABELS } from './yieldSweep.js';
 import { percent, scenarioBlocks, settledOptions, thresholdWords, yieldFolder } from './yieldParts.js';
 
@@ -38,7 +40,7 @@ interface ToleranceOptions extends OutputOptions, ChipOptions, TargetOptions, Tr
   readonly yield: number;
 }
 
-/** Sources whose growth makes chips worse, with a value to begin at and the largest that makes sense. */
+/** Sources whose growth makes chips worse, or better for bits, with a value to begin at and the largest that makes sense. */
 const SEARCHED: Partial<Record<ErrorSource, readonly [start: number, most: number]>> = {
   sigma: [0.01, 0.5],
   sigmaAngle: [0.01, 0.8],
@@ -46,6 +48,8 @@ const SEARCHED: Partial<Record<ErrorSource, readonly [start: number, most: numbe
   bias: [0.01, 0.5],
   phaseSigma: [0.02, 3],
   lossSigmaDb: [0.05, 20],
+  pairCorrelation: [0.1, 1],
+  bits: [1, 24],
 };
 
 /** Adds the command `tolerance TARGET`. */
@@ -55,7 +59,8 @@ export function addToleranceCommand(parent: Command, setExitCode: (code: number)
     .argument('<target>', 'matrix file, formula, or haar(8) for a new random target in each trial')
     .summary('find the error that a design can stand')
     .description(
-      'Find the largest value of an error source for which the yield still holds, other sources as the chip file has them.\n' +
+      'Find the largest value of an error source for which the yield still holds (for bits the fewest), other sources as\n' +
+        'the chip file has them.\n' +
         'The same random chips are used at every value; the interval says what the sampling leaves open.',
     )
     .option('--source <name>', `the error source: ${Object.keys(SEARCHED).join(', ')} (default: sigma)`)
@@ -81,7 +86,7 @@ async function runTolerance(argument: string, options: ToleranceOptions): Promis
   const console = createConsole(options);
   const source = searchedSource(options.source ?? 'sigma');
   const scenario = await loadScenario(argument, options);
-  const thresholds = thresholdsOf(options);
+  const thresholds = thresholdsOf(options, scenario.readChip.chip);
   tellMissingPortShifters(console, scenario.readChip.chip, thresholds);
   const figures = judgedFigures(thresholds);
   const errors = { ...processOf(scenario.readChip.chip.process, options, source), [source]: 0 };
@@ -100,28 +105,30 @@ async function runTolerance(argument: string, options: ToleranceOptions): Promis
   const planFor = (value: number): ReturnType<typeof planAt> =>
     planAt(scenario, errors, settled, source, value);
   const [start, most] = SEARCHED[source]!;
-  const { value: found } = await withInterrupt((signal) =>
-    findTolerance({
-      yieldWanted: options.yield,
-      confidence: options.confidence,
-      start,
-      most,
-      count: async (value) => {
-        const plan = await planFor(value);
-        const outcome = await runPlans({ plans: [plan], trials: options.trials, workers, signal, console });
-        signal.throwIfAborted();
-        const { rows, trials } = outcome.results[0]!;
-        return { passed: countPassed(rows, figures, thresholds), trials };
-      },
-    }),
-  );
+  const { value: found } = await withInterrupt((signal) => {
+    const count = async (value: number): Promise<YieldCount> => {
+      const plan = await planFor(value);
+      const outcome = await runPlans({ plans: [plan], trials: options.trials, workers, signal, console });
+      signal.throwIfAborted();
+      const { rows, trials } = outcome.results[0]!;
+      return { passed: countPassed(rows, figures, thresholds), trials };
+    };
+    const search = { yieldWanted: options.yield, confidence: options.confidence, start, most, count };
+    return source === 'bits' ? findFewestBits(search) : findTolerance(search);
+  });
   if (found === undefined) {
     console.warning('interrupted before the tolerance was found');
     return INTERRUPTED;
   }
   const onlyFidelity = thresholds.length === 1 && thresholds[0]!.key === 'fidelity';
   const theory = onlyFidelity
-    ? toleranceTheory(await planFor(start), source, thresholds[0]!.limit, normalQuantile(options.yield))
+    ? toleranceTheory(
+        await planFor(start),
+        source,
+        thresholds[0]!.limit,
+        normalQuantile(options.yield),
+        infidelityWithoutErrors(scenario),
+      )
     : null;
   const points = found.tried.map(({ value, passed, trials }) => ({
     value,
@@ -140,8 +147,8 @@ async function runTolerance(argument: string, options: ToleranceOptions): Promis
       logX: false,
       title: scenario.readChip.chip.name,
       captionLines: [
-        `target: ${scenario.source}; ${options.trials} chips at each value; retuning: ${options.retune}`,
-        `a yield of ${percent(options.yield)} holds up to ${source} = ${bounded(found.value, most)}`,
+        `target: ${shownSource(scenario.source)}; ${options.trials} chips at each value; retuning: ${options.retune}`,
+        `a yield of ${percent(options.yield)} holds ${source === 'bits' ? 'from' : 'up to'} ${source} = ${bounded(found.value, most)}`,
       ],
     },
   );
@@ -182,7 +189,7 @@ async function runTolerance(argument: string, options: ToleranceOptions): Promis
     show: () => {
       console.result(
         `${printableText(scenario.source)} on ${printableText(scenario.readChip.chip.name)}: a yield of ${percent(options.yield)} ` +
-          `with ${thresholds.map(thresholdWords).join(' and ')} holds up to\n`,
+          `with ${thresholds.map(thresholdWords).join(' and ')} holds ${source === 'bits' ? 'from' : 'up to'}\n`,
       );
       console.result(
         textTable(

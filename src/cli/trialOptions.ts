@@ -6,7 +6,13 @@ import { nearestName } from '../errors/nearestName.js';
 import type { Merit } from '../merit/merit.js';
 import { isUpperLimit, MERIT_KEYS } from '../merit/merit.js';
 import type { ErrorSource } from '../tolerance/errorSources.js';
-import { errorSource, hasErrors, requireConsistent, withSource } from '../tolerance/errorSources.js';
+import {
+  ERROR_SOURCES,
+  errorSource,
+  hasErrors,
+  requireConsistent,
+  withSource,
+} from '../tolerance/errorSources.js';
 import type { Threshold } from '../tolerance/thresholds.js';
 import type { Console } from './console.js';
 import type { Retuning } from '../tolerance/TrialPlan.js';
@@ -33,7 +39,7 @@ export function addTrialOptions(command: Command, usualTrials: number): Command 
     .option('--trials <number>', 'chips to sample', wholeNumberFor('--trials', 1, MOST_TRIALS), usualTrials)
     .option(
       '--threshold <figure=limit>',
-      'what makes a chip good; several must all hold (default: fidelity=0.99)',
+      'what makes a chip good; several must all hold (default: fidelity=0.99, portPhaseFreeFidelity=0.99 without port shifters)',
       parseThreshold,
     )
     .option('--confidence <share>', 'confidence of all intervals', parseShare('--confidence'), 0.95)
@@ -64,13 +70,12 @@ export function addTrialOptions(command: Command, usualTrials: number): Command 
     );
 }
 
-/** The thresholds in force. */
-export function thresholdsOf({
-  threshold,
-}: {
-  readonly threshold?: readonly Threshold[];
-}): readonly Threshold[] {
-  return threshold ?? [{ key: 'fidelity', limit: 0.99 }];
+/** The thresholds in force; by default 0.99 of the fidelity that means something for the chip. */
+export function thresholdsOf(
+  { threshold }: { readonly threshold?: readonly Threshold[] },
+  chip: Chip,
+): readonly Threshold[] {
+  return threshold ?? [{ key: chip.portShifters ? 'fidelity' : 'portPhaseFreeFidelity', limit: 0.99 }];
 }
 
 /** Says so when thresholds look at phases that the chip cannot set. */
@@ -107,7 +112,8 @@ export function processOf(
   let errors = inFile;
   if (sigma !== undefined) errors = withSource(errors, 'sigma', sigma);
   for (const [source, value] of error) errors = withSource(errors, source, value);
-  if (swept === undefined) {
+  const sweptIsSource = ERROR_SOURCES.some((source) => source === swept);
+  if (!sweptIsSource) {
     if (!hasErrors(errors)) {
       throw new InputError(
         'process/none',

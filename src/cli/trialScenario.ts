@@ -2,6 +2,8 @@ import type { ProcessErrors } from '../chip/Chip.js';
 import type { ChipFile } from '../chip/chipSchema.js';
 import type { ReadChip } from '../chip/readChip.js';
 import { InputError } from '../errors/InputError.js';
+import type { ComplexMatrix } from '../matrix/ComplexMatrix.js';
+import { haarUnitary } from '../matrix/haar.js';
 import type { Merit } from '../merit/merit.js';
 import { simulate } from '../simulate/simulate.js';
 import { programChip } from '../program/programChip.js';
@@ -126,14 +128,25 @@ export async function planAt(
   return planOf(scenario, changed, settled);
 }
 
+/** Targets on which a chip is tried that is to do any target. */
+const HAAR_TRIED = 8;
+const FLAWLESS = 1e-9;
+
 /**
- * 1 - F of the chip as it stands, without errors; 0 for Haar-random targets on a chip without flaws is taken
- * as it is.
+ * 1 - F of the chip as it stands, without errors. For Haar-random targets 0 on a chip without flaws, and null on any other one, where it
+ * is different from target to target.
  */
-export function infidelityWithoutErrors({ readChip: { chip }, target }: Scenario): number {
-  if (target === null) return 0;
-  const { settings } = programChip(chip, target.matrix).program;
-  return Math.max(0, 1 - figuresOfMerit(target.matrix, simulate(chip, settings)).fidelity);
+export function infidelityWithoutErrors({ readChip: { chip }, target }: Scenario): number | null {
+  const infidelity = (matrix: ComplexMatrix): number => {
+    const { settings } = programChip(chip, matrix).program;
+    return Math.max(0, 1 - figuresOfMerit(matrix, simulate(chip, settings)).fidelity);
+  };
+  if (target !== null) return infidelity(target.matrix);
+  if (!chip.couplingRatios.every((ratio) => ratio === 0.5)) return null;
+  for (let seed = 1; seed <= HAAR_TRIED; seed++) {
+    if (!(infidelity(haarUnitary(chip.mesh.modes, seed)) < FLAWLESS)) return null;
+  }
+  return 0;
 }
 
 async function changedChip(file: ChipFile, quantity: DesignQuantity, value: number): Promise<ReadChip> {

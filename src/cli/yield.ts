@@ -15,6 +15,7 @@ import type { TrialPlan } from '../tolerance/TrialPlan.js';
 import { addChipOptions, addOutputOptions, addTargetOptions } from './commandOptions.js';
 import type { Console } from './console.js';
 import { createConsole } from './console.js';
+import { shownSource } from './figureText.js';
 import { finish } from './finish.js';
 import { counted, shortNumber } from './messages.js';
 import { describedRun, runKept } from './keptRun.js';
@@ -91,7 +92,7 @@ async function runYield(argument: string, options: YieldOptions): Promise<number
   const scenario = await loadScenario(argument, options);
   if (options.budget === true) return runBudget(scenario, options);
   const errors = processOf(scenario.readChip.chip.process, options);
-  const thresholds = thresholdsOf(options);
+  const thresholds = thresholdsOf(options, scenario.readChip.chip);
   const figures = judgedFigures(thresholds);
   const plan = planOf(scenario, errors, { retune: options.retune, seed: options.seed, figures });
   if (options.trial !== undefined) return replayTrial(scenario, plan, options.trial, options);
@@ -101,9 +102,12 @@ async function runYield(argument: string, options: YieldOptions): Promise<number
   const folder = options.out ?? yieldFolder(scenario);
   const identity = { ...settledOptions(options), errors, thresholds };
   const runId = runIdentity('yield', scenario.inputs, identity);
+  let [judged, passed] = [0, 0];
   const enough = (results: PlanResults): boolean => {
     if (options.within === undefined) return false;
-    const passed = countPassed(results.rows, figures, thresholds);
+    // Only what has come since the last chunk, or long runs would spend their time counting.
+    passed += countPassed(results.rows.subarray(judged * figures.length), figures, thresholds);
+    judged = results.trials;
     const { low, high } = clopperPearson(passed, results.trials, options.confidence);
     return high - low <= options.within;
   };
@@ -162,6 +166,7 @@ async function reportYield(run: YieldRun): Promise<void> {
   const results = outcome.results[0]!;
   const share = yieldBlock(results, figures, thresholds, options.confidence);
   const columns = figures.map((_, k) => columnOf(results.rows, figures.length, k));
+  columns.forEach((column, k) => requireLight(column, figures[k]!));
   const summaries = figures.map((key, k) =>
     summarise(columns[k]!, {
       confidence: options.confidence,
@@ -194,7 +199,7 @@ async function reportYield(run: YieldRun): Promise<void> {
       retune: plan.retune,
       yield: { thresholds, ...share },
       ...Object.fromEntries(figures.map((key, k) => [key, summaries[k]])),
-      theory: { meanInfidelity: theory?.meanInfidelity ?? null },
+      theory: { meanInfidelity: theory?.holds === true ? theory.meanInfidelity : null },
       columns: figures,
       seed: plan.seed,
       clamped: results.clamped,
@@ -225,6 +230,17 @@ function tellClamped(console: Console, clamped: number): void {
   );
 }
 
+/** A chip through which no light comes has no figures of merit that could be summed up. */
+function requireLight(column: Float64Array, key: keyof Merit): void {
+  const dark = column.findIndex((value) => !Number.isFinite(value));
+  if (dark < 0) return;
+  throw new InputError(
+    'yield/dark',
+    `trial ${dark + 1} has no ${MERIT_NAMES[key]}: no light comes through the chip`,
+    'Look at the losses of the chip, or judge other figures.',
+  );
+}
+
 function figureOptions(
   { source, readChip: { chip } }: Scenario,
   thresholds: readonly Threshold[],
@@ -244,7 +260,7 @@ function figureOptions(
     thresholdIsUpperLimit: isUpperLimit(key),
     title: chip.name,
     captionLines: [
-      `target: ${source}; ${chip.mesh.layout} mesh of ${counted(chip.mesh.modes, 'port')}`,
+      `target: ${shownSource(source)}; ${chip.mesh.layout} mesh of ${counted(chip.mesh.modes, 'port')}`,
       ...(rest.length > 0 ? [`judged too, not shown: ${rest.join(', ')}`] : []),
       ...(soFar === null ? [] : [`the first ${soFar} trials`]),
     ],
@@ -286,6 +302,12 @@ function tellTheory(
   theory: ReturnType<typeof infidelityTheory>,
 ): void {
   if (theory === null) return;
+  if (!theory.holds) {
+    console.warning(
+      'the errors are too large for the small-error theory, so none stands beside the simulation',
+    );
+    return;
+  }
   const found = 1 - mean;
   const expected = theory.meanInfidelity;
   console.result(`mean infidelity ${shortNumber(found)}, small-error theory ${shortNumber(expected)}`);

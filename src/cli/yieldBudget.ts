@@ -5,6 +5,7 @@ import { summarise } from '../statistics/summary.js';
 import { aloneWith, COSTLY_SOURCES, without } from '../tolerance/errorSources.js';
 import { columnOf, judgedFigures } from '../tolerance/thresholds.js';
 import { createConsole } from './console.js';
+import { shownSource } from './figureText.js';
 import { finish } from './finish.js';
 import { describedRun, runKept } from './keptRun.js';
 import { shortNumber } from './messages.js';
@@ -21,7 +22,7 @@ import { percent, scenarioBlocks, settledOptions, yieldBlock, yieldFolder } from
 export async function runBudget(scenario: Scenario, options: YieldOptions): Promise<number> {
   const console = createConsole(options);
   const errors = processOf(scenario.readChip.chip.process, options);
-  const thresholds = thresholdsOf(options);
+  const thresholds = thresholdsOf(options, scenario.readChip.chip);
   const figures = judgedFigures(thresholds);
   const settled = { retune: options.retune, seed: options.seed, figures };
   const sources = COSTLY_SOURCES.filter((source) => errors[source] !== 0);
@@ -62,7 +63,7 @@ export async function runBudget(scenario: Scenario, options: YieldOptions): Prom
       .sort((a, b) => b.alone.infidelity.mean - a.alone.infidelity.mean);
     const costs: Budget = { together: together!, withoutErrors: withoutErrors!, budget };
     const { drawBudget } = await import('../figure/drawBudget.js');
-    const caption = `target: ${scenario.source}; ${options.trials} chips each; retuning: ${options.retune}`;
+    const caption = `target: ${shownSource(scenario.source)}; ${options.trials} chips each; retuning: ${options.retune}`;
     const svg = drawBudget(
       budget.map(({ source, alone, without: rest }) => ({
         source,

@@ -6,6 +6,7 @@ import { summarise } from '../statistics/summary.js';
 import { columnOf, judgedFigures } from '../tolerance/thresholds.js';
 import type { TrialPlan } from '../tolerance/TrialPlan.js';
 import { createConsole } from './console.js';
+import { shownSource } from './figureText.js';
 import { finish } from './finish.js';
 import { describedRun, runKept } from './keptRun.js';
 import { reportHead } from './reportParts.js';
@@ -52,7 +53,7 @@ export async function runSweep(argument: string, options: YieldOptions): Promise
   const console = createConsole(options);
   const { quantity, values } = parseSweep(options.sweep!);
   const scenario = await loadScenario(argument, options, quantity === 'modes' ? values[0] : undefined);
-  const thresholds = thresholdsOf(options);
+  const thresholds = thresholdsOf(options, scenario.readChip.chip);
   tellMissingPortShifters(console, scenario.readChip.chip, thresholds);
   const figures = judgedFigures(thresholds);
   const errors = processOf(scenario.readChip.chip.process, options, quantity);
@@ -116,8 +117,11 @@ export async function runSweep(argument: string, options: YieldOptions): Promise
         confidence: options.confidence,
         title: quantity === 'modes' ? `${chip.mesh.layout} meshes` : chip.name,
         captionLines: [
-          `target: ${scenario.source}; ${options.trials} chips at each point; retuning: ${options.retune}`,
+          `target: ${shownSource(scenario.source)}; ${options.trials} chips at each point; retuning: ${options.retune}`,
+          ...(outcome.interrupted ? [`interrupted: ${points.at(-1)!.trials} chips at the last point`] : []),
         ],
+        // The points of a sweep are evenly spaced, and so they shall stand.
+        logX: false,
       },
     );
     await finish(console, options, {

@@ -7,7 +7,12 @@ export interface InfidelityTheory {
   readonly meanInfidelity: number;
   /** Size of what the theory leaves out. */
   readonly uncertainty: number;
+  /** Whether the errors are small enough for the theory to mean something: what it leaves out is small beside what it says. */
+  readonly holds: boolean;
 }
+
+/** Share of the mean infidelity up to which the uncertainty may go. */
+const SMALL_ERRORS = 0.3;
 
 /**
  * Mean 1 - F of chips with small independent splitter errors, or null when the theory does not hold: other
@@ -18,10 +23,15 @@ export interface InfidelityTheory {
  * c L^2 is uncertain. An error e of the ratio k is one of e / (2 sqrt(k (1 - k))) of the angle, and, since
  * that is no straight line, a little more. With cells retuned, for splitters of nominally 1/2, the mean
  * square of the matrix error is s^4 (2/3 (N^2 - 1) + 4 (N - 1)/N) (check-values section 2).
- * @param infidelityWithoutErrors 1 - F of the chip itself
+ * @param infidelityWithoutErrors 1 - F of the chip itself; null where it is not one number
  */
-export function infidelityTheory(plan: TrialPlan, infidelityWithoutErrors: number): InfidelityTheory | null {
+export function infidelityTheory(
+  plan: TrialPlan,
+  infidelityWithoutErrors: number | null,
+): InfidelityTheory | null {
   const { chip, errors, retune, target } = plan;
+  // Without port shifters the fidelity is a matter of chance.
+  if (infidelityWithoutErrors === null || !chip.portShifters) return null;
   const others = errors.bias !== 0 || errors.biasSigma > 0 || errors.phaseSigma > 0 || errors.bits > 0;
   const correlated = errors.pairCorrelation !== 0 || errors.correlationLength > 0;
   if (others || correlated || errors.lossSigmaDb > 0 || !(errors.sigma > 0 || errors.sigmaAngle > 0))
@@ -35,18 +45,19 @@ export function infidelityTheory(plan: TrialPlan, infidelityWithoutErrors: numbe
     const variance = leading / (2 * (modes - 1));
     const corrected = variance ** 2 * ((2 / 3) * (modes ** 2 - 1) + (4 * (modes - 1)) / modes);
     // The distribution has a heavy tail and the source allows 15 %.
-    return { meanInfidelity: total(infidelityWithoutErrors, corrected), uncertainty: 0.15 * corrected };
+    const uncertainty = 0.15 * corrected;
+    return { meanInfidelity: total(infidelityWithoutErrors, corrected), uncertainty, holds: corrected < 1 };
   }
   const second = nextOrder(layout, modes) * leading ** 2;
   const bent = bentInfidelity(chip, errors);
-  return {
-    meanInfidelity: total(infidelityWithoutErrors, leading - second + bent.infidelity),
-    uncertainty:
-      leading ** 3 +
-      (target === 'haar' ? 0.1 : 1) * second +
-      2 * infidelityWithoutErrors * leading +
-      bent.uncertainty,
-  };
+  const added = leading - second + bent.infidelity;
+  const uncertainty =
+    leading ** 3 +
+    (target === 'haar' ? 0.1 : 1) * second +
+    2 * infidelityWithoutErrors * leading +
+    bent.uncertainty;
+  const holds = added > 0 && added < 1 && uncertainty <= SMALL_ERRORS * added;
+  return { meanInfidelity: total(infidelityWithoutErrors, added), uncertainty, holds };
 }
 
 function total(without: number, added: number): number {
@@ -132,19 +143,23 @@ const CHIP_SCATTER = 2.2;
  * the fidelity: the mean infidelity of a chip, with its scatter from chip to chip taken as normal, stays
  * below 1 - limit. Null for other sources, retuned chips or other figures.
  * @param quantile the normal quantile of the yield wanted
+ * @param infidelityWithoutErrors 1 - F of the chip itself; null where it is not one number
  */
 export function toleranceTheory(
   plan: TrialPlan,
   source: string,
   fidelityLimit: number,
   quantile: number,
+  infidelityWithoutErrors: number | null,
 ): number | null {
   const { chip, errors, retune } = plan;
+  if (infidelityWithoutErrors === null) return null;
   if (retune !== 'none' || (source !== 'sigma' && source !== 'sigmaAngle') || chip.mesh.modes < 2)
     return null;
   const unit = leadingInfidelity(chip, { ...errors, sigma: 0, sigmaAngle: 0, [source]: 1 });
   const others = infidelityTheory({ ...plan, errors: { ...errors, [source]: 1e-9 } }, 0) === null;
-  if (unit === null || others || !(fidelityLimit < 1)) return null;
+  const allowed = 1 - fidelityLimit - infidelityWithoutErrors;
+  if (unit === null || others || !(allowed > 0)) return null;
   const factor = 1 + (CHIP_SCATTER / chip.mesh.modes) * quantile;
-  return factor > 0 ? Math.sqrt((1 - fidelityLimit) / (unit * factor)) : null;
+  return factor > 0 ? Math.sqrt(allowed / (unit * factor)) : null;
 }

@@ -2,7 +2,7 @@ import { describe, expect, it } from 'vitest';
 import { randomStream } from '../../src/random/RandomStream.js';
 import { clopperPearson } from '../../src/statistics/binomialInterval.js';
 import type { ToleranceEstimate, ToleranceSearch, YieldCount } from '../../src/tolerance/findTolerance.js';
-import { findTolerance } from '../../src/tolerance/findTolerance.js';
+import { findFewestBits, findTolerance } from '../../src/tolerance/findTolerance.js';
 
 const USUAL = { yieldWanted: 0.9, confidence: 0.95, start: 0.02, most: 10 };
 
@@ -100,5 +100,38 @@ describe('the largest value for which a yield holds', () => {
     expect(covered / experiments).toBeGreaterThan(0.95 - 4 * Math.sqrt((0.95 * 0.05) / experiments));
     // Nor is it so wide that it never misses.
     expect(covered).toBeLessThan(experiments);
+  });
+});
+
+describe('the fewest bits with which a yield holds', () => {
+  /** Chips that are good from a number of bits of their own on. */
+  const search = (needed: readonly number[], most = 24): Promise<ToleranceEstimate> =>
+    findFewestBits({
+      yieldWanted: 0.9,
+      confidence: 0.95,
+      most,
+      count: (bits) =>
+        Promise.resolve({ passed: needed.filter((own) => own <= bits).length, trials: needed.length }),
+    });
+
+  it('are found wherever they lie, with an interval around them', async () => {
+    for (let bits = 1; bits <= 24; bits++) {
+      // 95 % of the chips need so many, the others one more.
+      const { value, low, high } = await search(
+        Array.from({ length: 2000 }, (_, k) => (k % 20 === 0 ? bits + 1 : bits)),
+      );
+      expect([low, value, high]).toEqual([bits, bits, bits]);
+    }
+  });
+
+  it('are uncertain where the share is near the yield that is wanted', async () => {
+    // 90.5 % of 200 chips: the interval by Clopper and Pearson reaches below 90 %.
+    const needed = Array.from({ length: 200 }, (_, k) => (k < 181 ? 6 : 9));
+    const { value, low, high } = await search(needed);
+    expect([low, value, high]).toEqual([6, 6, 9]);
+  });
+
+  it('are none where not even the most are enough', async () => {
+    expect((await search([30, 30, 30])).value).toBe(Infinity);
   });
 });

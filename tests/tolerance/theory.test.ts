@@ -167,7 +167,7 @@ describe('the closed-form tolerance', () => {
   it.each([4, 8, 16])('is a spread at which the yield is about what is wanted: N = %i', (modes) => {
     const plan = planFor(modes, {}, { target: 'haar' });
     for (const source of ['sigma', 'sigmaAngle'] as const) {
-      const value = toleranceTheory(plan, source, 0.99, quantile)!;
+      const value = toleranceTheory(plan, source, 0.99, quantile, 0)!;
       const trials = 64_000 / modes ** 2;
       const { rows } = runPlan({ ...plan, errors: { ...plan.errors, [source]: value } }, trials);
       const share = rows.filter((fidelity) => fidelity >= 0.99).length / trials;
@@ -177,19 +177,25 @@ describe('the closed-form tolerance', () => {
 
   it('is null for other sources, retuned chips, one port, and limits that cannot be', () => {
     const plan = planFor(4, {});
-    expect(toleranceTheory(plan, 'phaseSigma', 0.99, quantile)).toBeNull();
-    expect(toleranceTheory({ ...plan, retune: 'cell' }, 'sigma', 0.99, quantile)).toBeNull();
-    expect(toleranceTheory(planFor(1, {}), 'sigma', 0.99, quantile)).toBeNull();
-    expect(toleranceTheory(plan, 'sigma', 1, quantile)).toBeNull();
-    expect(toleranceTheory(plan, 'sigma', NaN, quantile)).toBeNull();
-    expect(toleranceTheory(planFor(4, { bits: 6 }), 'sigma', 0.99, quantile)).toBeNull();
+    expect(toleranceTheory(plan, 'phaseSigma', 0.99, quantile, 0)).toBeNull();
+    expect(toleranceTheory({ ...plan, retune: 'cell' }, 'sigma', 0.99, quantile, 0)).toBeNull();
+    expect(toleranceTheory(planFor(1, {}), 'sigma', 0.99, quantile, 0)).toBeNull();
+    expect(toleranceTheory(plan, 'sigma', 1, quantile, 0)).toBeNull();
+    expect(toleranceTheory(plan, 'sigma', NaN, quantile, 0)).toBeNull();
+    expect(toleranceTheory(planFor(4, { bits: 6 }), 'sigma', 0.99, quantile, 0)).toBeNull();
     expect(
       toleranceTheory(
         withRatios(plan, () => 1),
         'sigma',
         0.99,
         quantile,
+        0,
       ),
     ).toBeNull();
+    // A chip whose own flaws cost more than the limit allows, or differ from target to target.
+    expect(toleranceTheory(plan, 'sigma', 0.99, quantile, 0.02)).toBeNull();
+    expect(toleranceTheory(plan, 'sigma', 0.99, quantile, null)).toBeNull();
+    const half = toleranceTheory(plan, 'sigma', 0.99, quantile, 0.005)!;
+    expect(half).toBeCloseTo(toleranceTheory(plan, 'sigma', 0.995, quantile, 0)!, 12);
   });
 });
