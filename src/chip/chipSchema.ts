@@ -26,7 +26,7 @@ const range = z
 const name = z.string().min(1).max(200);
 
 /**
- * The chip file, as the project's design describes it. Only `modes` is required; unknown keys are refused.
+ * The chip file. Only `modes` is required; unknown keys are refused.
  */
 export const chipFileSchema = z
   .strictObject({
