@@ -30,6 +30,7 @@ export function createErrorDraw(
   const { chip, errors } = plan;
   const { modes, cells, columns } = chip.mesh;
   const atOutput = externalAtOutput(chip.style);
+  views.shift.fill(errors.bias);
 
   function fill(address: number, count: number, stream: number, first: number): void {
     kernels.seedTrials(memory.state, plan.seed % WORD, Math.floor(plan.seed / WORD), stream, first);
@@ -61,10 +62,11 @@ export function createErrorDraw(
 
   /** Draws the splitters of two trials, losses included. */
   function drawSplitters(first: number): void {
-    views.shift.fill(errors.bias);
     if (errors.biasSigma > 0) {
-      fill(memory.numbers, 2, STREAMS.dieBias, first);
-      for (const lane of ALL_LANES) views.shift[lane]! += errors.biasSigma * views.numbers[lane]!;
+      fill(memory.numbers, 1, STREAMS.dieBias, first);
+      for (const lane of ALL_LANES) {
+        views.shift[lane] = errors.bias + errors.biasSigma * views.numbers[lane]!;
+      }
     }
     if (errors.sigma > 0) fillLocalField(STREAMS.splitterRatios, first);
     else views.numbers.fill(0);
