@@ -146,9 +146,16 @@ async function runTolerance(argument: string, options: ToleranceOptions): Promis
       confidence: options.confidence,
       logX: false,
       title: scenario.readChip.chip.name,
+      ...(Number.isFinite(found.value)
+        ? {
+            mark: {
+              value: found.value,
+              text: `${percent(options.yield)} at ${shortNumber(found.value)} (${bounded(found.low, most)} to ${bounded(found.high, most)})`,
+            },
+          }
+        : {}),
       captionLines: [
         `target: ${shownSource(scenario.source)}; ${options.trials} chips at each value; retuning: ${options.retune}`,
-        `a yield of ${percent(options.yield)} holds ${source === 'bits' ? 'from' : 'up to'} ${source} = ${bounded(found.value, most)}`,
       ],
     },
   );

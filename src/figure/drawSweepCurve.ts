@@ -4,7 +4,7 @@ import type { CurveFigureOptions } from './figurePage.js';
 import { limitText, quantityText, shareWithInterval } from './numberText.js';
 import type { Axis, LabelRoom } from './plotAxis.js';
 import { linearAxis, logAxis } from './plotAxis.js';
-import type { PlotArea } from './plotFrame.js';
+import type { PlotArea, PlotMark } from './plotFrame.js';
 import { drawPlot, horizontalRoom, verticalRoom } from './plotFrame.js';
 import type { KeyEntry } from './plotKey.js';
 import { DASHES } from './plotKey.js';
@@ -31,6 +31,8 @@ export interface SweepCurveOptions extends CurveFigureOptions {
   readonly confidence?: number;
   /** Logarithmic axis. By default where all x are positive and span more than a decade. */
   readonly logX?: boolean;
+  /** A value of the quantity that is marked by a line, with words over it. */
+  readonly mark?: PlotMark;
   /** A curve to compare with: shares in [0, 1]. */
   readonly theory?: readonly { readonly x: number; readonly y: number }[];
 }
@@ -61,6 +63,7 @@ export function drawSweepCurve(points: readonly SweepPoint[], options: SweepCurv
       xAxis: (length) => sweepAxis(ordered, log, length, horizontalRoom),
       yAxis: (length) => linearAxis(0, 100, length, verticalRoom),
       key: keyOf(options, theory.length > 0),
+      mark: options.mark,
       draw: (group, area) => {
         drawBand(group, area, ordered);
         drawTheory(group, area, theory);
