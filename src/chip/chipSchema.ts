@@ -6,7 +6,7 @@ import { ERROR_DISTRIBUTIONS, EXTERNAL_GUIDES, INTERNAL_ARMS, SPLITTER_FORMS } f
 export const CHIP_FORMAT = 1;
 
 /** Ports that a chip may have; a mesh of 1024 ports has over a million shifters. */
-export const MAX_CHIP_MODES = 1024;
+const MAX_CHIP_MODES = 1024;
 
 const ratio = z
   .number()

@@ -12,7 +12,7 @@ export interface DescribedIssue {
 }
 
 /** A path as it is written in JavaScript and jq: keys with dots, places in a list (from 0) in brackets. */
-export function fieldPath(path: readonly PropertyKey[]): string {
+function fieldPath(path: readonly PropertyKey[]): string {
   return path.reduce<string>((text, key) => {
     if (typeof key === 'number') return `${text}[${key}]`;
     return text === '' ? String(key) : `${text}.${String(key)}`;

@@ -18,7 +18,7 @@ const absent = (): never => {
 
 /**
  * An instance whose trial kernels are plain TypeScript on a plain buffer: the same operations in the same
- * order as the compiled ones, hence the same bits, for tests and for where WebAssembly is not to be had. 25
+ * order as the compiled ones, hence the same bits, for tests and for pages without WebAssembly. 25
  * to 150 times slower.
  *
  * The kernel contract holds: addresses are multiples of 16 bytes, arrays do not overlap, and views from
