@@ -1,11 +1,10 @@
 import { Command, CommanderError } from 'commander';
-import { createColors } from 'picocolors';
 import { InputError } from '../errors/InputError.js';
 import { nearestName } from '../errors/nearestName.js';
 import { printableText } from '../figure/printableText.js';
 import { packageVersion } from '../files/version.js';
 import { addChipCommand } from './chip.js';
-import { withoutControls } from './console.js';
+import { errorColours, withoutControls } from './console.js';
 import { addFigureCommand } from './figure.js';
 import { addPhasesCommand } from './phases.js';
 import { addTargetCommand } from './target.js';
@@ -71,7 +70,7 @@ Exit codes: 0 done, 1 a --require was not met, 2 input or usage at fault, 3 inte
 function reportError(error: unknown, args: readonly string[], program: Command): number {
   if (error instanceof CommanderError && error.exitCode === 0) return EXIT.done;
   const { what, remedy, code } = inWords(error, args, program);
-  const colours = createColors(process.stderr.isTTY && !process.env['NO_COLOR']);
+  const colours = errorColours();
   process.stderr.write(`${colours.red('error')}: ${withoutControls(what)}\n${withoutControls(remedy)}\n`);
   if (args.includes('--debug') && error instanceof Error) process.stderr.write(`${error.stack ?? ''}\n`);
   return code;

@@ -18,9 +18,17 @@ export function withoutControls(line: string): string {
   return line.replace(/[\p{Cc}\p{Bidi_Control}\u2028\u2029]+/gu, ' ');
 }
 
+/**
+ * Colours for standard error: on a terminal, without NO_COLOR. The stream's isTTY is undefined where it is a pipe or
+ * a file, which picocolors would take for "decide yourself", and it would colour the logs of a CI server.
+ */
+export function errorColours(): ReturnType<typeof createColors> {
+  return createColors(Boolean(process.stderr.isTTY) && !process.env['NO_COLOR']);
+}
+
 /** With --json words give way to the report; with --quiet nothing but errors and the report is printed. */
 export function createConsole({ json, quiet }: OutputOptions): Console {
-  const colours = createColors(process.stderr.isTTY && !process.env['NO_COLOR']);
+  const colours = errorColours();
   const print = (stream: NodeJS.WriteStream, text: string, before = ''): void => {
     stream.write(`${before}${text.split('\n').map(withoutControls).join('\n')}\n`);
   };

@@ -197,12 +197,15 @@ describe.concurrent('the command as a whole', () => {
   it('colours errors on a terminal only, and not with NO_COLOR', async () => {
     const escape = '\u001b[';
     const terminal = { nodeArguments: ['--import', 'data:text/javascript,process.stderr.isTTY=true'] };
-    const [piped, shown, plain] = await Promise.all([
+    const [piped, onServer, shown, plain] = await Promise.all([
       runCommand(['phases', 'nope.csv']),
+      // What servers of continuous integration set makes no pipe a terminal.
+      runCommand(['phases', 'nope.csv'], { environment: { CI: 'true', FORCE_COLOR: '1' } }),
       runCommand(['phases', 'nope.csv'], terminal),
       runCommand(['phases', 'nope.csv'], { ...terminal, environment: { NO_COLOR: '1' } }),
     ]);
     expect(piped.stderr).not.toContain(escape);
+    expect(onServer.stderr).toBe(piped.stderr);
     expect(shown.stderr).toContain(escape);
     expect(plain.stderr).toBe(piped.stderr);
   });
