@@ -1,6 +1,8 @@
 import { KERNEL_MODULE } from './generated/kernelModule.js';
 
 const PAGE = 65536;
+/** Doubles that `solveCells` and `composeCells` need for the cells of a block, two trials. */
+export const BLOCK_SIZE = 16 * 16;
 /** Below this stand the constants of the compiled kernels. */
 const FIRST_FREE = 65536;
 
@@ -15,8 +17,8 @@ export interface Kernels {
   correlateGrid(grid: number, columns: number, rows: number, columnStep: number, rowStep: number): void;
   pickPlaces(out: number, stride: number, grid: number, places: number, count: number): void;
   correlatePairs(numbers: number, pairs: number, correlation: number): void;
-  drawSplitters(
-    out: number,
+  drawRatios(
+    ratios: number,
     count: number,
     nominal: number,
     numbers: number,
@@ -24,17 +26,18 @@ export interface Kernels {
     shift: number,
     clamped: number,
   ): void;
-  turnSplitters(splitters: number, count: number, numbers: number, sigma: number): void;
+  turnRatios(ratios: number, count: number, numbers: number, sigma: number): void;
   turnFactors(factors: number, stride: number, count: number, numbers: number, sigma: number): void;
   solveCells(
     cells: number,
     modes: number,
     upperPort: number,
-    splitters: number,
+    ratios: number,
     wanted: number,
     diagonal: number,
     diagonalAt: number,
     carried: number,
+    turns: number,
     arms: number,
     external: number,
     internalArm: number,
@@ -46,13 +49,14 @@ export interface Kernels {
   composeCells(
     cells: number,
     upperPort: number,
-    splitters: number,
+    ratios: number,
     arms: number,
     external: number,
     gain: number,
     modes: number,
     input: number,
     factors: number,
+    ways: number,
     coefficients: number,
     place: number,
     realSplitters: number,

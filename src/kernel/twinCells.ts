@@ -44,10 +44,13 @@ function splitArms(
   ];
 }
 
+/** Cells whose ways the compiled kernel finds before it goes on, and the doubles of one. */
+const BLOCK = 16;
+const WAY = 8 * LANES;
 const ALL_BITS = 2n ** 64n - 1n;
 
 /**
- * Twin of composeCells in assembly/propagate.ts: a cell as T = diag(g1, g2) [[1, u], [v, 1]] of what the
+ * Twin of composeCells in assembly/composeCells.ts: a cell as T = diag(g1, g2) [[1, u], [v, 1]] of what the
  * panels hold, columns exchanged where more light crosses than stays. Every field is a factor of its guide
  * times what the panels hold, so that g1, g2 go into the factors of the guides and only u, v act on the
  * panels.
@@ -56,13 +59,14 @@ export function twinCells(memory: () => TwinMemory): Pick<Kernels, 'composeCells
   const composeCells: Kernels['composeCells'] = (
     cells,
     upperPort,
-    splitters,
+    ratios,
     arms,
     external,
     gain,
     modes,
     input,
     factors,
+    ways,
     coefficients,
     place,
     realSplitters,
@@ -76,17 +80,23 @@ export function twinCells(memory: () => TwinMemory): Pick<Kernels, 'composeCells
     };
     for (let cell = 0; cell < cells; cell++) {
       for (let lane = 0; lane < LANES; lane++) {
-        const splitter = splitters / 8 + 8 * cell + lane;
-        const [cosFirst, sinFirst] = complexAt(splitter);
+        const [first, second] = complexAt(ratios / 8 + 4 * cell + lane);
         const amplitude = doubles[gain / 8 + LANES * cell + lane]!;
-        const [cosSecond, sinSecond] = complexAt(splitter + 4);
         const arm = arms / 8 + 8 * cell + lane;
         const [t11, t12, t21, t22] = splitArms(
-          [cosFirst, sinFirst, amplitude * cosSecond, amplitude * sinSecond],
+          [
+            Math.sqrt(1 - first),
+            Math.sqrt(first),
+            amplitude * Math.sqrt(1 - second),
+            amplitude * Math.sqrt(second),
+          ],
           complexAt(arm),
           complexAt(arm + 4),
           realSplitters !== 0,
         );
+        // What the compiled kernel keeps of the cells of a block.
+        const kept = ways / 8 + WAY * (cell % BLOCK) + lane;
+        [t11, t12, t21, t22].forEach((way, k) => writeAt(kept + 2 * LANES * k, way));
         const port = factors / 8 + 4 * integers[upperPort / 4 + cell]! + lane;
         const phase = complexAt(external / 8 + 4 * cell + lane);
         const f1 = place === 0 ? product(complexAt(port), phase) : complexAt(port);

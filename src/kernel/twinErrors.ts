@@ -3,12 +3,9 @@ import type { TwinMemory } from './twinMemory.js';
 import { LANES } from './twinMemory.js';
 import { twinCosine, twinSine } from './twinSine.js';
 
-/** Doubles of a splitter: cos a and sin a of both trials. */
-const SPLITTER = 2 * LANES;
-
 type ErrorKernels = Pick<
   Kernels,
-  'correlateGrid' | 'pickPlaces' | 'correlatePairs' | 'drawSplitters' | 'turnSplitters' | 'turnFactors'
+  'correlateGrid' | 'pickPlaces' | 'correlatePairs' | 'drawRatios' | 'turnRatios' | 'turnFactors'
 >;
 
 /** Twins of assembly/errors.ts. */
@@ -50,34 +47,25 @@ export function twinErrors(memory: () => TwinMemory): ErrorKernels {
     }
   };
 
-  const drawSplitters: Kernels['drawSplitters'] = (out, count, nominal, numbers, sigma, shift, clamped) => {
+  const drawRatios: Kernels['drawRatios'] = (ratios, count, nominal, numbers, sigma, shift, clamped) => {
     const { doubles, words } = memory();
     for (let k = 0; k < count; k++) {
       for (let lane = 0; lane < LANES; lane++) {
         const common = doubles[nominal / 8 + k]! + doubles[shift / 8 + lane]!;
         const drawn = common + sigma * doubles[numbers / 8 + LANES * k + lane]!;
         if (drawn < 0 || drawn > 1) words[clamped / 8 + lane]!++;
-        const ratio = drawn < 0 ? 0 : drawn > 1 ? 1 : drawn;
-        const at = out / 8 + SPLITTER * k + lane;
-        doubles[at] = Math.sqrt(1 - ratio);
-        doubles[at + LANES] = Math.sqrt(ratio);
+        doubles[ratios / 8 + LANES * k + lane] = drawn < 0 ? 0 : drawn > 1 ? 1 : drawn;
       }
     }
   };
 
-  const turnSplitters: Kernels['turnSplitters'] = (splitters, count, numbers, sigma) => {
+  const turnRatios: Kernels['turnRatios'] = (ratios, count, numbers, sigma) => {
     const { doubles } = memory();
-    for (let k = 0; k < count; k++) {
-      for (let lane = 0; lane < LANES; lane++) {
-        const turn = sigma * doubles[numbers / 8 + LANES * k + lane]!;
-        const c = twinCosine(turn);
-        const s = twinSine(turn);
-        const at = splitters / 8 + SPLITTER * k + lane;
-        const x = doubles[at]!;
-        const y = doubles[at + LANES]!;
-        doubles[at] = Math.abs(x * c - y * s);
-        doubles[at + LANES] = Math.abs(y * c + x * s);
-      }
+    for (let k = 0; k < LANES * count; k++) {
+      const turn = sigma * doubles[numbers / 8 + k]!;
+      const ratio = doubles[ratios / 8 + k]!;
+      const turned = Math.sqrt(ratio) * twinCosine(turn) + Math.sqrt(1 - ratio) * twinSine(turn);
+      doubles[ratios / 8 + k] = Math.min(turned * turned, 1);
     }
   };
 
@@ -97,5 +85,5 @@ export function twinErrors(memory: () => TwinMemory): ErrorKernels {
     }
   };
 
-  return { correlateGrid, pickPlaces, correlatePairs, drawSplitters, turnSplitters, turnFactors };
+  return { correlateGrid, pickPlaces, correlatePairs, drawRatios, turnRatios, turnFactors };
 }

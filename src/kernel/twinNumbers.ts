@@ -1,6 +1,7 @@
 import type { Kernels } from './loadKernels.js';
 import type { TwinMemory } from './twinMemory.js';
 import { LANES } from './twinMemory.js';
+import { DENSITIES_AT } from './ziggurat.js';
 
 const WORD = 0xffffffffn;
 
@@ -60,18 +61,23 @@ function logarithm(u: number): number {
   return Number(exponent) * 0.6931471805599453 + s * series;
 }
 
-/** e^x for x in [-30, 0]: by powers of 2, the rest by Taylor's series to the 13th power. */
+/** Of Taylor's series of e^x to the 13th power: the factors of even and of odd powers, highest first. */
+const EVEN = [479001600, 3628800, 40320, 720, 24, 2, 1].map((factorial) => 1 / factorial);
+const ODD = [6227020800, 39916800, 362880, 5040, 120, 6, 1].map((factorial) => 1 / factorial);
+
+/** e^x for x in [-30, 0]: by powers of 2, the rest by Taylor's series. */
 function exponential(x: number): number {
   // Halves do not occur, so rounding to the nearest whole number needs no rule for them.
   const power = Math.round(x * 1.4426950408889634);
   const rest = x - power * 0.6931471805599453;
-  let series = 1;
-  for (let k = 13; k >= 1; k--) series = 1 + (series * rest) / k;
-  return series * 2 ** power;
+  const square = rest * rest;
+  const horner = (factors: readonly number[]): number =>
+    factors.reduce((sum, factor) => sum * square + factor);
+  return (horner(EVEN) + horner(ODD) * rest) * 2 ** power;
 }
 
 /** Doubles of a layer in the tables of ziggurat.ts. */
-const LAYER = 3;
+const LAYER = 2;
 
 /** Draws normals from one lane: the ziggurat of assembly/normals.ts. */
 function createNormals({ doubles, words }: TwinMemory, at: number, layers: number): () => number {
@@ -87,11 +93,15 @@ function createNormals({ doubles, words }: TwinMemory, at: number, layers: numbe
     for (;;) {
       const bits = nextBits(words, at);
       const u = 2 * mantissaOf(bits) - 3;
-      const layer = layers + Number((bits >> 4n) & 255n) * LAYER;
+      const index = Number((bits >> 4n) & 511n);
+      const layer = layers + index * LAYER;
       const x = u * doubles[layer]!;
       if (Math.abs(u) < doubles[layer + 1]!) return x;
-      if (layer === layers) return u < 0 ? -tail(doubles[layers + LAYER]!) : tail(doubles[layers + LAYER]!);
-      const [low, high] = [doubles[layer + 2]!, doubles[layer + LAYER + 2]!];
+      if (index === 0) return u < 0 ? -tail(doubles[layers + LAYER]!) : tail(doubles[layers + LAYER]!);
+      const [low, high] = [
+        doubles[layers + DENSITIES_AT + index]!,
+        doubles[layers + DENSITIES_AT + index + 1]!,
+      ];
       if (low + uniform() * (high - low) < exponential(-0.5 * x * x)) return x;
     }
   };

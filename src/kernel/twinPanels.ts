@@ -2,9 +2,15 @@ import type { Kernels } from './loadKernels.js';
 import type { TwinMemory } from './twinMemory.js';
 import { LANES } from './twinMemory.js';
 
-/** Input ports of a panel: a row of one holds as many real parts, then as many imaginary parts. */
+/** Input ports of a panel: a row of one holds two real parts, then their two imaginary parts, and so on. */
 const PANEL = 8;
 const ROW = 2 * PANEL;
+/** Where the real parts of the ports stand in a row. */
+const PLACES = Array.from({ length: PANEL }, (_, k) => k + 2 * (k >> 1));
+/** From a real part to its imaginary part. */
+const IMAGINARY = 2;
+/** Doubles of the sums of a row: three, for even and odd inputs apart. */
+const SUMS = 6;
 /** Doubles of a cell's coefficients. */
 const CELL = 5 * LANES;
 /** What places hold that no light reaches. */
@@ -21,13 +27,13 @@ export function twinPanels(memory: () => TwinMemory): PanelKernels {
     const [vr, vi] = [doubles[numbers + 2 * LANES]!, doubles[numbers + 3 * LANES]!];
     const x = exchanged ? top + ROW : top;
     const y = exchanged ? top : top + ROW;
-    for (let k = 0; k < PANEL; k++) {
-      const [a, b] = [panel[x + k]!, panel[x + k + PANEL]!];
-      const [c, d] = [panel[y + k]!, panel[y + k + PANEL]!];
+    for (const k of PLACES) {
+      const [a, b] = [panel[x + k]!, panel[x + k + IMAGINARY]!];
+      const [c, d] = [panel[y + k]!, panel[y + k + IMAGINARY]!];
       panel[top + k] = a + (ur * c - ui * d);
-      panel[top + k + PANEL] = b + (ur * d + ui * c);
+      panel[top + k + IMAGINARY] = b + (ur * d + ui * c);
       panel[top + k + ROW] = c + (vr * a - vi * b);
-      panel[top + k + ROW + PANEL] = d + (vr * b + vi * a);
+      panel[top + k + ROW + IMAGINARY] = d + (vr * b + vi * a);
     }
   }
 
@@ -43,7 +49,8 @@ export function twinPanels(memory: () => TwinMemory): PanelKernels {
   ) => {
     const { doubles, integers } = memory();
     const panel = doubles.subarray(panelAt / 8, panelAt / 8 + ROW * modes).fill(DARK);
-    for (let k = 0; k < Math.min(PANEL, modes - firstInput); k++) panel[(firstInput + k) * ROW + k] = 1;
+    for (let k = 0; k < Math.min(PANEL, modes - firstInput); k++)
+      panel[(firstInput + k) * ROW + PLACES[k]!] = 1;
     for (let column = 0; column < columns; column++) {
       const first = integers[ranges / 4 + 2 * column]!;
       const last = integers[ranges / 4 + 2 * column + 1]!;
@@ -59,17 +66,16 @@ export function twinPanels(memory: () => TwinMemory): PanelKernels {
     const { doubles } = memory();
     for (let row = 0; row < modes; row++) {
       // Even and odd inputs are summed apart, as the two halves of a vector are.
-      const re = [0, 0];
-      const im = [0, 0];
-      const power = [0, 0];
-      for (let k = 0; k < PANEL; k++) {
-        const [x, y] = [doubles[panel / 8 + ROW * row + k]!, doubles[panel / 8 + ROW * row + k + PANEL]!];
-        const [c, d] = [doubles[target / 8 + ROW * row + k]!, doubles[target / 8 + ROW * row + k + PANEL]!];
-        re[k % 2]! += x * c + y * d;
-        im[k % 2]! += y * c - x * d;
-        power[k % 2]! += x * x + y * y;
+      for (const k of PLACES) {
+        const at = panel / 8 + ROW * row + k;
+        const [x, y] = [doubles[at]!, doubles[at + IMAGINARY]!];
+        const wanted = target / 8 + ROW * row + k;
+        const [c, d] = [doubles[wanted]!, doubles[wanted + IMAGINARY]!];
+        const sum = sums / 8 + SUMS * row + (k % 2);
+        doubles[sum]! += x * c + y * d;
+        doubles[sum + 2]! += y * c - x * d;
+        doubles[sum + 4]! += x * x + y * y;
       }
-      [re, im, power].forEach(([even, odd], k) => (doubles[sums / 8 + 3 * row + k]! += even! + odd!));
     }
   };
 
@@ -88,7 +94,8 @@ export function twinPanels(memory: () => TwinMemory): PanelKernels {
     result,
   ) => {
     const { doubles } = memory();
-    doubles.fill(0, sums / 8, sums / 8 + 3 * modes);
+    doubles.fill(0, sums / 8, sums / 8 + SUMS * modes);
+    const sumAt = (at: number): number => doubles[at]! + doubles[at + 1]!;
     for (let number = 0; number * PANEL < modes; number++) {
       const reached = ranges + 8 * columns * number;
       propagatePanel(modes, columns, number * PANEL, lane, reached, upperPort, coefficients, panel);
@@ -102,12 +109,12 @@ export function twinPanels(memory: () => TwinMemory): PanelKernels {
       const [c, d] = [doubles[port]!, doubles[port + LANES]!];
       const re = a * c - b * d;
       const im = a * d + b * c;
-      const x = doubles[sums / 8 + 3 * row]!;
-      const y = doubles[sums / 8 + 3 * row + 1]!;
+      const x = sumAt(sums / 8 + SUMS * row);
+      const y = sumAt(sums / 8 + SUMS * row + 2);
       const factorPower = re * re + im * im;
       traceRe += re * x - im * y;
       traceIm += re * y + im * x;
-      power += factorPower * doubles[sums / 8 + 3 * row + 2]!;
+      power += factorPower * sumAt(sums / 8 + SUMS * row + 4);
       portSum += Math.sqrt(factorPower * (x * x + y * y));
     }
     [traceRe, traceIm, power, portSum].forEach(

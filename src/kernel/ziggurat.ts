@@ -1,18 +1,20 @@
-/** Layers of the ziggurat, and doubles for each: right edge, next edge as a share of it, density at it. */
-const LAYERS = 256;
-const DOUBLES = 3;
-/** Doubles that the tables take: one edge more than layers. */
-export const ZIGGURAT_SIZE = (LAYERS + 1) * DOUBLES;
+/** Layers of the ziggurat: one edge more than layers. */
+const LAYERS = 512;
+/** Where the densities at the edges begin: behind the edges, two doubles each. */
+export const DENSITIES_AT = 2 * (LAYERS + 1);
+/** Doubles that the tables take. */
+export const ZIGGURAT_SIZE = 3 * (LAYERS + 1);
 
 /**
- * Where the tail begins, and the area of each layer: Marsaglia and Tsang, J. Stat. Softw. 5, 8 (2000), for
- * 256 layers.
+ * Where the tail begins, and the area of each layer, so that 512 layers of one area end at the peak: the
+ * condition of Marsaglia and Tsang, J. Stat. Softw. 5, 8 (2000), solved with SciPy's brentq and erfc.
  */
-const TAIL = 3.6541528853610088;
-const AREA = 0.00492867323399;
+const TAIL = 3.852046150368391;
+const AREA = 0.002456766351541357;
 
 /**
- * Writes the tables that `fillNormals` reads. The normal density (without its constant) is covered by layers
+ * Writes the tables that `fillNormals` reads: for each layer its right edge and the next edge as a share of it,
+ * then the densities at the edges. The normal density (without its constant) is covered by layers
  * of one area, from the tail's, which is as wide as its area needs, up to the peak.
  */
 export function writeZiggurat(tables: Float64Array): void {
@@ -24,8 +26,8 @@ export function writeZiggurat(tables: Float64Array): void {
   }
   edges.push(0);
   edges.forEach((edge, layer) => {
-    tables[DOUBLES * layer] = edge;
-    tables[DOUBLES * layer + 1] = layer < LAYERS ? edges[layer + 1]! / edge : 0;
-    tables[DOUBLES * layer + 2] = density(edge);
+    tables[2 * layer] = edge;
+    tables[2 * layer + 1] = layer < LAYERS ? edges[layer + 1]! / edge : 0;
+    tables[DENSITIES_AT + layer] = density(edge);
   });
 }

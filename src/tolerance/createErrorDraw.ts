@@ -11,8 +11,8 @@ const WORD = 2 ** 32;
 
 /** Draws the errors of two chips. */
 export interface ErrorDraw {
-  /** Draws the splitters of trials `first` and `first + 1`, losses included. */
-  drawSplitters(first: number): void;
+  /** Draws the coupling ratios of trials `first` and `first + 1`, losses included. */
+  drawRatios(first: number): void;
   /** Turns the phases that are set by their errors. */
   addPhaseErrors(first: number): void;
 }
@@ -60,8 +60,8 @@ export function createErrorDraw(
     if (errors.pairCorrelation !== 0) kernels.correlatePairs(memory.numbers, cells, errors.pairCorrelation);
   }
 
-  /** Draws the splitters of two trials, losses included. */
-  function drawSplitters(first: number): void {
+  /** Draws the coupling ratios of two trials, losses included. */
+  function drawRatios(first: number): void {
     if (errors.biasSigma > 0) {
       fill(memory.numbers, 1, STREAMS.dieBias, first);
       for (const lane of ALL_LANES) {
@@ -70,8 +70,8 @@ export function createErrorDraw(
     }
     if (errors.sigma > 0) fillLocalField(STREAMS.splitterRatios, first);
     else views.numbers.fill(0);
-    kernels.drawSplitters(
-      memory.splitters,
+    kernels.drawRatios(
+      memory.ratios,
       2 * cells,
       memory.nominal,
       memory.numbers,
@@ -81,7 +81,7 @@ export function createErrorDraw(
     );
     if (errors.sigmaAngle > 0) {
       fillLocalField(STREAMS.splitterAngles, first);
-      kernels.turnSplitters(memory.splitters, 2 * cells, memory.numbers, errors.sigmaAngle);
+      kernels.turnRatios(memory.ratios, 2 * cells, memory.numbers, errors.sigmaAngle);
     }
     if (errors.lossSigmaDb > 0) {
       fill(memory.numbers, 2 * cells, STREAMS.splitterLosses, first);
@@ -123,5 +123,5 @@ export function createErrorDraw(
     }
   }
 
-  return { drawSplitters, addPhaseErrors };
+  return { drawRatios, addPhaseErrors };
 }

@@ -116,11 +116,12 @@ export function createTrialEngine(plan: TrialPlan, instance: KernelInstance = lo
       cells,
       modes,
       memory.upperPort,
-      memory.splitters,
+      memory.ratios,
       memory.wanted,
       memory.diagonal,
       memory.diagonalAt,
       memory.carried,
+      memory.block,
       memory.arms,
       memory.external,
       style.arm,
@@ -141,15 +142,13 @@ export function createTrialEngine(plan: TrialPlan, instance: KernelInstance = lo
         setTarget(lane, haarFromStream(modes, randomStream(plan.seed, STREAMS.trialTarget, first + lane)));
       }
     }
-    draw.drawSplitters(first);
+    draw.drawRatios(first);
     setPhases();
     draw.addPhaseErrors(first);
   }
 
   function ratiosOfLane(lane: Lane): Float64Array {
-    return Float64Array.from({ length: 2 * cells }, (_, k) =>
-      Math.min(1, views.splitters[4 * k + 2 + lane]! ** 2),
-    );
+    return Float64Array.from({ length: 2 * cells }, (_, k) => views.ratios[2 * k + lane]!);
   }
 
   function sampleLane(lane: Lane): SampledChip {
@@ -206,13 +205,14 @@ export function createTrialEngine(plan: TrialPlan, instance: KernelInstance = lo
           kernels.composeCells(
             cells,
             memory.upperPort,
-            memory.splitters,
+            memory.ratios,
             memory.arms,
             memory.external,
             memory.gain,
             modes,
             views.inputAddress,
             memory.factors,
+            memory.block,
             memory.coefficients,
             style.place,
             style.realSplitters,

@@ -1,5 +1,6 @@
 import type { Chip } from '../chip/Chip.js';
 import type { KernelInstance } from '../kernel/loadKernels.js';
+import { BLOCK_SIZE } from '../kernel/loadKernels.js';
 import { writeZiggurat, ZIGGURAT_SIZE } from '../kernel/ziggurat.js';
 import type { ComplexMatrix } from '../matrix/ComplexMatrix.js';
 
@@ -17,11 +18,12 @@ export interface TrialMemory {
   readonly grid: number;
   readonly shift: number;
   readonly clamped: number;
-  readonly splitters: number;
+  readonly ratios: number;
   readonly wanted: number;
   readonly diagonal: number;
   readonly diagonalAt: number;
   readonly carried: number;
+  readonly block: number;
   readonly arms: number;
   readonly external: number;
   readonly gain: number;
@@ -53,11 +55,12 @@ export function reserveTrialMemory(instance: KernelInstance, chip: Chip, correla
     grid: reserve(correlated ? 2 * columns * modes : 0),
     shift: reserve(2),
     clamped: reserve(2),
-    splitters: reserve(8 * cells),
+    ratios: reserve(4 * cells),
     wanted: reserve(8 * cells),
     diagonal: reserve(4 * modes),
     diagonalAt: reserveBytes(4 * modes),
     carried: reserve(4 * modes),
+    block: reserve(BLOCK_SIZE),
     arms: reserve(8 * cells),
     external: reserve(4 * cells),
     gain: reserve(2 * cells),
@@ -67,7 +70,7 @@ export function reserveTrialMemory(instance: KernelInstance, chip: Chip, correla
     ranges: reserveBytes(8 * columns * panels),
     panel: reserve(2 * PANEL * modes),
     targets: [reserve(targetSize), reserve(targetSize)],
-    sums: reserve(3 * modes),
+    sums: reserve(6 * modes),
     result: reserve(8),
   };
   instance.integers(memory.upperPort, cells).set(upperPortIndex);
@@ -106,7 +109,7 @@ function reachedCells({ mesh }: Chip): Int32Array {
   return Int32Array.from(ranges);
 }
 
-/** Writes a target in panels of eight columns, real parts before imaginary ones in each row. */
+/** Writes a target in panels of eight columns; a row holds real and imaginary parts of two columns in turns. */
 export function writeTarget(
   instance: KernelInstance,
   address: number,
@@ -117,9 +120,10 @@ export function writeTarget(
   for (let row = 0; row < modes; row++) {
     for (let column = 0; column < modes; column++) {
       const panel = Math.floor(column / PANEL);
-      const at = (panel * modes + row) * 2 * PANEL + (column % PANEL);
+      const within = column % PANEL;
+      const at = (panel * modes + row) * 2 * PANEL + within + 2 * (within >> 1);
       out[at] = re[row * modes + column]!;
-      out[at + PANEL] = im[row * modes + column]!;
+      out[at + 2] = im[row * modes + column]!;
     }
   }
 }

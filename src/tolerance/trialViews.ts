@@ -17,7 +17,7 @@ export interface TrialViews {
   readonly numbers: Float64Array;
   /** Two 64-bit counts; their low words stand at 0 and 2. */
   readonly clampedCounts: Int32Array;
-  readonly splitters: Float64Array;
+  readonly ratios: Float64Array;
   readonly wanted: Float64Array;
   readonly diagonal: Float64Array;
   readonly diagonalAt: Int32Array;
@@ -57,7 +57,7 @@ export function takeViews(instance: KernelInstance, memory: TrialMemory, chip: C
     shift: doubles(memory.shift, 2),
     numbers: doubles(memory.numbers, 2 * Math.max(2 * cells, modes, 2)),
     clampedCounts: instance.integers(memory.clamped, 4),
-    splitters: doubles(memory.splitters, 8 * cells),
+    ratios: doubles(memory.ratios, 4 * cells),
     wanted: doubles(memory.wanted, 8 * cells),
     diagonal: doubles(memory.diagonal, 4 * modes),
     diagonalAt: instance.integers(memory.diagonalAt, modes),
@@ -143,9 +143,10 @@ export function writeFactors(
   for (let cell = 0; cell < mesh.cells; cell++) {
     const at = 8 * cell + lane;
     views.wanted[at] = cosine[cell]!;
-    views.wanted[at + 2] = sineRe[cell]!;
-    views.wanted[at + 4] = sineIm[cell]!;
-    views.wanted[at + 6] = Math.hypot(sineRe[cell]!, sineIm[cell]!);
+    const sine = Math.hypot(sineRe[cell]!, sineIm[cell]!);
+    views.wanted[at + 2] = sine > 0 ? sineRe[cell]! / sine : 1;
+    views.wanted[at + 4] = sine > 0 ? sineIm[cell]! / sine : 0;
+    views.wanted[at + 6] = sine;
   }
   diagonal.forEach((phase, port) => {
     views.diagonal[4 * port + lane] = Math.cos(phase);

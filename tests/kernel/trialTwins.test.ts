@@ -1,7 +1,7 @@
 import { describe, expect, it } from 'vitest';
 import { layersIn } from '../support/ziggurat.js';
 import type { KernelInstance, Kernels } from '../../src/kernel/loadKernels.js';
-import { loadKernels } from '../../src/kernel/loadKernels.js';
+import { loadKernels, BLOCK_SIZE } from '../../src/kernel/loadKernels.js';
 import { twinInstance } from '../../src/kernel/twins.js';
 
 const BOTH: readonly (readonly [name: string, make: () => KernelInstance])[] = [
@@ -26,6 +26,14 @@ function memoryAfter(instance: KernelInstance, run: Run, size: number): Uint8Arr
 function filled(instance: KernelInstance, length: number, salt: number): number {
   const address = instance.reserve(length);
   instance.doubles(address, length).set(Array.from({ length }, (_, k) => 1.5 * Math.sin(salt + 1.3 * k)));
+  return address;
+}
+
+/** Reserves an array of coupling ratios, both ends among them. */
+function ratiosOf(instance: KernelInstance, length: number, salt: number): number {
+  const address = filled(instance, length, salt);
+  const ratios = instance.doubles(address, length);
+  ratios.forEach((value, k) => (ratios[k] = Math.min(1, Math.max(0, 0.5 + value / 2))));
   return address;
 }
 
@@ -78,18 +86,18 @@ const RUNS: Readonly<Partial<Record<keyof Kernels, Run>>> = {
     const numbers = filled(instance, 4 * size + 2, 4);
     instance.kernels.correlatePairs(numbers, size, -0.6);
   },
-  drawSplitters: (instance, size) => {
+  drawRatios: (instance, size) => {
     const nominal = filled(instance, size, 5);
     const numbers = filled(instance, 2 * size, 6);
     const shift = filled(instance, 2, 7);
     const clamped = instance.reserve(2);
-    const out = instance.reserve(4 * size);
-    instance.kernels.drawSplitters(out, size, nominal, numbers, 0.4, shift, clamped);
-    instance.kernels.drawSplitters(out, size, nominal, numbers, 0.4, shift, clamped);
+    const ratios = instance.reserve(2 * size);
+    instance.kernels.drawRatios(ratios, size, nominal, numbers, 0.4, shift, clamped);
+    instance.kernels.drawRatios(ratios, size, nominal, numbers, 0.4, shift, clamped);
   },
-  turnSplitters: (instance, size) => {
-    const splitters = filled(instance, 4 * size, 8);
-    instance.kernels.turnSplitters(splitters, size, filled(instance, 2 * size, 9), 6);
+  turnRatios: (instance, size) => {
+    const ratios = ratiosOf(instance, 2 * size, 8);
+    instance.kernels.turnRatios(ratios, size, filled(instance, 2 * size, 9), 6);
   },
   turnFactors: (instance, size) => {
     const factors = filled(instance, 8 * size + 4, 10);
@@ -100,8 +108,9 @@ const RUNS: Readonly<Partial<Record<keyof Kernels, Run>>> = {
       instance,
       Array.from({ length: size }, (_, k) => (5 * k) % 9),
     );
-    const arrays = [8, 8, 4, 2].map((length, k) => filled(instance, length * size, 12 + k));
-    const [splitters, arms, external, gain] = arrays as [number, number, number, number];
+    const arrays = [8, 4, 2].map((length, k) => filled(instance, length * size, 13 + k));
+    const [arms, external, gain] = arrays as [number, number, number];
+    const ratios = ratiosOf(instance, 4 * size, 12);
     const coefficients = instance.reserve(10 * size);
     const input = filled(instance, 40, 16);
     const factors = instance.reserve(40);
@@ -110,13 +119,14 @@ const RUNS: Readonly<Partial<Record<keyof Kernels, Run>>> = {
         instance.kernels.composeCells(
           size,
           upper,
-          splitters,
+          ratios,
           arms,
           external,
           gain,
           10,
           input,
           factors,
+          instance.reserve(BLOCK_SIZE),
           coefficients,
           place,
           real,
@@ -187,18 +197,13 @@ describe.each(BOTH)('%s', (_, make) => {
     const numbers = instance.reserve(6);
     const shift = instance.reserve(2);
     const clamped = instance.reserve(2);
-    const out = instance.reserve(12);
+    const ratios = instance.reserve(6);
     instance.doubles(nominal, 3).set([0.5, 0.2, 0.9]);
     instance.doubles(numbers, 6).set([1, -1, -2, 3, 4, 0]);
     instance.doubles(shift, 2).set([0.05, -0.05]);
-    instance.kernels.drawSplitters(out, 3, nominal, numbers, 0.2, shift, clamped);
-    const ratios = [0.75, 0.25, 0, 0.75, 1, 0.85];
-    const expected = [0, 1, 2].flatMap((k) =>
-      [(ratio: number) => Math.sqrt(1 - ratio), Math.sqrt].flatMap((part) =>
-        ratios.slice(2 * k, 2 * k + 2).map(part),
-      ),
-    );
-    instance.doubles(out, 12).forEach((value, k) => expect(value).toBeCloseTo(expected[k]!, 14));
+    instance.kernels.drawRatios(ratios, 3, nominal, numbers, 0.2, shift, clamped);
+    const expected = [0.75, 0.25, 0, 0.75, 1, 0.85];
+    instance.doubles(ratios, 6).forEach((ratio, k) => expect(ratio).toBeCloseTo(expected[k]!, 15));
     expect(Array.from(instance.integers(clamped, 4))).toEqual([2, 0, 0, 0]);
   });
 

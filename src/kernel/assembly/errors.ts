@@ -53,12 +53,12 @@ export function correlatePairs(numbers: usize, pairs: i32, correlation: f64): vo
 }
 
 /**
- * Writes cos a and sin a (2 x 16 bytes) of `count` splitters of coupling ratio sin^2 a = nominal + shift +
- * sigma * number, clamped to [0, 1]. `nominal`: one double a splitter, the same for both lanes. `shift`: 16
- * bytes. The numbers clamped are added to the two 64-bit counts at `clamped`.
+ * Writes the coupling ratios nominal + shift + sigma * number of `count` splitters, clamped to [0, 1], 16 bytes
+ * each. `nominal`: one double a splitter, the same for both lanes. `shift`: 16 bytes. The numbers clamped are
+ * added to the two 64-bit counts at `clamped`.
  */
-export function drawSplitters(
-  out: usize, count: i32, nominal: usize, numbers: usize, sigma: f64, shift: usize, clamped: usize,
+export function drawRatios(
+  ratios: usize, count: i32, nominal: usize, numbers: usize, sigma: f64, shift: usize, clamped: usize,
 ): void {
   const spread = both(sigma);
   const common = v128.load(shift);
@@ -69,32 +69,26 @@ export function drawSplitters(
     const drawn = add(add(v128.load64_splat(nominal), common), multiply(spread, v128.load(numbers)));
     // A comparison is -1 where it holds.
     counts = i64x2.sub(counts, v128.or(f64x2.lt(drawn, zero), f64x2.gt(drawn, one)));
-    const ratio = f64x2.pmin(f64x2.pmax(drawn, zero), one);
-    v128.store(out, root(subtract(one, ratio)));
-    v128.store(out, root(ratio), 16);
+    v128.store(ratios, f64x2.pmin(f64x2.pmax(drawn, zero), one));
     nominal += 8;
     numbers += 16;
-    out += 32;
+    ratios += 16;
   }
   v128.store(clamped, counts);
 }
 
-/**
- * Adds sigma * number to the angle a of each splitter. Only the coupling ratio counts: cos a and sin a stay
- * positive.
- */
-export function turnSplitters(splitters: usize, count: i32, numbers: usize, sigma: f64): void {
+/** Adds sigma * number to the angle a of each splitter, sin^2 a being its coupling ratio. */
+export function turnRatios(ratios: usize, count: i32, numbers: usize, sigma: f64): void {
   const spread = both(sigma);
   for (let k = 0; k < count; k++) {
     const turn = multiply(spread, v128.load(numbers));
-    const c = cosine(turn);
-    const s = sine(turn);
-    const x = v128.load(splitters);
-    const y = v128.load(splitters, 16);
-    v128.store(splitters, f64x2.abs(subtract(multiply(x, c), multiply(y, s))));
-    v128.store(splitters, f64x2.abs(add(multiply(y, c), multiply(x, s))), 16);
+    const ratio = v128.load(ratios);
+    const x = root(subtract(both(1.0), ratio));
+    const y = root(ratio);
+    const turned = add(multiply(y, cosine(turn)), multiply(x, sine(turn)));
+    v128.store(ratios, f64x2.pmin(multiply(turned, turned), both(1.0)));
     numbers += 16;
-    splitters += 32;
+    ratios += 16;
   }
 }
 

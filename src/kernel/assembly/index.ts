@@ -1,6 +1,7 @@
-export { correlateGrid, correlatePairs, drawSplitters, pickPlaces, turnFactors, turnSplitters } from './errors';
+export { correlateGrid, correlatePairs, drawRatios, pickPlaces, turnFactors, turnRatios } from './errors';
 export { fillNormals, fillUniforms, seedTrials } from './normals';
-export { accumulatePanel, composeCells, judgeTrial, propagatePanel } from './propagate';
+export { composeCells } from './composeCells';
+export { accumulatePanel, judgeTrial, propagatePanel } from './propagate';
 export { solveCells } from './solveCells';
 export { layOutMatrix } from './nullingMatrix';
 export { nullRectangular } from './nullingRectangular';
