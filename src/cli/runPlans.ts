@@ -1,4 +1,5 @@
 import { InputError } from '../errors/InputError.js';
+import type { Chunk } from '../files/chunkFile.js';
 import type { ChunkStore } from '../files/chunkStore.js';
 import type { PoolOutcome, PoolRun } from '../files/workerPool.js';
 import { runChunks } from '../files/workerPool.js';
@@ -25,6 +26,13 @@ export interface PlanRun {
   readonly signal?: AbortSignal;
   /** Where finished chunks are kept, if they are. */
   readonly store?: ChunkStore;
+  /** Where these trials stand among others that are kept in the same store. */
+  readonly place?: {
+    /** Chunks in the store that come before. */
+    readonly chunksBefore: number;
+    /** Kept with each chunk, so that none is taken for one of another value. */
+    readonly value: number;
+  };
   /** Judged after each chunk, in the order of the trials; true ends the run. */
   readonly enough?: (results: PlanResults) => boolean;
   readonly console?: Console;
@@ -35,6 +43,8 @@ export interface PlanOutcome {
   readonly interrupted: boolean;
   /** Trials that were run now, not taken from the store, by the second. */
   readonly trialsPerSecond: number;
+  /** How many chunks all trials make. */
+  readonly chunks: number;
 }
 
 /**
@@ -43,9 +53,10 @@ export interface PlanOutcome {
  * @throws InputError `run/size` when the results would fill the memory
  */
 export async function runPlans(run: PlanRun): Promise<PlanOutcome> {
-  const { plans, trials, store } = run;
+  const { plans, trials, store, place } = run;
   requireRoom(plans, trials);
-  const jobs = jobsOf(plans, trials);
+  const jobs = jobsOf(plans, trials, place?.chunksBefore ?? 0);
+  const label = place === undefined ? [] : [place.value];
   const columns = plans[0]!.figures.length;
   const rows = plans.map(() => new Float64Array(trials * columns));
   const done = plans.map(() => 0);
@@ -61,7 +72,7 @@ export async function runPlans(run: PlanRun): Promise<PlanOutcome> {
   const chunks = {
     known: ({ number }: TrialJob): Promise<TrialChunk> | undefined =>
       store?.has(number) === true
-        ? store.read(number).then((chunk) => ({ rows: chunk.rows, clamped: chunk.counters[0]! }))
+        ? store.read(number).then((chunk) => keptChunk(chunk, place?.value))
         : undefined,
     onResult: async (
       chunk: TrialChunk,
@@ -73,7 +84,8 @@ export async function runPlans(run: PlanRun): Promise<PlanOutcome> {
       const known = store?.has(number) === true;
       if (!known) {
         fresh += count;
-        await store?.save({ number, firstTrial: first + 1, rows: chunk.rows, counters: [chunk.clamped] });
+        const counters = [chunk.clamped, ...label];
+        await store?.save({ number, firstTrial: first + 1, rows: chunk.rows, counters });
       }
       progress.advance(count, known);
       return run.enough?.(resultsOf(plan)) === true ? 'stop' : undefined;
@@ -85,7 +97,19 @@ export async function runPlans(run: PlanRun): Promise<PlanOutcome> {
     results: plans.map((_, plan) => resultsOf(plan)),
     interrupted: ended === 'aborted',
     trialsPerSecond: Math.round(fresh / seconds),
+    chunks: jobs.length,
   };
+}
+
+/** @throws InputError `run/changed` for a chunk of another value, as another version of the search left it */
+function keptChunk({ number, rows, counters }: Chunk, value: number | undefined): TrialChunk {
+  const [clamped, of] = counters;
+  if (of === value) return { rows, clamped: clamped! };
+  throw new InputError(
+    'run/changed',
+    `chunk ${number} of what is kept is of the value ${of}, where this run tries ${value}`,
+    'Begin anew with --force.',
+  );
 }
 
 /** All judged figures are held in memory until they are written, in all about 60 bytes each: two gigabytes are enough. */
@@ -134,12 +158,13 @@ function runHere(plan: TrialPlan, { first, count }: TrialJob): TrialChunk {
   return { rows, clamped: createTrialEngine(plan).run(first, count, rows) };
 }
 
-function jobsOf(plans: readonly TrialPlan[], trials: number): TrialJob[] {
+function jobsOf(plans: readonly TrialPlan[], trials: number, before: number): TrialJob[] {
   const jobs: TrialJob[] = [];
   plans.forEach((plan, index) => {
     const size = chunkTrials(plan);
     for (let first = 0; first < trials; first += size) {
-      jobs.push({ plan: index, number: jobs.length + 1, first, count: Math.min(size, trials - first) });
+      const number = before + jobs.length + 1;
+      jobs.push({ plan: index, number, first, count: Math.min(size, trials - first) });
     }
   });
   return jobs;

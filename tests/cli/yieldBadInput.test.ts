@@ -100,7 +100,7 @@ const FAULTS: readonly Fault[] = [
       'c.chip.json': '{"modes": 3, "measuredCells": [{"cell": 1, "couplingRatio": [0.5, 0.49]}]}',
     },
     says: /measuredCells/,
-    mends: /sweep bias/,
+    mends: /take bias instead/,
   },
   option(
     ['tolerance', 'dft(3)', '--source', 'correlationLength'],
