@@ -4,11 +4,11 @@ import type { ChunkStore } from '../files/chunkStore.js';
 import type { PoolOutcome, PoolRun } from '../files/workerPool.js';
 import { runChunks } from '../files/workerPool.js';
 import { chunkTrials } from '../tolerance/chunking.js';
-import { createTrialEngine } from '../tolerance/createTrialEngine.js';
 import type { TrialPlan } from '../tolerance/TrialPlan.js';
 import type { Console } from './console.js';
 import { createProgress } from './progress.js';
-import type { TrialChunk, TrialJob } from './trialWorker.js';
+import type { TrialChunk, TrialJob } from './trialRunner.js';
+import { trialRunner } from './trialRunner.js';
 
 /** What the trials of one plan gave, as far as they went. */
 export interface PlanResults {
@@ -127,20 +127,16 @@ function requireRoom(plans: readonly TrialPlan[], trials: number): void {
 
 type ChunkHandling = Required<Pick<PoolRun<TrialJob, TrialChunk>, 'known' | 'onResult'>>;
 
-/** Runs jobs, on workers if there are several: to start a worker takes longer than a chunk. */
+/** To start workers takes as long as so many chunks, which a search would pay at each of its values. */
+const FEW_CHUNKS = 4;
+
+/** Runs jobs, on workers if there are more than a few. */
 async function endOf(
   { plans, workers, signal }: PlanRun,
   jobs: readonly TrialJob[],
   chunks: ChunkHandling,
 ): Promise<PoolOutcome['ended']> {
-  const [job, second] = jobs;
-  if (job !== undefined && second === undefined) {
-    // Lets signals in, which a search of many such runs would not.
-    await new Promise((resolve) => setImmediate(resolve));
-    if (signal?.aborted === true) return 'aborted';
-    await chunks.onResult((await chunks.known(job)) ?? runHere(plans[0]!, job), job);
-    return 'all';
-  }
+  if (jobs.length <= FEW_CHUNKS) return endOfFew(plans, jobs, chunks, signal);
   const outcome = await runChunks<TrialJob, TrialChunk>({
     workers,
     entry: new URL('./trialWorker.js', import.meta.url),
@@ -153,9 +149,22 @@ async function endOf(
   return outcome.ended;
 }
 
-function runHere(plan: TrialPlan, { first, count }: TrialJob): TrialChunk {
-  const rows = new Float64Array(count * plan.figures.length);
-  return { rows, clamped: createTrialEngine(plan).run(first, count, rows) };
+/** The same as the workers do, here. */
+async function endOfFew(
+  plans: readonly TrialPlan[],
+  jobs: readonly TrialJob[],
+  chunks: ChunkHandling,
+  signal: AbortSignal | undefined,
+): Promise<PoolOutcome['ended']> {
+  const run = trialRunner(plans);
+  for (const job of jobs) {
+    // Lets signals in.
+    await new Promise((resolve) => setImmediate(resolve));
+    if (signal?.aborted === true) return 'aborted';
+    const verdict = await chunks.onResult((await chunks.known(job)) ?? run(job), job);
+    if (verdict === 'stop') return 'stopped';
+  }
+  return 'all';
 }
 
 function jobsOf(plans: readonly TrialPlan[], trials: number, before: number): TrialJob[] {

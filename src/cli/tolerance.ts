@@ -64,8 +64,8 @@ export function addToleranceCommand(parent: Command, setExitCode: (code: number)
     .argument('<target>', 'matrix file, formula, or haar(8) for a new random target in each trial')
     .summary('find the error that a design can stand')
     .description(
-      'Find the largest value of an error source, or of a quantity of the design, for which the yield still holds (for bits\n' +
-        'the fewest), other sources as the chip file has them.\n' +
+      'Find the largest error of one source (the fewest bits), or the largest value of a quantity of the design, for which\n' +
+        'the yield still holds; other sources are as the chip file has them.\n' +
         'The same random chips are used at every value; the interval says what the sampling leaves open.\n' +
         'Finished chunks are kept: after Ctrl-C or a crash --resume goes on to the same bytes.',
     )
@@ -78,9 +78,9 @@ export function addToleranceCommand(parent: Command, setExitCode: (code: number)
     .addHelpText(
       'after',
       `
-Where the search begins and ends: couplingRatio goes from 0.5 up, modes from 2 to 256 (write N in the formula), everything else from 0 up. For
-modes and correlationLength, whose growth may do good again, the yield holds at every value of a ladder up to the answer; the
-report lists the ladder.
+Where the search begins and ends: couplingRatio goes from 0.5 up, modes from 2 to 256 (write N in the formula), bits from 24 down, everything else
+from 0 up. Growth is taken to do harm. Where it may do good again, for modes and correlationLength, the yield holds at every value of a
+ladder up to the answer, and what lies beyond is not looked at; the report lists the ladder.
 
 Examples:
   phasewright tolerance "haar(8)"

@@ -6,7 +6,7 @@ import { QUANTITY_LABELS } from './yieldSweep.js';
 
 /** How a quantity is searched for the value up to which a yield holds. Plain data. */
 export type QuantitySearch =
-  /** Its growth makes chips worse; beginning at `from + start`, it goes up to `from + most`. */
+  /** Taken to make chips worse as it grows; beginning at `from + start`, it goes up to `from + most`. */
   | { readonly kind: 'rising'; readonly from: number; readonly start: number; readonly most: number }
   /** Whole numbers from 1 to `most`, of which more are better. */
   | { readonly kind: 'fewest'; readonly most: number }
