@@ -1,13 +1,14 @@
 import { InputError } from '../errors/InputError.js';
+import type { Chunk } from '../files/chunkFile.js';
 import type { ChunkStore } from '../files/chunkStore.js';
 import type { PoolOutcome, PoolRun } from '../files/workerPool.js';
 import { runChunks } from '../files/workerPool.js';
 import { chunkTrials } from '../tolerance/chunking.js';
-import { createTrialEngine } from '../tolerance/createTrialEngine.js';
 import type { TrialPlan } from '../tolerance/TrialPlan.js';
 import type { Console } from './console.js';
 import { createProgress } from './progress.js';
-import type { TrialChunk, TrialJob } from './trialWorker.js';
+import type { TrialChunk, TrialJob } from './trialRunner.js';
+import { trialRunner } from './trialRunner.js';
 
 /** What the trials of one plan gave, as far as they went. */
 export interface PlanResults {
@@ -25,6 +26,13 @@ export interface PlanRun {
   readonly signal?: AbortSignal;
   /** Where finished chunks are kept, if they are. */
   readonly store?: ChunkStore;
+  /** Where these trials stand among others that are kept in the same store. */
+  readonly place?: {
+    /** Chunks in the store that come before. */
+    readonly chunksBefore: number;
+    /** Kept with each chunk, so that none is taken for one of another value. */
+    readonly value: number;
+  };
   /** Judged after each chunk, in the order of the trials; true ends the run. */
   readonly enough?: (results: PlanResults) => boolean;
   readonly console?: Console;
@@ -35,6 +43,8 @@ export interface PlanOutcome {
   readonly interrupted: boolean;
   /** Trials that were run now, not taken from the store, by the second. */
   readonly trialsPerSecond: number;
+  /** How many chunks all trials make. */
+  readonly chunks: number;
 }
 
 /**
@@ -43,9 +53,10 @@ export interface PlanOutcome {
  * @throws InputError `run/size` when the results would fill the memory
  */
 export async function runPlans(run: PlanRun): Promise<PlanOutcome> {
-  const { plans, trials, store } = run;
+  const { plans, trials, store, place } = run;
   requireRoom(plans, trials);
-  const jobs = jobsOf(plans, trials);
+  const jobs = jobsOf(plans, trials, place?.chunksBefore ?? 0);
+  const label = place === undefined ? [] : [place.value];
   const columns = plans[0]!.figures.length;
   const rows = plans.map(() => new Float64Array(trials * columns));
   const done = plans.map(() => 0);
@@ -61,7 +72,7 @@ export async function runPlans(run: PlanRun): Promise<PlanOutcome> {
   const chunks = {
     known: ({ number }: TrialJob): Promise<TrialChunk> | undefined =>
       store?.has(number) === true
-        ? store.read(number).then((chunk) => ({ rows: chunk.rows, clamped: chunk.counters[0]! }))
+        ? store.read(number).then((chunk) => keptChunk(chunk, place?.value))
         : undefined,
     onResult: async (
       chunk: TrialChunk,
@@ -73,7 +84,8 @@ export async function runPlans(run: PlanRun): Promise<PlanOutcome> {
       const known = store?.has(number) === true;
       if (!known) {
         fresh += count;
-        await store?.save({ number, firstTrial: first + 1, rows: chunk.rows, counters: [chunk.clamped] });
+        const counters = [chunk.clamped, ...label];
+        await store?.save({ number, firstTrial: first + 1, rows: chunk.rows, counters });
       }
       progress.advance(count, known);
       return run.enough?.(resultsOf(plan)) === true ? 'stop' : undefined;
@@ -85,7 +97,19 @@ export async function runPlans(run: PlanRun): Promise<PlanOutcome> {
     results: plans.map((_, plan) => resultsOf(plan)),
     interrupted: ended === 'aborted',
     trialsPerSecond: Math.round(fresh / seconds),
+    chunks: jobs.length,
   };
+}
+
+/** @throws InputError `run/changed` for a chunk of another value, as another version of the search left it */
+function keptChunk({ number, rows, counters }: Chunk, value: number | undefined): TrialChunk {
+  const [clamped, of] = counters;
+  if (of === value) return { rows, clamped: clamped! };
+  throw new InputError(
+    'run/changed',
+    `chunk ${number} of what is kept is of the value ${of}, where this run tries ${value}`,
+    'Begin anew with --force.',
+  );
 }
 
 /** All judged figures are held in memory until they are written, in all about 60 bytes each: two gigabytes are enough. */
@@ -103,20 +127,16 @@ function requireRoom(plans: readonly TrialPlan[], trials: number): void {
 
 type ChunkHandling = Required<Pick<PoolRun<TrialJob, TrialChunk>, 'known' | 'onResult'>>;
 
-/** Runs jobs, on workers if there are several: to start a worker takes longer than a chunk. */
+/** To start workers takes as long as so many chunks, which a search would pay at each of its values. */
+const FEW_CHUNKS = 4;
+
+/** Runs jobs, on workers if there are more than a few. */
 async function endOf(
   { plans, workers, signal }: PlanRun,
   jobs: readonly TrialJob[],
   chunks: ChunkHandling,
 ): Promise<PoolOutcome['ended']> {
-  const [job, second] = jobs;
-  if (job !== undefined && second === undefined) {
-    // Lets signals in, which a search of many such runs would not.
-    await new Promise((resolve) => setImmediate(resolve));
-    if (signal?.aborted === true) return 'aborted';
-    await chunks.onResult((await chunks.known(job)) ?? runHere(plans[0]!, job), job);
-    return 'all';
-  }
+  if (jobs.length <= FEW_CHUNKS) return endOfFew(plans, jobs, chunks, signal);
   const outcome = await runChunks<TrialJob, TrialChunk>({
     workers,
     entry: new URL('./trialWorker.js', import.meta.url),
@@ -129,17 +149,31 @@ async function endOf(
   return outcome.ended;
 }
 
-function runHere(plan: TrialPlan, { first, count }: TrialJob): TrialChunk {
-  const rows = new Float64Array(count * plan.figures.length);
-  return { rows, clamped: createTrialEngine(plan).run(first, count, rows) };
+/** The same as the workers do, here. */
+async function endOfFew(
+  plans: readonly TrialPlan[],
+  jobs: readonly TrialJob[],
+  chunks: ChunkHandling,
+  signal: AbortSignal | undefined,
+): Promise<PoolOutcome['ended']> {
+  const run = trialRunner(plans);
+  for (const job of jobs) {
+    // Lets signals in.
+    await new Promise((resolve) => setImmediate(resolve));
+    if (signal?.aborted === true) return 'aborted';
+    const verdict = await chunks.onResult((await chunks.known(job)) ?? run(job), job);
+    if (verdict === 'stop') return 'stopped';
+  }
+  return 'all';
 }
 
-function jobsOf(plans: readonly TrialPlan[], trials: number): TrialJob[] {
+function jobsOf(plans: readonly TrialPlan[], trials: number, before: number): TrialJob[] {
   const jobs: TrialJob[] = [];
   plans.forEach((plan, index) => {
     const size = chunkTrials(plan);
     for (let first = 0; first < trials; first += size) {
-      jobs.push({ plan: index, number: jobs.length + 1, first, count: Math.min(size, trials - first) });
+      const number = before + jobs.length + 1;
+      jobs.push({ plan: index, number, first, count: Math.min(size, trials - first) });
     }
   });
   return jobs;

@@ -156,7 +156,7 @@ async function changedChip(file: ChipFile, quantity: DesignQuantity, value: numb
       throw new InputError(
         'usage/sweep',
         'the chip has measuredCells, whose ratios take the place of the nominal one',
-        'Sweep couplingRatio on a chip file without them, or sweep bias.',
+        'Give a chip file without them, or take bias instead.',
       );
     }
     return chipFromDocument({ ...file, couplingRatio: value });
@@ -168,7 +168,7 @@ async function changedChip(file: ChipFile, quantity: DesignQuantity, value: numb
       throw new InputError(
         'usage/sweep',
         `the chip has ${key}, which belong to ${file.modes} ports`,
-        'Sweep modes with --layout, or with a chip file that lists nothing port by port or cell by cell.',
+        'Give --layout instead, or a chip file that lists nothing port by port or cell by cell.',
       );
     }
   }
@@ -191,7 +191,7 @@ function openModes(argument: string): InputError {
   return new InputError(
     'usage/modes',
     `the number of ports N of ${argument} is not known`,
-    'Write a number for it, name a chip with --chip, or sweep it: yield --sweep modes=4:16:7.',
+    'Write a number for it, name a chip with --chip, or vary it: --sweep modes=4:16:7, tolerance --source modes.',
   );
 }
 
@@ -199,6 +199,6 @@ function fixedModes(argument: string): InputError {
   return new InputError(
     'usage/sweep',
     `the number of ports of ${argument} is fixed`,
-    'Write N for it, such as haar(N) or dft(N), to sweep modes.',
+    'Write N for it, such as haar(N) or dft(N), to vary modes.',
   );
 }

@@ -1,35 +1,4 @@
 import { serveJobs } from '../files/serveJobs.js';
-import type { TrialEngine } from '../tolerance/createTrialEngine.js';
-import { createTrialEngine } from '../tolerance/createTrialEngine.js';
-import type { TrialPlan } from '../tolerance/TrialPlan.js';
+import { trialRunner } from './trialRunner.js';
 
-/** Trials of one plan, to be run by a worker. */
-export interface TrialJob {
-  /** Index of the plan in the setup. */
-  readonly plan: number;
-  /** Chunk number over all plans, from 1. */
-  readonly number: number;
-  /** Index of the first trial, from 0. */
-  readonly first: number;
-  readonly count: number;
-}
-
-export interface TrialChunk {
-  readonly rows: Float64Array;
-  readonly clamped: number;
-}
-
-serveJobs(
-  (plans: readonly TrialPlan[]) => {
-    // Plans come one after another: an engine is kept until the next one begins.
-    let current: { readonly index: number; readonly engine: TrialEngine } | undefined;
-    return ({ plan: index, first, count }: TrialJob): TrialChunk => {
-      const plan = plans[index]!;
-      if (current?.index !== index) current = { index, engine: createTrialEngine(plan) };
-      const rows = new Float64Array(count * plan.figures.length);
-      const clamped = current.engine.run(first, count, rows);
-      return { rows, clamped };
-    };
-  },
-  ({ rows }) => [rows.buffer],
-);
+serveJobs(trialRunner, ({ rows }) => [rows.buffer]);

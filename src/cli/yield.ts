@@ -64,7 +64,10 @@ export function addYieldCommand(parent: Command, setExitCode: (code: number) => 
       '--sweep <quantity=from:to:points>',
       'the yield against one quantity, such as sigma=0.005:0.05:10',
     )
-    .option('--budget', 'what each error source costs, alone and together');
+    .option(
+      '--budget',
+      'what each error source costs, alone and together, and what each correlation changes',
+    );
   addChipOptions(command);
   addTargetOptions(command);
   addOutputOptions(command)

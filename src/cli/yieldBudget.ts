@@ -2,8 +2,11 @@ import { printableText } from '../figure/printableText.js';
 import { InputError } from '../errors/InputError.js';
 import { runIdentity } from '../files/contentHash.js';
 import { summarise } from '../statistics/summary.js';
-import { aloneWith, COSTLY_SOURCES, without } from '../tolerance/errorSources.js';
-import { columnOf, judgedFigures } from '../tolerance/thresholds.js';
+import { aloneWith, CORRELATIONS, COSTLY_SOURCES, without } from '../tolerance/errorSources.js';
+import type { MeanEstimate } from '../figure/drawBudget.js';
+import type { Merit } from '../merit/merit.js';
+import type { Threshold } from '../tolerance/thresholds.js';
+import { columnOf, countPassed, judgedFigures } from '../tolerance/thresholds.js';
 import { createConsole } from './console.js';
 import { shownSource } from './figureText.js';
 import { finish } from './finish.js';
@@ -18,7 +21,10 @@ import { planOf } from './trialScenario.js';
 import type { YieldOptions } from './yieldParts.js';
 import { percent, scenarioBlocks, settledOptions, yieldBlock, yieldFolder } from './yieldParts.js';
 
-/** `yield --budget`: what each error source costs alone, and what would be left without it. */
+/**
+ * `yield --budget`: what each error source costs alone, and what would be left without it; what would be left
+ * without each correlation.
+ */
 export async function runBudget(scenario: Scenario, options: YieldOptions): Promise<number> {
   const console = createConsole(options);
   const errors = processOf(scenario.readChip.chip.process, options);
@@ -26,7 +32,8 @@ export async function runBudget(scenario: Scenario, options: YieldOptions): Prom
   const figures = judgedFigures(thresholds);
   const settled = { retune: options.retune, seed: options.seed, figures };
   const sources = COSTLY_SOURCES.filter((source) => errors[source] !== 0);
-  if (sources.length < 2) {
+  const correlations = CORRELATIONS.filter((source) => errors[source] !== 0);
+  if (sources.length + correlations.length < 2) {
     throw new InputError(
       'usage/budget',
       `there is one error source only, ${sources[0]}`,
@@ -37,10 +44,10 @@ export async function runBudget(scenario: Scenario, options: YieldOptions): Prom
     errors,
     sources.reduce(without, errors),
     ...sources.map((source) => aloneWith(errors, source)),
-    ...sources.map((source) => without(errors, source)),
+    ...[...sources, ...correlations].map((source) => without(errors, source)),
   ].map((process) => planOf(scenario, process, settled));
   const folder = options.out ?? `${yieldFolder(scenario)}-budget`;
-  const identity = { ...settledOptions(options), errors, thresholds, budget: true };
+  const identity = { ...settledOptions(options), errors, thresholds, budget: [...sources, ...correlations] };
   const runId = runIdentity('yield', scenario.inputs, identity);
   const kept = {
     console,
@@ -61,20 +68,40 @@ export async function runBudget(scenario: Scenario, options: YieldOptions): Prom
     const budget = sources
       .map((source, k) => ({ source, alone: rest[k]!, without: rest[sources.length + k]! }))
       .sort((a, b) => b.alone.infidelity.mean - a.alone.infidelity.mean);
-    const costs: Budget = { together: together!, withoutErrors: withoutErrors!, budget };
+    const [asTheyStand] = outcome.results;
+    const uncorrelated = outcome.results.slice(-correlations.length);
+    const shaped = correlations
+      .map((source, k) => ({
+        source,
+        without: rest[2 * sources.length + k]!,
+        change: changeBetween(uncorrelated[k]!, asTheyStand!, figures, thresholds),
+      }))
+      .sort((a, b) => Math.abs(b.change.yield.mean) - Math.abs(a.change.yield.mean));
+    const costs: Budget = {
+      together: together!,
+      withoutErrors: withoutErrors!,
+      budget,
+      ...(shaped.length === 0 ? {} : { correlations: shaped }),
+    };
     const { drawBudget } = await import('../figure/drawBudget.js');
     const caption = `target: ${shownSource(scenario.source)}; ${options.trials} chips each; retuning: ${options.retune}`;
     const svg = drawBudget(
-      budget.map(({ source, alone, without: rest }) => ({
-        source,
-        alone: alone.infidelity,
-        without: rest.infidelity,
-      })),
-      together!.infidelity,
+      [
+        ...budget.map(({ source, alone, without: rest }) => ({
+          source,
+          alone: barOf(alone),
+          without: barOf(rest),
+        })),
+        ...shaped.map(({ source, without: rest }) => ({ source, without: barOf(rest) })),
+      ],
+      barOf(together!),
       {
         confidence: options.confidence,
         title: scenario.readChip.chip.name,
-        captionLines: [caption, `without any errors: ${shortNumber(withoutErrors!.infidelity.mean)}`],
+        captionLines: [
+          caption,
+          `without any errors: ${shortNumber(Math.max(0, withoutErrors!.infidelity.mean))}`,
+        ],
       },
     );
     await finish(console, options, {
@@ -104,12 +131,20 @@ export async function runBudget(scenario: Scenario, options: YieldOptions): Prom
   });
 }
 
+interface Mean {
+  readonly mean: number;
+  readonly standardError: number | null;
+}
+
 interface BudgetCost {
-  readonly infidelity: { readonly mean: number; readonly standardError: number | null };
+  readonly infidelity: Mean;
   readonly yield: { readonly share: number; readonly low: number; readonly high: number };
 }
 
-/** What was found of all sources together, of none, and of each, the most expensive one first. */
+/**
+ * What was found of all sources together, of none, of each, the most expensive one first, and of the
+ * correlations, the one first that changes the yield most.
+ */
 interface Budget {
   readonly together: BudgetCost;
   readonly withoutErrors: BudgetCost;
@@ -118,9 +153,50 @@ interface Budget {
     readonly alone: BudgetCost;
     readonly without: BudgetCost;
   }[];
+  /** Absent when nothing is correlated. */
+  readonly correlations?: readonly {
+    readonly source: string;
+    /** All errors as they stand, but without this correlation. */
+    readonly without: BudgetCost;
+    readonly change: Change;
+  }[];
 }
 
-function budgetCsv({ together, withoutErrors, budget }: Budget): string {
+/**
+ * What a correlation changes: all errors as they stand, less the same without it. The same random numbers are
+ * behind both, so that this is known better than either.
+ */
+interface Change {
+  readonly infidelity: Mean;
+  /** Of the share of good chips. */
+  readonly yield: Mean;
+}
+
+function changeBetween(
+  before: PlanResults,
+  after: PlanResults,
+  figures: readonly (keyof Merit)[],
+  thresholds: readonly Threshold[],
+): Change {
+  const columns = figures.length;
+  const difference = (valueOf: (row: Float64Array) => number): Mean => {
+    const at = ({ rows }: PlanResults, trial: number): number =>
+      valueOf(rows.subarray(trial * columns, (trial + 1) * columns));
+    const each = Float64Array.from({ length: after.trials }, (_, k) => at(after, k) - at(before, k));
+    const { mean, standardError } = summarise(each);
+    return { mean, standardError };
+  };
+  return {
+    infidelity: difference(([fidelity]) => 1 - fidelity!),
+    yield: difference((row) => countPassed(row, figures, thresholds)),
+  };
+}
+
+function barOf({ infidelity, yield: { share } }: BudgetCost): MeanEstimate {
+  return { ...infidelity, share };
+}
+
+function budgetCsv({ together, withoutErrors, budget, correlations = [] }: Budget): string {
   const fields = ({ infidelity, yield: { share } }: BudgetCost): (number | string)[] => [
     infidelity.mean,
     infidelity.standardError ?? '',
@@ -132,13 +208,14 @@ function budgetCsv({ together, withoutErrors, budget }: Budget): string {
     ['all', ...fields(together), '', '', ''],
     ['none', ...fields(withoutErrors), '', '', ''],
     ...budget.map(({ source, alone, without: rest }) => [source, ...fields(alone), ...fields(rest)]),
+    ...correlations.map(({ source, without: rest }) => [source, '', '', '', ...fields(rest)]),
   ];
   return `${[header, ...rows.map((row) => row.join(','))].join('\n')}\n`;
 }
 
-function budgetTable({ together, withoutErrors, budget }: Budget): string {
+function budgetTable({ together, withoutErrors, budget, correlations = [] }: Budget): string {
   const fields = ({ infidelity, yield: { share } }: BudgetCost): string[] => [
-    shortNumber(infidelity.mean),
+    shortNumber(Math.max(0, infidelity.mean)),
     percent(share),
   ];
   return textTable(
@@ -146,6 +223,7 @@ function budgetTable({ together, withoutErrors, budget }: Budget): string {
     [
       ['all together', ...fields(together), '', ''],
       ...budget.map(({ source, alone, without: rest }) => [source, ...fields(alone), ...fields(rest)]),
+      ...correlations.map(({ source, without: rest }) => [source, '', '', ...fields(rest)]),
       ['no errors', ...fields(withoutErrors), '', ''],
     ],
   );

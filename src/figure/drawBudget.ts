@@ -20,14 +20,16 @@ import { cutText, guardedTextWidth, wrapText } from './textWidth.js';
 export interface MeanEstimate {
   readonly mean: number;
   readonly standardError: number | null;
+  /** Share of good chips in [0, 1], in brackets behind the mean. */
+  readonly share?: number;
 }
 
 /** What one source of error costs. */
 export interface BudgetRow {
   readonly source: string;
-  /** With this source alone. */
-  readonly alone: MeanEstimate;
-  /** With all sources but this one. */
+  /** With this source alone; absent for a correlation, which is nothing alone. */
+  readonly alone?: MeanEstimate;
+  /** With all sources but this one, or without this correlation. */
   readonly without: MeanEstimate;
 }
 
@@ -52,10 +54,13 @@ const LABEL_SHARE = 0.36;
 const MOST_LABEL_LINES = 2;
 const LOG_FROM_RATIO = 30;
 const TOGETHER = 'all sources together';
+const SHARES_NOTE = 'In brackets: share of good chips.';
 
 /** One bar: what is drawn in a row of the figure. */
 interface Bar {
   readonly id: string;
+  /** Words between the label and the value, for those who do not see the figure. */
+  readonly what: string;
   readonly estimate: MeanEstimate;
   readonly colour: string;
 }
@@ -86,9 +91,12 @@ export function drawBudget(
   const reach = -normalQuantile((1 - confidence) / 2);
   const blocks = blocksOf(rows, together);
   const description = `${label} by source of error: ${blocks.map(blockText).join('; ')}.`;
-  const notes = [`Whiskers: ${limitText(100 * confidence)} % interval of the mean.`];
+  const notes = [
+    `Whiskers: ${limitText(100 * confidence)} % interval of the mean.`,
+    ...(together.share === undefined ? [] : [SHARES_NOTE]),
+  ];
   return figurePage(options, { name: `Error budget: ${label}`, description }, (page, width, top) => {
-    const areaTop = drawKey(page, keyOf(), width, top) + 0.8;
+    const areaTop = drawKey(page, keyOf(rows), width, top) + 0.8;
     const frame = budgetFrame(blocks, options, reach, width, areaTop);
     const data = page.add('g', { 'id': 'data', 'font-size': SMALL_TEXT });
     drawBlocks(data, frame, reach);
@@ -98,7 +106,10 @@ export function drawBudget(
 
 function requireRows(rows: readonly BudgetRow[], together: MeanEstimate): void {
   if (rows.length === 0) throw new RangeError('there are no sources of error to draw');
-  for (const { mean, standardError } of [together, ...rows.flatMap((row) => [row.alone, row.without])]) {
+  const estimates = rows.flatMap(({ alone, without }) =>
+    alone === undefined ? [without] : [alone, without],
+  );
+  for (const { mean, standardError } of [together, ...estimates]) {
     if (!(
       Number.isFinite(mean) &&
       (standardError === null || (standardError >= 0 && standardError < Infinity))
@@ -109,28 +120,43 @@ function requireRows(rows: readonly BudgetRow[], together: MeanEstimate): void {
 }
 
 function blocksOf(rows: readonly BudgetRow[], together: MeanEstimate): Block[] {
-  const ranked = [...rows].sort((one, other) => other.alone.mean - one.alone.mean);
+  const bar = (id: string, what: string, estimate: MeanEstimate, colour: string): Bar => ({
+    id,
+    what,
+    estimate,
+    colour,
+  });
+  const cost = ({ alone }: BudgetRow): number => alone?.mean ?? -Infinity;
+  const ranked = [...rows].sort((one, other) => (cost(one) === cost(other) ? 0 : cost(other) - cost(one)));
   return [
-    { label: TOGETHER, bars: [{ id: 'together', estimate: together, colour: INK }] },
+    { label: TOGETHER, bars: [bar('together', '', together, INK)] },
     ...ranked.map(({ source, alone, without }, i) => ({
       label: printableText(source),
-      bars: [
-        { id: `alone-${i + 1}`, estimate: alone, colour: PASS_COLOUR },
-        { id: `without-${i + 1}`, estimate: without, colour: FAIL_COLOUR },
-      ],
+      bars:
+        alone === undefined
+          ? [bar(`without-${i + 1}`, ' left out', without, FAIL_COLOUR)]
+          : [
+              bar(`alone-${i + 1}`, ' alone', alone, PASS_COLOUR),
+              bar(`without-${i + 1}`, ' all but this one', without, FAIL_COLOUR),
+            ],
     })),
   ];
 }
 
 function blockText({ label, bars }: Block): string {
-  const [first, second] = bars.map(({ estimate }) => quantityText(estimate.mean));
-  return second === undefined ? `${label} ${first}` : `${label} alone ${first}, all but this one ${second}`;
+  return `${label}${bars.map(({ what, estimate }) => `${what} ${valueText(estimate)}`).join(',')}`;
 }
 
-function keyOf(): KeyEntry[] {
+function valueText({ mean, share }: MeanEstimate): string {
+  return share === undefined ? quantityText(mean) : `${quantityText(mean)} (${quantityText(100 * share)} %)`;
+}
+
+function keyOf(rows: readonly BudgetRow[]): KeyEntry[] {
+  const correlated = rows.some(({ alone }) => alone === undefined);
+  const others = correlated ? 'all but this one' : 'all sources but this one';
   return [
     { kind: 'box', colour: PASS_COLOUR, text: 'this source alone' },
-    { kind: 'box', colour: FAIL_COLOUR, text: 'all sources but this one' },
+    { kind: 'box', colour: FAIL_COLOUR, text: others },
   ];
 }
 
@@ -181,8 +207,8 @@ function labelLines(label: string, room: number): string[] {
   return [...lines.slice(0, MOST_LABEL_LINES - 1), cutText(rest, room, SMALL_TEXT)];
 }
 
-function valueWidth({ mean }: MeanEstimate): number {
-  return guardedTextWidth(quantityText(mean), SMALL_TEXT) + 0.6;
+function valueWidth(estimate: MeanEstimate): number {
+  return guardedTextWidth(valueText(estimate), SMALL_TEXT) + 0.6;
 }
 
 function spansDecades(bars: readonly Bar[]): boolean {
@@ -230,7 +256,7 @@ function drawBar(row: SvgPart, area: PlotArea, bar: Bar, y: number, log: boolean
   const dot = log ? BAR / 2 : 0;
   const start = log ? area.left : area.x(0);
   const end = mean > 0 || !log ? Math.max(start, area.x(mean) + dot, area.x(mean + half)) : start;
-  part.addText('text', quantityText(mean), { x: end + VALUE_GAP, y: y + HALF_DIGIT });
+  part.addText('text', valueText(bar.estimate), { x: end + VALUE_GAP, y: y + HALF_DIGIT });
 }
 
 function drawSolidBar(part: SvgPart, zero: number, end: number, y: number, fill: string): void {

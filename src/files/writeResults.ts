@@ -139,10 +139,14 @@ function refuseReportName({ path }: NamedFile, folder: string): void {
   );
 }
 
+/** What an earlier run left. */
 interface EarlierReport {
   readonly runId: string;
   readonly command: string;
+  /** Names of its files, without the report. */
   readonly files: readonly string[];
+  /** The run came to its end, and all of its files are there. */
+  readonly whole: boolean;
 }
 
 /**
@@ -151,7 +155,9 @@ interface EarlierReport {
  */
 async function readEarlierReport(folder: string): Promise<EarlierReport | undefined> {
   try {
-    const report = JSON.parse(await readFile(join(folder, REPORT_FILE), 'utf8')) as Partial<EarlierReport>;
+    const report = JSON.parse(await readFile(join(folder, REPORT_FILE), 'utf8')) as Partial<EarlierReport> & {
+      readonly interrupted?: boolean;
+    };
     if (typeof report.runId !== 'string') return undefined;
     const names: readonly unknown[] = Array.isArray(report.files) ? report.files : [];
     const files = names.filter(
@@ -162,6 +168,7 @@ async function readEarlierReport(folder: string): Promise<EarlierReport | undefi
       runId: report.runId,
       command: String(report.command),
       files: files.filter((name) => name !== REPORT_FILE),
+      whole: report.interrupted !== true && files.every((name) => existsSync(join(folder, name))),
     };
   } catch {
     return undefined;

@@ -28,6 +28,12 @@ export const COSTLY_SOURCES = [
   'lossSigmaDb',
 ] as const satisfies readonly ErrorSource[];
 
+/** What shapes local errors, and costs nothing where there are none. */
+export const CORRELATIONS = [
+  'pairCorrelation',
+  'correlationLength',
+] as const satisfies readonly ErrorSource[];
+
 /** Least and greatest value of each source. */
 const LIMITS: Readonly<Record<ErrorSource, readonly [low: number, high: number]>> = {
   sigma: [0, 10],

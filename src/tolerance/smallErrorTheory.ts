@@ -163,3 +163,31 @@ export function toleranceTheory(
   const factor = 1 + (CHIP_SCATTER / chip.mesh.modes) * quantile;
   return factor > 0 ? Math.sqrt(allowed / (unit * factor)) : null;
 }
+
+/** Largest 1 - F of a chip that counts as flawless. */
+const FLAWLESS = 1e-9;
+
+/**
+ * The same for the number of ports N, not rounded: L grows as N - 1, and the scatter falls as 1/N, so that u (N -
+ * 1) (1 + z 2.2/N) = 1 - limit, u the mean infidelity by the port and z the quantile. Null for chips that are
+ * not flawless themselves, or not alike in all splitters.
+ * @param plan of chips with any number of ports from 2 on
+ */
+export function portsTheory(
+  plan: TrialPlan,
+  fidelityLimit: number,
+  quantile: number,
+  infidelityWithoutErrors: number | null,
+): number | null {
+  const { chip, retune } = plan;
+  if (!(infidelityWithoutErrors !== null && infidelityWithoutErrors < FLAWLESS) || retune !== 'none')
+    return null;
+  const leading = leadingInfidelity(chip, plan.errors);
+  const alike = chip.couplingRatios.every((ratio) => ratio === chip.couplingRatios[0]);
+  if (leading === null || !alike || infidelityTheory(plan, 0) === null) return null;
+  const allowedPorts = ((1 - fidelityLimit) * (chip.mesh.modes - 1)) / leading;
+  const scatter = CHIP_SCATTER * quantile;
+  const half = (allowedPorts + 1 - scatter) / 2;
+  const square = half ** 2 + scatter;
+  return square >= 0 && half + Math.sqrt(square) >= 2 ? half + Math.sqrt(square) : null;
+}

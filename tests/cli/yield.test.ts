@@ -33,6 +33,17 @@ interface Block {
   readonly worst: { readonly value: number; readonly trial: number };
 }
 
+interface Mean {
+  readonly mean: number;
+  readonly standardError: number;
+}
+
+/** What a row of a budget costs. */
+interface Cost {
+  readonly infidelity: Mean;
+  readonly yield: { readonly share: number };
+}
+
 function reportOf(text: string): YieldReport {
   return JSON.parse(text) as YieldReport;
 }
@@ -159,6 +170,7 @@ describe('yield, small runs', () => {
     ...['fidelity=0.5', 'averageGateFidelity=0.5', 'portPhaseFreeFidelity=0.9', 'rmsError=1'],
     ...['worstCaseError=1', 'powerDistance=0.1', 'transmission=0.3', 'transmissionDb=-6'],
   ].flatMap((threshold) => ['--threshold', threshold]);
+  const CORRELATED = '--sigma 0.022 --error phaseSigma=0.01 --error pairCorrelation=0.4';
   const CALLS: Readonly<Record<string, string>> = {
     'all figures': `yield haar(4,3) --chip m.chip.json --trials 33 --retune cell ${ALL_FIGURES.join(' ')}`,
     'half pass': 'yield haar(4) --sigma 0.035 --trials 201 --confidence 0.9',
@@ -183,6 +195,10 @@ describe('yield, small runs', () => {
     'sweep loss': 'yield dft(2) --sigma 1e-7 --sweep lossDb=0:0.4:3 --trials 3 --threshold transmission=0.9',
     'sweep bits': 'yield dft(3) --sweep bits=2:6:3 --trials 10',
     'budget': 'yield dft(4) --sigma 0.02 --error phaseSigma=0.02 --error bits=7 --budget --trials 400',
+    'correlated budget': `yield haar(6) ${CORRELATED} --error correlationLength=4 --budget --trials 901`,
+    'budget of one source': 'yield dft(3) --sigma 0.02 --error pairCorrelation=-0.5 --budget --trials 40',
+    'correlated': `yield haar(6) ${CORRELATED} --error correlationLength=4 --trials 901`,
+    'uncorrelated': `yield haar(6) ${CORRELATED} --trials 901`,
     'sigma alone': 'yield dft(4) --sigma 0.02 --trials 400',
     'phases alone': 'yield dft(4) --error phaseSigma=0.02 --trials 400',
   };
@@ -359,6 +375,58 @@ describe('yield, small runs', () => {
     expect(together.infidelity.mean).toBeGreaterThan(costs[0]!);
     expect(await runOf('budget').read('r/budget.csv')).toMatch(/^source,aloneInfidelity,/);
     expect(await runOf('budget').read('r/budget.svg')).toMatch(/^<svg/);
+  });
+
+  it('shows what would be left without each correlation, and what it changes', async () => {
+    const { budget, together, correlations } = asRecord(runOf('correlated budget').stdout) as unknown as {
+      readonly together: Cost;
+      readonly budget: readonly { source: string; alone: Cost; without: Cost }[];
+      readonly correlations: readonly { source: string; without: Cost; change: Record<string, Mean> }[];
+    };
+    // Rows of sources are as they were: no correlation stands among them.
+    expect(budget.map(({ source }) => source)).toEqual(['sigma', 'phaseSigma']);
+    expect(correlations.map(({ source }) => source).sort()).toEqual(['correlationLength', 'pairCorrelation']);
+    const row = correlations.find(({ source }) => source === 'correlationLength')!;
+    // The same chips as runs of their own.
+    const [before, after] = ['uncorrelated', 'correlated'].map(report) as [YieldReport, YieldReport];
+    expect(row.without.infidelity.mean).toBeCloseTo(1 - before.fidelity.mean, 14);
+    expect(row.without.yield.share).toBe(before.yield.share);
+    expect(together.infidelity.mean).toBeCloseTo(1 - after.fidelity.mean, 14);
+    // Trial by trial, with the textbook standard error of a difference of pairs.
+    const [rowsBefore, rowsAfter] = [
+      (await rowsOf('uncorrelated')).values,
+      (await rowsOf('correlated')).values,
+    ];
+    const good = (fidelity: number): number => (fidelity >= 0.99 ? 1 : 0);
+    const pairs: Record<string, Float64Array> = {
+      infidelity: rowsBefore.map((fidelity, k) => fidelity - rowsAfter[k]!),
+      yield: rowsAfter.map((fidelity, k) => good(fidelity) - good(rowsBefore[k]!)),
+    };
+    for (const [key, differences] of Object.entries(pairs)) {
+      const mean = differences.reduce((sum, each) => sum + each, 0) / 901;
+      const squares = differences.reduce((sum, each) => sum + (each - mean) ** 2, 0);
+      expect(row.change[key]!.mean).toBeCloseTo(mean, 13);
+      expect(row.change[key]!.standardError).toBeCloseTo(Math.sqrt(squares / 900 / 901), 13);
+    }
+    // Errors that neighbours have in common scatter more from chip to chip, and fewer chips are good.
+    expect(row.change['yield']!.mean).toBeLessThan(-4 * row.change['yield']!.standardError);
+    const csv = (await runOf('correlated budget').read('r/budget.csv')).trimEnd().split('\n');
+    expect(csv).toHaveLength(1 + 2 + 2 + 2);
+    const { infidelity, yield: share } = row.without;
+    expect(csv).toContain(
+      `correlationLength,,,,${infidelity.mean},${infidelity.standardError},${share.share}`,
+    );
+    expect(await runOf('correlated budget').read('r/budget.svg')).toContain('correlationLength left out');
+    // Without correlations nothing is said of them; one source and one correlation are two to compare.
+    expect(asRecord(runOf('budget').stdout)).not.toHaveProperty('correlations');
+    const one = asRecord(runOf('budget of one source').stdout) as unknown as {
+      readonly budget: readonly unknown[];
+      readonly correlations: readonly { readonly source: string }[];
+    };
+    expect([one.budget.length, one.correlations.map(({ source }) => source)]).toEqual([
+      1,
+      ['pairCorrelation'],
+    ]);
   });
 
   it('leaves no chunks behind', () => {

@@ -97,7 +97,7 @@ describe('yield and tolerance, help', () => {
     const common = ['--trials', '--threshold', '--confidence', '--retune', '--sigma', '--error', '--seed'];
     const own = ['--within', '--resume', '--trial ', '--sweep', '--budget', '--workers', 'default: 10000'];
     for (const word of [...all, ...common, ...own]) expect(yieldHelp!.stdout).toContain(word);
-    for (const word of [...sources, ...common, '--source', '--yield', '--workers']) {
+    for (const word of [...all, ...common, '--source', '--yield', '--workers', '--resume']) {
       expect(toleranceHelp!.stdout).toContain(word);
     }
   });

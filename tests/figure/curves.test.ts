@@ -103,6 +103,16 @@ const FAR_ROWS: readonly BudgetRow[] = [
   { source: 'one trial', alone: { mean: 3e-9, standardError: null }, without: estimate(7e-3) },
   { source: 'nothing', alone: { mean: 0, standardError: 0 }, without: { mean: 1e-5, standardError: 1e-5 } },
 ];
+/** With correlations, which are nothing alone, in an order of their own, and with shares of good chips. */
+const CORRELATED_ROWS: readonly BudgetRow[] = [
+  { source: 'correlationLength', without: { ...estimate(6e-3), share: 0.9648 } },
+  { source: 'pairCorrelation', without: { ...estimate(6.9e-3), share: 0.92 } },
+  ...ROWS.map((row) => ({
+    ...row,
+    alone: { ...row.alone!, share: 1 },
+    without: { ...row.without, share: 0.5 },
+  })),
+];
 
 /** No text leaves the page, overlaps another or is smaller than 6 pt. */
 function expectLegible(svg: string, what: string): XmlElement {
@@ -195,7 +205,7 @@ describe('curve figures are legible', () => {
   });
 
   it('budgets, on either axis and narrow', () => {
-    for (const rows of [ROWS, FAR_ROWS, ROWS.slice(0, 1)]) {
+    for (const rows of [ROWS, FAR_ROWS, ROWS.slice(0, 1), CORRELATED_ROWS]) {
       for (const width of [40, 'one-column', 'two-column'] as const) {
         for (const log of [true, false, undefined]) {
           const options = { width, title: LONG, captionLines: [LONG], ...(log === undefined ? {} : { log }) };
@@ -371,6 +381,31 @@ describe('a budget', () => {
     expect(titles[0]).toBe('all sources together 0.0078');
     expect(titles[1]).toBe('sigma alone 0.0056, all but this one 0.002');
     expect(titles[3]).toBe('bits alone 0.0008, all but this one 0.007');
+  });
+
+  it('shows below them what is left without each correlation, and the shares of good chips in brackets', () => {
+    const root = readXml(drawBudget(CORRELATED_ROWS, { ...estimate(7.8e-3), share: 0.9 }));
+    const titles = [0, 1, 4, 5].map((row) => byId(root, `row-${row}`).children[0]!.text);
+    expect(titles).toEqual([
+      'all sources together 0.0078 (90 %)',
+      'sigma alone 0.0056 (100 %), all but this one 0.002 (50 %)',
+      'correlationLength left out 0.006 (96.5 %)',
+      'pairCorrelation left out 0.0069 (92 %)',
+    ]);
+    expect(ofClass(root, 'bar')).toHaveLength(1 + 2 * 3 + 2);
+    // One bar each, in the colour of what is left without something.
+    const [bar, second] = ofClass(byId(root, 'row-4'), 'bar');
+    expect([bar!.attributes.get('fill'), second]).toEqual([
+      ofClass(byId(root, 'without-1'), 'bar')[0]!.attributes.get('fill'),
+      undefined,
+    ]);
+    const toValue = horizontalScale(root, false);
+    expect(toValue(numberOf(bar!, 'x') + numberOf(bar!, 'width'))).toBeCloseTo(6e-3, 5);
+    expect(
+      named(root, 'text')
+        .map(({ text }) => text)
+        .join(' '),
+    ).toContain('share of good chips');
   });
 
   it('has bars as long as the numbers beside them, and whiskers of 1.96 standard errors', () => {

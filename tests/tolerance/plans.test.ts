@@ -4,6 +4,8 @@ import { InputError } from '../../src/errors/InputError.js';
 import { chunkTrials } from '../../src/tolerance/chunking.js';
 import {
   aloneWith,
+  CORRELATIONS,
+  COSTLY_SOURCES,
   ERROR_SOURCES,
   errorSource,
   hasErrors,
@@ -124,10 +126,11 @@ describe('error sources', () => {
   it('cost something by themselves, correlations do not', () => {
     expect(hasErrors(NO_ERRORS)).toBe(false);
     for (const source of ERROR_SOURCES) {
-      const shapesOnly = source === 'pairCorrelation' || source === 'correlationLength';
+      const shapesOnly = CORRELATIONS.some((correlation) => correlation === source);
       expect(hasErrors({ ...NO_ERRORS, [source]: 1 }), source).toBe(!shapesOnly);
     }
     expect(hasErrors({ ...NO_ERRORS, bias: -0.01 })).toBe(true);
+    expect([...COSTLY_SOURCES, ...CORRELATIONS].sort()).toEqual([...ERROR_SOURCES].sort());
   });
 
   it('are looked at alone and left out, the correlations kept', () => {

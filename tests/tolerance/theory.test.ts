@@ -7,7 +7,7 @@ import { LAYOUTS } from '../../src/mesh/Mesh.js';
 import { carryingSweep } from '../../src/program/carryingSweep.js';
 import { simulate } from '../../src/simulate/simulate.js';
 import { normalQuantile } from '../../src/statistics/normalDistribution.js';
-import { infidelityTheory, toleranceTheory } from '../../src/tolerance/smallErrorTheory.js';
+import { infidelityTheory, portsTheory, toleranceTheory } from '../../src/tolerance/smallErrorTheory.js';
 import type { TrialPlan } from '../../src/tolerance/TrialPlan.js';
 import { dft } from '../support/matrices.js';
 import { infidelities, planFor, runPlan } from './trialPlans.js';
@@ -197,5 +197,36 @@ describe('the closed-form tolerance', () => {
     expect(toleranceTheory(plan, 'sigma', 0.99, quantile, null)).toBeNull();
     const half = toleranceTheory(plan, 'sigma', 0.99, quantile, 0.005)!;
     expect(half).toBeCloseTo(toleranceTheory(plan, 'sigma', 0.995, quantile, 0)!, 12);
+  });
+});
+
+describe('the number of ports that keep a fidelity', () => {
+  const z = normalQuantile(0.9);
+  const ports = (errors: Partial<ProcessErrors>, limit = 0.99, modes = 8): number | null =>
+    portsTheory(planFor(modes, errors), limit, z, 0);
+
+  it('is that at which the spread that they stand is the spread that they have', () => {
+    // The other law asked the other way round: chips of so many ports stand this sigma.
+    for (const sigma of [0.005, 0.01, 0.02]) {
+      const found = ports({ sigma })!;
+      const [below, above] = [Math.floor(found), Math.ceil(found)].map((modes) =>
+        toleranceTheory(planFor(modes, { sigma }), 'sigma', 0.99, z, 0)!,
+      );
+      expect([below! >= sigma, above! <= sigma]).toEqual([true, true]);
+    }
+    // It does not matter with how many ports the plan comes.
+    expect(ports({ sigmaAngle: 0.01 }, 0.99, 3)).toBeCloseTo(ports({ sigmaAngle: 0.01 })!, 9);
+  });
+
+  it('is nothing to say of other errors, flawed chips, retuned ones, or where not even two ports do', () => {
+    expect(ports({ phaseSigma: 0.01 })).toBeNull();
+    expect(ports({ sigma: 0.01, bits: 8 })).toBeNull();
+    expect(ports({ sigma: 0.2 })).toBeNull();
+    const plan = planFor(8, { sigma: 0.01 });
+    expect(portsTheory(plan, 0.99, z, 1e-4)).toBeNull();
+    expect(portsTheory(plan, 0.99, z, null)).toBeNull();
+    expect(portsTheory({ ...plan, retune: 'cell' }, 0.99, z, 0)).toBeNull();
+    const unlike = withRatios(plan, (k) => (k === 2 ? 0.49 : 0.5));
+    expect(portsTheory(unlike, 0.99, z, 0)).toBeNull();
   });
 });
