@@ -75,10 +75,16 @@ export type { RunTrialsOptions, TrialResults } from './tolerance/runTrials.js';
 export { runTrials } from './tolerance/runTrials.js';
 export type { Threshold } from './tolerance/thresholds.js';
 export { columnOf, countPassed, judgedFigures } from './tolerance/thresholds.js';
-export type { ToleranceEstimate, ToleranceSearch, YieldCount } from './tolerance/findTolerance.js';
-export { findFewestBits, findTolerance } from './tolerance/findTolerance.js';
+export type {
+  LadderSearch,
+  ToleranceEstimate,
+  ToleranceSearch,
+  TriedValue,
+  YieldCount,
+} from './tolerance/findTolerance.js';
+export { findFewestBits, findOnLadder, findTolerance } from './tolerance/findTolerance.js';
 export type { InfidelityTheory } from './tolerance/smallErrorTheory.js';
-export { infidelityTheory, toleranceTheory } from './tolerance/smallErrorTheory.js';
+export { infidelityTheory, portsTheory, toleranceTheory } from './tolerance/smallErrorTheory.js';
 
 // Statistics of trials
 export type { Interval } from './statistics/binomialInterval.js';
