@@ -20,7 +20,7 @@ export { prepareTarget } from './target/prepareTarget.js';
 
 // Meshes and chips
 export type { Layout, Mesh, Mirror } from './mesh/Mesh.js';
-export { cellIndexAt, columnCount, createMesh } from './mesh/Mesh.js';
+export { cellIndexAt, coincidentMirror, columnCount, createMesh } from './mesh/Mesh.js';
 export type {
   CellStyle,
   Chip,
@@ -50,7 +50,7 @@ export { listShifters, phaseOf, shifterCount } from './chip/shifters.js';
 // From a target to phases
 export type { Decomposition } from './decompose/Decomposition.js';
 export { reconstruct } from './decompose/Decomposition.js';
-export { decompose } from './decompose/decompose.js';
+export { decompose, decomposeFromFarSide } from './decompose/decompose.js';
 export type { OutOfRange, OutOfReach, Program } from './program/carryingSweep.js';
 export { carryingSweep } from './program/carryingSweep.js';
 export type { ChipPrograms } from './program/programChip.js';

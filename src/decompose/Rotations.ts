@@ -56,7 +56,10 @@ export function setNullingRotation(
   holdInReach(rotations, at, reach.leastBar[cell]!, reach.leastCross[cell]!);
 }
 
-/** Moves a rotation to the nearest one with c >= `leastBar` and |s| >= `leastCross`. */
+/**
+ * Moves a rotation to the nearest one with c >= `leastBar` and |s| >= `leastCross`. The other amplitude is held
+ * too, since a cell that cannot be moved has no room for rounding.
+ */
 function holdInReach(
   { cosine, sineRe, sineIm }: Rotations,
   at: number,
@@ -68,13 +71,14 @@ function holdInReach(
   const si = sineIm[at]!;
   const sineSquare = sr * sr + si * si;
   if (c < leastBar) {
-    const scale = Math.sqrt(((1 - leastBar) * (1 + leastBar)) / sineSquare);
+    const sine = Math.max(leastCross, Math.sqrt((1 - leastBar) * (1 + leastBar)));
+    const scale = sine / Math.sqrt(sineSquare);
     cosine[at] = leastBar;
     sineRe[at] = sr * scale;
     sineIm[at] = si * scale;
   } else if (sineSquare < leastCross * leastCross) {
     const scale = leastCross / Math.sqrt(sineSquare);
-    cosine[at] = Math.sqrt((1 - leastCross) * (1 + leastCross));
+    cosine[at] = Math.max(leastBar, Math.sqrt((1 - leastCross) * (1 + leastCross)));
     sineRe[at] = sineSquare > 0 ? sr * scale : leastCross;
     sineIm[at] = sineSquare > 0 ? si * scale : 0;
   }

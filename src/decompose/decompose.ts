@@ -1,6 +1,7 @@
 import type { MeshReach } from '../chip/MeshReach.js';
 import type { ComplexMatrix } from '../matrix/ComplexMatrix.js';
 import type { Mesh } from '../mesh/Mesh.js';
+import { coincidentMirror } from '../mesh/Mesh.js';
 import type { Decomposition } from './Decomposition.js';
 import { decomposeWith } from './decomposeWith.js';
 import { nullOnKernels } from './nullOnKernels.js';
@@ -10,14 +11,11 @@ import { nullOnKernels } from './nullOnKernels.js';
  * diagonal: Reck's nulling for a triangular mesh, Clements' for a rectangular one, mirrored as the mesh is.
  * Cost (20/3) N^3 flops, on WebAssembly kernels.
  *
- * With a reach the product is the target where every factor is in reach, to the last bit as without one.
- * Elsewhere each step of the nulling takes the nearest factor that its cell can do, all later steps and the
- * diagonal reckon with it, and the product misses the target: to leading order by 1 - F = (2/N) sum over
- * those cells of (e r)^2, e the angle by which the factor was moved and r^2 <= 1 the power in the two entries
- * that it acts on, where moving the factors of a decomposition that is finished costs (2/N) sum e^2. Not by
- * more than the nearest product of factors in reach, to that order: a step leaves its remainder in an entry
- * that no later step touches with others than remainders, so the remainders are orthogonal to each other and
- * to all that the other factors can change. The idea of hardware-aware nulling is that of Hamerly,
+ * With a reach the result is the same, to the last bit, where every factor is in reach. Elsewhere each step of
+ * the nulling takes the nearest factor that its cell can do, and all later steps and the diagonal reckon with
+ * it. The product then misses the target: a factor that is moved by an angle e leaves h sin e where nothing
+ * should be, h^2 <= 1 the power in the two entries on which it acts, and to leading order 1 - F = (2/N) sum (h
+ * e)^2. To move the factors of a finished decomposition costs (2/N) sum e^2. The idea of hardware-aware nulling is that of Hamerly,
  * Bandyopadhyay, Englund, Phys. Rev. Applied 18, 024018 and 024019 (2022), from memory.
  * @param target N x N, unitary within the precision wanted of the result (not checked here)
  * @param reach what the cells of the mesh can do, in cell order; without it, everything
@@ -26,4 +24,20 @@ import { nullOnKernels } from './nullOnKernels.js';
  */
 export function decompose(target: ComplexMatrix, mesh: Mesh, reach: MeshReach | null = null): Decomposition {
   return decomposeWith(nullOnKernels, target, mesh, reach);
+}
+
+/**
+ * The same as {@link decompose}, but nulled from the other side: the lower left triangle of the target turned
+ * upside down or transposed, for the mirrored mesh that has its cells at the same places. Without a reach all
+ * bar powers are equal, since a mesh does a target in one way only up to phases. With one the cells are met in
+ * another order, so that other entries take what they cannot do; neither order is the better one on the
+ * average.
+ * @throws RangeError as `decompose` does
+ */
+export function decomposeFromFarSide(
+  target: ComplexMatrix,
+  mesh: Mesh,
+  reach: MeshReach | null = null,
+): Decomposition {
+  return { ...decompose(target, { ...mesh, mirror: coincidentMirror(mesh) }, reach), mesh };
 }

@@ -1,4 +1,5 @@
 import type { MeshReach } from '../chip/MeshReach.js';
+import { fullReach } from '../chip/MeshReach.js';
 import type { ComplexMatrix } from '../matrix/ComplexMatrix.js';
 import type { Mesh } from '../mesh/Mesh.js';
 import { cellIndexAt } from '../mesh/Mesh.js';
@@ -61,10 +62,12 @@ function placesOnMesh({ cells, columns, firstCellOfColumn }: Mesh, mirrored: Mir
 
 /** The reach of the mirrored mesh's cells in the order of the plain one; no mirror changes powers. */
 function takeFromPlaces({ leastBar, leastCross }: MeshReach, places: Int32Array): MeshReach {
-  return {
-    leastBar: Float64Array.from(places, (place) => leastBar[place]!),
-    leastCross: Float64Array.from(places, (place) => leastCross[place]!),
-  };
+  const plain = fullReach(places.length);
+  for (let cell = 0; cell < places.length; cell++) {
+    plain.leastBar[cell] = leastBar[places[cell]!]!;
+    plain.leastCross[cell] = leastCross[places[cell]!]!;
+  }
+  return plain;
 }
 
 /** Carries the factors of the plain mesh to the cells of the mirrored one. */
@@ -72,11 +75,12 @@ function putAtPlaces(plain: Rotations, places: Int32Array, mirrored: Mirrored): 
   const placed = createRotations(places.length);
   // X W X and W^T both turn s into -conj(s); together they leave it as it was.
   const conjugated = mirrored.ports !== mirrored.columns;
-  places.forEach((place, cell) => {
+  for (let cell = 0; cell < places.length; cell++) {
+    const place = places[cell]!;
     placed.cosine[place] = plain.cosine[cell]!;
     placed.sineRe[place] = conjugated ? -plain.sineRe[cell]! : plain.sineRe[cell]!;
     placed.sineIm[place] = plain.sineIm[cell]!;
-  });
+  }
   return placed;
 }
 

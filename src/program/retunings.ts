@@ -1,6 +1,6 @@
 /**
- * How the phases of a chip are found when its splitters are known, from the least effort on. Each one is at
- * least as good as those before it.
+ * How the phases of a chip are found when its splitters are known, from the least effort on; on the average
+ * each does better than those before it, and `mesh` never worse than `cell`.
  *
  * - `none`: as if all splitters were at 1/2.
  * - `cell`: every cell makes good its own splitters, and where it cannot stops at the nearest end of its reach

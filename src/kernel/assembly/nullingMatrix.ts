@@ -76,13 +76,14 @@ export const COLUMN: usize = 16;
   const leastCross = load<f64>(ownReach, 8);
   const sineSquare = sr * sr + si * si;
   if (c < leastBar) {
-    const scale = sqrt(((1.0 - leastBar) * (1.0 + leastBar)) / sineSquare);
+    const sine = max(leastCross, sqrt((1.0 - leastBar) * (1.0 + leastBar)));
+    const scale = sine / sqrt(sineSquare);
     c = leastBar;
     sr *= scale;
     si *= scale;
   } else if (sineSquare < leastCross * leastCross) {
     const scale = leastCross / sqrt(sineSquare);
-    c = sqrt((1.0 - leastCross) * (1.0 + leastCross));
+    c = max(leastBar, sqrt((1.0 - leastCross) * (1.0 + leastCross)));
     if (sineSquare > 0.0) {
       sr *= scale;
       si *= scale;
