@@ -23,7 +23,7 @@ export function createRotations(count: number): Rotations {
  *
  * Where the cell cannot do that, the rotation is the nearest that it can: c or |s| is raised to the least that
  * `reach` has for the cell, the phase of s kept (0 where there is none). What should vanish then keeps a
- * remainder, of which nothing later in the nulling depends.
+ * remainder, on which nothing later in the nulling depends.
  * @param cell index of the rotation's cell in `reach`
  */
 export function setNullingRotation(

@@ -214,6 +214,17 @@ describe('a shifter that cannot move', () => {
     expect(throughMesh).toBeLessThan(0.75 * byCell);
   });
 
+  // A dead heater stands at 0, where theta is a square root of what rounding leaves.
+  it('is not said to be out of range when the rest of the mesh has taken account of it', () => {
+    for (const [index, style] of ALL_STYLES.entries()) {
+      for (const theta of [0, 1.2, Math.PI, 4.5, 2 * Math.PI]) {
+        const chip = stuck(scattered(idealChip(6, { style }), 0.03, index), index % 15, theta);
+        const { retuned, program } = programChip(chip, haarUnitary(6, index), 'mesh');
+        if (retuned === 'mesh') expect(program).toMatchObject({ outOfRange: [], outOfReach: [] });
+      }
+    }
+  });
+
   // Nothing but the cell's factor is missed by a chip with one cell, whatever is tried.
   it('cannot be worked around on two ports', () => {
     const chip = stuck(idealChip(2), 0, 1.2);
