@@ -12,9 +12,9 @@ export interface MeshReach {
 }
 
 /**
- * The reach of a mesh from an interval of bar powers for each cell, in cell order. A cell that cannot be moved
- * has low = high. Near high = 1 an interval says what is missed to half the digits only; `reachOfChip` is not
- * limited so.
+ * The reach of a mesh from an interval of bar powers for each cell, in cell order. A cell that cannot be
+ * moved has low = high. Near high = 1 an interval says what is missed to half the digits only; `reachOfChip`
+ * is not limited so.
  * @throws RangeError for an interval that is not 0 <= low <= high <= 1
  */
 export function meshReach(intervals: readonly Reach[]): MeshReach {

@@ -21,8 +21,8 @@ export function createRotations(count: number): Rotations {
  * angles would be computed from rounding noise: nothing to null (or nothing at all) is the exact bar state,
  * nothing to keep the exact cross state.
  *
- * Where the cell cannot do that, the rotation is the nearest that it can: c or |s| is raised to the least that
- * `reach` has for the cell, the phase of s kept (0 where there is none). What should vanish then keeps a
+ * Where the cell cannot do that, the rotation is the nearest that it can: c or |s| is raised to the least
+ * that `reach` has for the cell, the phase of s kept (0 where there is none). What should vanish then keeps a
  * remainder, on which nothing later in the nulling depends.
  * @param cell index of the rotation's cell in `reach`
  */
@@ -57,8 +57,8 @@ export function setNullingRotation(
 }
 
 /**
- * Moves a rotation to the nearest one with c >= `leastBar` and |s| >= `leastCross`. The other amplitude is held
- * too, since a cell that cannot be moved has no room for rounding.
+ * Moves a rotation to the nearest one with c >= `leastBar` and |s| >= `leastCross`. The other amplitude is
+ * held too, since a cell that cannot be moved has no room for rounding.
  */
 function holdInReach(
   { cosine, sineRe, sineIm }: Rotations,

@@ -11,10 +11,10 @@ import { createRotations, setNullingRotation } from './Rotations.js';
  * diagonal), even ones by rotations of neighbouring rows (cells behind it). Clements et al., Optica 3, 1460
  * (2016).
  *
- * Afterwards `work` is diagonal up to rounding and what cells out of reach leave, and U = (row rotations) D (column rotations), in the order of
- * the light from the right; the rotations W stand at their cells. Cost (20/3) N^3 flops. The readable twin of
- * the kernel in src/kernel/assembly/nullingRectangular.ts: the same arithmetic in the same order, so the same
- * result to the last bit.
+ * Afterwards `work` is diagonal up to rounding and what cells out of reach leave, and U = (row rotations) D
+ * (column rotations), in the order of the light from the right; the rotations W stand at their cells. Cost
+ * (20/3) N^3 flops. The readable twin of the kernel in src/kernel/assembly/nullingRectangular.ts: the same
+ * arithmetic in the same order, so the same result to the last bit.
  * @param negligibleSquare entries whose squares are at most that count as zero
  * @param reach what the cells can do
  */

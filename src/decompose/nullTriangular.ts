@@ -10,9 +10,9 @@ import { createRotations, setNullingRotation } from './Rotations.js';
  * rotations of neighbouring columns, then row N-1, and so on. Reck et al., Phys. Rev. Lett. 73, 58 (1994).
  *
  * Afterwards `work` is diagonal up to rounding and what cells out of reach leave (entries of nulled rows are
- * not written back except the diagonal one), and U = D W_M ... W_2 W_1 with the rotations W at their cells. Cost (20/3) N^3 flops. The
- * readable twin of the kernel in src/kernel/assembly/nullingTriangular.ts: the same arithmetic in the same
- * order, so the same result to the last bit.
+ * not written back except the diagonal one), and U = D W_M ... W_2 W_1 with the rotations W at their cells.
+ * Cost (20/3) N^3 flops. The readable twin of the kernel in src/kernel/assembly/nullingTriangular.ts: the
+ * same arithmetic in the same order, so the same result to the last bit.
  * @param negligibleSquare entries whose squares are at most that count as zero
  * @param reach what the cells can do
  */

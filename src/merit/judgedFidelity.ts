@@ -6,8 +6,8 @@ import { freePorts, portPhaseFreeFidelity } from './portPhaseFree.js';
 
 /**
  * The fidelity by which two programs of one chip are compared: abs(Tr(U^dag V))^2 / (N Tr(V^dag V)), and on a
- * chip without port shifters the port-phase-free one, since such a chip cannot set what that leaves out. 0 for
- * a V of zeros.
+ * chip without port shifters the port-phase-free one, since such a chip cannot set what that leaves out. 0
+ * for a V of zeros.
  * @throws RangeError when the shapes differ
  */
 export function judgedFidelity(chip: Chip, target: ComplexMatrix, achieved: ComplexMatrix): number {

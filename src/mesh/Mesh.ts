@@ -70,8 +70,8 @@ export function createMesh(layout: Layout, modes: number, mirror: Mirror = 'none
 }
 
 /**
- * The other mirror by which a layout has its cells at the very same places: a rectangle with an even number of
- * ports may be turned upside down, any other mesh may have its columns in reverse order.
+ * The other mirror by which a layout has its cells at the very same places: a rectangle with an even number
+ * of ports may be turned upside down, any other mesh may have its columns in reverse order.
  */
 export function coincidentMirror({ layout, modes, mirror }: Mesh): Mirror {
   const upsideDown = layout === 'rectangular' && modes % 2 === 0;

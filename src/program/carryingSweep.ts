@@ -179,8 +179,8 @@ function noteRange(
   shifters: { readonly external: number; readonly internal: number },
   tolerance: number,
 ): void {
-  // Near 0 and pi rounding in powers grows to its square root in theta: what counts is whether sin^2(theta/2) is
-  // missed.
+  // Near 0 and pi rounding in powers grows to its square root in theta: what counts is whether sin^2(theta/2)
+  // is missed.
   const { internal, internalWanted } = solution;
   const missed = Math.abs(
     Math.sin((internalWanted - internal) / 2) * Math.sin((internalWanted + internal) / 2),

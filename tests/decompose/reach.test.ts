@@ -25,7 +25,7 @@ const NULLINGS: readonly (readonly [name: string, nulling: Nulling])[] = [
 const SIZES = Array.from({ length: 64 }, (_, k) => k + 1);
 const STREAM = 900;
 
-/** Splitter angles pi/4 + error with normal errors: least bar amplitude |sin(x+y)|, least cross |sin(x-y)|. */
+/** Splitter angles pi/4 + x and pi/4 + y, normal: least bar amplitude |sin(x+y)|, least cross |sin(x-y)|. */
 function sampledReach(cells: number, sigma: number, seed: number): MeshReach {
   const random = randomStream(seed, STREAM);
   const reach = fullReach(cells);
@@ -128,10 +128,11 @@ describe('a nulling with a reach', () => {
   });
 });
 
-// What one factor moved by e leaves in the lower triangle has the length r = h sin e, later steps turn it about
-// there, and a unitary that is diagonal but for a row of length r in one triangle has diagonal entries whose
-// deficits sum up to r^2 to leading order: 1 - F = 2 r^2/N (1 + O(r^2)). h^2 is read off the target: for cells
-// that are met before any row has been mixed with others it is the sum over the last row up to the cell.
+// What one factor moved by e leaves in the lower triangle has the length r = h sin e, later steps turn it
+// about there, and a unitary that is diagonal but for a row of length r in one triangle has diagonal entries
+// whose deficits sum up to r^2 to leading order: 1 - F = 2 r^2/N (1 + O(r^2)). h^2 is read off the target:
+// for cells that are met before any row has been mixed with others it is the sum over the last row up to the
+// cell.
 describe('one cell out of reach costs what its remainder says', () => {
   const moved = 1e-3;
   it.each(LAYOUTS)('%s', (layout) => {
@@ -162,10 +163,11 @@ describe('one cell out of reach costs what its remainder says', () => {
 
 // Per cell, for a Haar target: the bar power is Beta(1, k) (check-values, section 3). With splitter errors of
 // variance s^2 the cross state is missed on an average of E[e^2] = 2 k s^4, the bar state of cells with k = 1
-// on one of 2 s^4; other bar states are of higher order. Alone that gives the law for finished decompositions,
-// s^4 (2/3 (N^2 - 1) + 4 (N - 1)/N). In the nulling it counts with the power h^2 that the factor acts on,
-// which is independent of the bar power, in a triangle on the average the share (m + 1)/n for the m-th cell of
-// the chain over n ports. The sum of (2/N) 2 s^4 (k + [k = 1]) (m + 1)/n with k = m is the law below.
+// on one of 2 s^4; other bar states are of higher order. Alone that gives the law for finished
+// decompositions, s^4 (2/3 (N^2 - 1) + 4 (N - 1)/N). In the nulling it counts with the power h^2 that the
+// factor acts on, which is independent of the bar power, in a triangle on the average the share (m + 1)/n for
+// the m-th cell of the chain over n ports. The sum of (2/N) 2 s^4 (k + [k = 1]) (m + 1)/n with k = m is the
+// law below.
 describe('the error that nulling with a reach leaves', () => {
   function law(modes: number): number {
     let harmonic = 0;
@@ -181,8 +183,8 @@ describe('the error that nulling with a reach leaves', () => {
     expect(law(modes)).toBeCloseTo(expected, 13);
   });
 
-  // The tail is heavy: with these numbers of chips the means are known to 3 to 6 %. Terms of higher order come to
-  // a few per cent at these sigmas; 10 % are allowed (the law for cells has 15 %).
+  // The tail is heavy: with these numbers of chips the means are known to 3 to 6 %. Terms of higher order
+  // come to a few per cent at these sigmas; 10 % are allowed (the law for cells has 15 %).
   it.each([
     [4, 0.08, 20_000],
     [8, 0.025, 12_000],
@@ -210,8 +212,8 @@ describe('the error that nulling with a reach leaves', () => {
   });
 });
 
-// For one mesh the bar powers of a target do not depend on how it is decomposed (check-values, section 4): the
-// mesh does it in one way only, up to phases.
+// For one mesh the bar powers of a target do not depend on how it is decomposed (check-values, section 4):
+// the mesh does it in one way only, up to phases.
 describe('the nulling from the far side', () => {
   it.each(LAYOUTS)('%s: gives the target back, with the same bar powers', (layout) => {
     for (const modes of [1, 2, 3, 4, 5, 8, 9, 16, 33]) {

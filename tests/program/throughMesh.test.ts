@@ -144,11 +144,10 @@ describe('retuning through the mesh', () => {
   });
 });
 
-// 45:55 everywhere: every cross state is missed by the same d = |cos(a+b)| = 0.1, bar states are in reach. With
-// bar powers from Beta(1, k) the missing angle has E[e^2] = k d^4/6, so cell by cell 1 - F = (2/N) sum (N - k) k
-// d^4/6 = d^4 (N^2 - 1)/18: 3.5e-4 and 1.42e-3; nulling from one side leaves (2N + 5)/(3 (N + 1)) of it. Without
-// correction 1 - F = L (1 - c L) with L = 2 (N - 1) x^2, x the error of the splitters' angles, but for equal
-// errors, which add up or cancel.
+// 45:55 everywhere: every cross state is missed by the same d = |cos(a+b)| = 0.1, bar states are in reach.
+// With bar powers from Beta(1, k) the missing angle has E[e^2] = k d^4/6, so cell by cell 1 - F = (2/N) sum
+// (N - k) k d^4/6 = d^4 (N^2 - 1)/18: 3.5e-4 and 1.42e-3; nulling from one side leaves (2N + 5)/(3 (N + 1))
+// of it.
 describe('chips with all splitters at 45:55', () => {
   // Seen over 200 targets (rectangular, triangular): N = 8 none 3.89e-2, 3.93e-2, cell 4.4e-4, 3.2e-4, mesh
   // 2.9e-4, 2.2e-4; N = 16 none 8.4e-2, 8.6e-2, cell 1.31e-3, 1.38e-3, mesh 8.4e-4, 9.0e-4.
@@ -176,8 +175,8 @@ describe('chips with all splitters at 45:55', () => {
   });
 });
 
-// No cell reaches a full bar when its splitters differ, so that cell by cell an identity suffers in every cell.
-// In the nulling the remainders meet again and cancel: 50 times less was seen.
+// No cell reaches a full bar when its splitters differ, so that cell by cell an identity suffers in every
+// cell. In the nulling later cells undo what earlier ones could not leave undone: 50 times less was seen.
 describe('a chip with scattered splitters', () => {
   it.each(LAYOUTS)('does an identity far better through the mesh than cell by cell, %s', (layout) => {
     for (let seed = 0; seed < 10; seed++) {
@@ -194,8 +193,8 @@ describe('a shifter that cannot move', () => {
     return { ...chip, shifterRanges: new Map([[shifter, [theta, theta] as const]]) };
   }
 
-  // A cell that stands in the last step of both nullings, the middle or the tip of the mesh, is alone with what
-  // is left; for any other one the rest of the mesh makes good a part.
+  // A cell that stands in the last step of both nullings, the middle or the tip of the mesh, is alone with
+  // what is left; for any other one the rest of the mesh makes good a part.
   it('is worked around, in any cell and style', () => {
     let [byCell, throughMesh] = [0, 0];
     for (const [index, style] of ALL_STYLES.entries()) {

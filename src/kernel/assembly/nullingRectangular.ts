@@ -20,7 +20,8 @@ import { rotateColumnsLeft, rotateRowsDown } from './nullingMatrix';
 
 /** Step k rotates columns (d-k, d-k+1) so that entry (N-1-k, d-k) vanishes. */
 function nullByColumns(
-  modes: i32, matrix: usize, rowBytes: usize, diagonal: i32, sweep: usize, negligibleSquare: f64, reach: usize,
+  modes: i32, matrix: usize, rowBytes: usize, diagonal: i32, sweep: usize, negligibleSquare: f64,
+  reach: usize,
 ): void {
   let row = matrix + usize(modes - 1) * rowBytes;
   for (let group = 0; group < modes; group += 4) {
@@ -42,7 +43,8 @@ function nullByColumns(
 
 /** Step k rotates rows (N-2-d+k, N-1-d+k) so that entry (N-1-d+k, k) vanishes. */
 function nullByRows(
-  modes: i32, matrix: usize, rowBytes: usize, diagonal: i32, sweep: usize, negligibleSquare: f64, reach: usize,
+  modes: i32, matrix: usize, rowBytes: usize, diagonal: i32, sweep: usize, negligibleSquare: f64,
+  reach: usize,
 ): void {
   const firstRow = matrix + usize(modes - 2 - diagonal) * rowBytes;
   for (let strip = 0; strip < modes; strip += 4) {
