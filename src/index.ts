@@ -20,7 +20,7 @@ export { prepareTarget } from './target/prepareTarget.js';
 
 // Meshes and chips
 export type { Layout, Mesh, Mirror } from './mesh/Mesh.js';
-export { cellIndexAt, columnCount, createMesh } from './mesh/Mesh.js';
+export { cellIndexAt, coincidentMirror, columnCount, createMesh } from './mesh/Mesh.js';
 export type {
   CellStyle,
   Chip,
@@ -40,6 +40,9 @@ export type { IdealChipOptions } from './chip/idealChip.js';
 export { idealChip } from './chip/idealChip.js';
 export type { Reach } from './chip/reach.js';
 export { cellReach } from './chip/reach.js';
+export type { MeshReach } from './chip/MeshReach.js';
+export { meshReach } from './chip/MeshReach.js';
+export { reachOfChip } from './chip/reachOfChip.js';
 export type { Settings } from './chip/Settings.js';
 export type { Shifter, ShifterRole } from './chip/shifters.js';
 export { listShifters, phaseOf, shifterCount } from './chip/shifters.js';
@@ -47,11 +50,13 @@ export { listShifters, phaseOf, shifterCount } from './chip/shifters.js';
 // From a target to phases
 export type { Decomposition } from './decompose/Decomposition.js';
 export { reconstruct } from './decompose/Decomposition.js';
-export { decompose } from './decompose/decompose.js';
+export { decompose, decomposeFromFarSide } from './decompose/decompose.js';
 export type { OutOfRange, OutOfReach, Program } from './program/carryingSweep.js';
 export { carryingSweep } from './program/carryingSweep.js';
 export type { ChipPrograms } from './program/programChip.js';
 export { programChip } from './program/programChip.js';
+export type { Retuning } from './program/retunings.js';
+export { RETUNINGS } from './program/retunings.js';
 export type { LimitedSettings } from './program/limitSettings.js';
 export { limitSettings } from './program/limitSettings.js';
 
@@ -61,6 +66,7 @@ export type { Merit } from './merit/merit.js';
 export { figuresOfMerit } from './merit/merit.js';
 export type { PortSide } from './merit/portPhaseFree.js';
 export { freePorts, missingPortPhases, portPhaseFreeFidelity } from './merit/portPhaseFree.js';
+export { judgedFidelity } from './merit/judgedFidelity.js';
 export { powerDistance } from './merit/powerDistance.js';
 
 // Fabricated chips: errors of a process, trials, yield and tolerance
@@ -68,7 +74,7 @@ export type { ErrorDistribution, ProcessErrors } from './chip/Chip.js';
 export { NO_ERRORS } from './chip/Chip.js';
 export type { ErrorSource } from './tolerance/errorSources.js';
 export { ERROR_SOURCES, withSource } from './tolerance/errorSources.js';
-export type { Retuning, TrialPlan } from './tolerance/TrialPlan.js';
+export type { Retuning as TrialRetuning, TrialPlan } from './tolerance/TrialPlan.js';
 export type { SampledChip, TrialEngine } from './tolerance/createTrialEngine.js';
 export { createTrialEngine } from './tolerance/createTrialEngine.js';
 export type { RunTrialsOptions, TrialResults } from './tolerance/runTrials.js';

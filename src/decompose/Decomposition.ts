@@ -10,7 +10,7 @@ import type { Mesh } from '../mesh/Mesh.js';
  *           [ s   c       ]
  *
  * |W11|^2 = c^2 is the bar power that is wanted of the cell. c = 1 with s = 0 (bar) and c = 0 with s = 1
- * (cross) are exact. The factors know nothing of the hardware: no cell style, no splitter ratio.
+ * (cross) are exact. The factors know nothing of cell styles and splitter ratios.
  */
 export interface Decomposition {
   readonly mesh: Mesh;

@@ -1,3 +1,4 @@
+import type { MeshReach } from '../chip/MeshReach.js';
 import type { ComplexMatrix } from '../matrix/ComplexMatrix.js';
 import type { Layout } from '../mesh/Mesh.js';
 import type { Rotations } from './Rotations.js';
@@ -25,10 +26,12 @@ export interface NullingResult {
  * Nulls the target, mirrored as the mesh is, for the mesh that is not mirrored. There are two with the same
  * result to the last bit: one on kernels, and its readable twin.
  * @param negligibleSquare entries whose squares are at most that count as zero
+ * @param reach what the cells of the mesh that is not mirrored can do; null: everything
  */
 export type Nulling = (
   target: ComplexMatrix,
   layout: Layout,
   mirrored: Mirrored,
   negligibleSquare: number,
+  reach: MeshReach | null,
 ) => NullingResult;

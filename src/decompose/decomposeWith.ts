@@ -1,3 +1,5 @@
+import type { MeshReach } from '../chip/MeshReach.js';
+import { fullReach } from '../chip/MeshReach.js';
 import type { ComplexMatrix } from '../matrix/ComplexMatrix.js';
 import type { Mesh } from '../mesh/Mesh.js';
 import { cellIndexAt } from '../mesh/Mesh.js';
@@ -14,45 +16,70 @@ const NEGLIGIBLE = 4;
 
 /**
  * What `decompose` does, by a nulling of one's choice.
- * @throws RangeError when the target's shape is not that of the mesh
+ * @throws RangeError when the target's shape is not that of the mesh, or the reach is for another number of
+ * cells
  */
-export function decomposeWith(nulling: Nulling, target: ComplexMatrix, mesh: Mesh): Decomposition {
-  const { modes, layout, mirror } = mesh;
+export function decomposeWith(
+  nulling: Nulling,
+  target: ComplexMatrix,
+  mesh: Mesh,
+  reach: MeshReach | null = null,
+): Decomposition {
+  const { modes, cells, layout, mirror } = mesh;
   if (target.rows !== modes || target.columns !== modes) {
     throw new RangeError(`the mesh has ${modes} ports, the target is ${target.rows} x ${target.columns}`);
+  }
+  if (reach !== null && (reach.leastBar.length !== cells || reach.leastCross.length !== cells)) {
+    throw new RangeError(`the mesh has ${cells} cells, the reach is that of ${reach.leastBar.length}`);
   }
   const mirrored: Mirrored = {
     ports: mirror === 'ports' || mirror === 'both',
     columns: mirror === 'columns' || mirror === 'both',
   };
   const negligible = NEGLIGIBLE * modes * Number.EPSILON;
-  const { rotations, diagonal } = nulling(target, layout, mirrored, negligible * negligible);
-  const { cosine, sineRe, sineIm } = mirror === 'none' ? rotations : placeOnMesh(rotations, mesh, mirrored);
+  const places = mirror === 'none' ? null : placesOnMesh(mesh, mirrored);
+  const plainReach = places && reach ? takeFromPlaces(reach, places) : reach;
+  const { rotations, diagonal } = nulling(target, layout, mirrored, negligible * negligible, plainReach);
+  const { cosine, sineRe, sineIm } = places ? putAtPlaces(rotations, places, mirrored) : rotations;
   if (mirrored.ports) diagonal.reverse();
   return { mesh, cosine, sineRe, sineIm, diagonal, diagonalBefore: placeDiagonal(mesh, mirrored) };
 }
 
-/** Carries the factors of the plain mesh to the cells of the mirrored one. */
-function placeOnMesh(
-  plain: Rotations,
-  { cells, columns, firstCellOfColumn }: Mesh,
-  mirrored: Mirrored,
-): Rotations {
-  const placed = createRotations(cells);
-  // X W X and W^T both turn s into -conj(s); together they leave it as it was.
-  const conjugated = mirrored.ports !== mirrored.columns;
+/** Per cell of the plain mesh, index of the same cell on the mirrored one. */
+function placesOnMesh({ cells, columns, firstCellOfColumn }: Mesh, mirrored: Mirrored): Int32Array {
+  const places = new Int32Array(cells);
   let cell = 0;
   for (let plainColumn = 0; plainColumn < columns; plainColumn++) {
     const column = mirrored.columns ? columns - 1 - plainColumn : plainColumn;
     const first = firstCellOfColumn[column]!;
     const last = firstCellOfColumn[column + 1]! - 1;
     for (let inColumn = 0; inColumn <= last - first; inColumn++) {
-      const place = mirrored.ports ? last - inColumn : first + inColumn;
-      placed.cosine[place] = plain.cosine[cell]!;
-      placed.sineRe[place] = conjugated ? -plain.sineRe[cell]! : plain.sineRe[cell]!;
-      placed.sineIm[place] = plain.sineIm[cell]!;
-      cell++;
+      places[cell++] = mirrored.ports ? last - inColumn : first + inColumn;
     }
+  }
+  return places;
+}
+
+/** The reach of the mirrored mesh's cells in the order of the plain one; no mirror changes powers. */
+function takeFromPlaces({ leastBar, leastCross }: MeshReach, places: Int32Array): MeshReach {
+  const plain = fullReach(places.length);
+  for (let cell = 0; cell < places.length; cell++) {
+    plain.leastBar[cell] = leastBar[places[cell]!]!;
+    plain.leastCross[cell] = leastCross[places[cell]!]!;
+  }
+  return plain;
+}
+
+/** Carries the factors of the plain mesh to the cells of the mirrored one. */
+function putAtPlaces(plain: Rotations, places: Int32Array, mirrored: Mirrored): Rotations {
+  const placed = createRotations(places.length);
+  // X W X and W^T both turn s into -conj(s); together they leave it as it was.
+  const conjugated = mirrored.ports !== mirrored.columns;
+  for (let cell = 0; cell < places.length; cell++) {
+    const place = places[cell]!;
+    placed.cosine[place] = plain.cosine[cell]!;
+    placed.sineRe[place] = conjugated ? -plain.sineRe[cell]! : plain.sineRe[cell]!;
+    placed.sineIm[place] = plain.sineIm[cell]!;
   }
   return placed;
 }

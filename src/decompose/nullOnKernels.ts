@@ -1,3 +1,4 @@
+import type { MeshReach } from '../chip/MeshReach.js';
 import type { Kernels } from '../kernel/loadKernels.js';
 import { loadKernels } from '../kernel/loadKernels.js';
 import type { ComplexMatrix } from '../matrix/ComplexMatrix.js';
@@ -13,16 +14,18 @@ export function nullOnKernels(
   layout: Layout,
   mirrored: Mirrored,
   negligibleSquare: number,
+  reach: MeshReach | null,
 ): NullingResult {
   const modes = target.rows;
   if (workspace === undefined || workspace.capacity < modes) workspace = createWorkspace(modes);
   const { kernels, results, entries, at } = workspace;
+  const cells = (modes * (modes - 1)) / 2;
   const rowBytes = bytesOfRow(modes);
   const matrix = at.matrix + ROWS_ABOVE * rowBytes;
   takeTarget(workspace, target, mirrored, matrix, rowBytes);
   const nulling = layout === 'rectangular' ? kernels.nullRectangular : kernels.nullTriangular;
-  nulling(modes, matrix, rowBytes, negligibleSquare, at.sweep, at.results, at.entries);
-  const cells = (modes * (modes - 1)) / 2;
+  takeReach(workspace, reach, cells);
+  nulling(modes, matrix, rowBytes, negligibleSquare, at.reach, at.sweep, at.results, at.entries);
   // One array for all three, since making an array costs as much as nulling several entries.
   const factors = results.slice(0, 3 * cells);
   const rotations = {
@@ -41,12 +44,17 @@ interface Workspace {
   readonly kernels: Kernels;
   /** The target's re, then its im. */
   readonly source: Float64Array;
+  /** The least c and the least |s| of each cell. */
+  readonly reach: Float64Array;
+  /** How many doubles at the front of `reach` may differ from 0. */
+  reachTaken: number;
   readonly results: Float64Array;
   readonly entries: Float64Array;
   /** Addresses in bytes. */
   readonly at: {
     readonly source: number;
     readonly matrix: number;
+    readonly reach: number;
     readonly sweep: number;
     readonly results: number;
     readonly entries: number;
@@ -77,10 +85,12 @@ function bytesOfRow(modes: number): number {
 function createWorkspace(modes: number): Workspace {
   const capacity = CAPACITY_STEP * Math.ceil(modes / CAPACITY_STEP);
   const resultsLength = (3 * capacity * (capacity - 1)) / 2;
+  const reachLength = capacity * (capacity - 1);
   const memory = loadKernels();
   const at = {
     source: memory.reserve(2 * capacity * capacity),
     matrix: memory.reserveBytes((capacity + ROWS_ABOVE) * bytesOfRow(capacity)),
+    reach: memory.reserve(reachLength),
     sweep: memory.reserve(4 * capacity),
     results: memory.reserve(resultsLength),
     entries: memory.reserve(2 * capacity),
@@ -89,6 +99,8 @@ function createWorkspace(modes: number): Workspace {
     capacity,
     kernels: memory.kernels,
     source: memory.doubles(at.source, 2 * capacity * capacity),
+    reach: memory.doubles(at.reach, reachLength),
+    reachTaken: 0,
     results: memory.doubles(at.results, resultsLength),
     entries: memory.doubles(at.entries, 2 * capacity),
     at,
@@ -110,4 +122,16 @@ function takeTarget(
   const rowStep = direction * (mirrored.columns ? 1 : modes);
   const columnStep = direction * (mirrored.columns ? modes : 1);
   kernels.layOutMatrix(modes, at.source, first, rowStep, columnStep, matrix, rowBytes);
+}
+
+/** Lays out what the cells can do; the zeros of cells that can do everything stay from call to call. */
+function takeReach(own: Workspace, reach: MeshReach | null, cells: number): void {
+  if (own.reachTaken > 0) own.reach.fill(0, 0, own.reachTaken);
+  own.reachTaken = 0;
+  if (reach === null) return;
+  for (let cell = 0; cell < cells; cell++) {
+    own.reach[2 * cell] = reach.leastBar[cell]!;
+    own.reach[2 * cell + 1] = reach.leastCross[cell]!;
+  }
+  own.reachTaken = 2 * cells;
 }

@@ -1,3 +1,4 @@
+import type { MeshReach } from '../chip/MeshReach.js';
 import type { ComplexMatrix } from '../matrix/ComplexMatrix.js';
 import type { Mesh } from '../mesh/Mesh.js';
 import { cellIndexAt } from '../mesh/Mesh.js';
@@ -10,23 +11,32 @@ import { createRotations, setNullingRotation } from './Rotations.js';
  * diagonal), even ones by rotations of neighbouring rows (cells behind it). Clements et al., Optica 3, 1460
  * (2016).
  *
- * Afterwards `work` is diagonal up to rounding and U = (row rotations) D (column rotations), in the order of
- * the light from the right; the rotations W stand at their cells. Cost (20/3) N^3 flops. The readable twin of
- * the kernel in src/kernel/assembly/nullingRectangular.ts: the same arithmetic in the same order, so the same
- * result to the last bit.
+ * Afterwards `work` is diagonal up to rounding and what cells out of reach leave, and U = (row rotations) D
+ * (column rotations), in the order of the light from the right; the rotations W stand at their cells. Cost
+ * (20/3) N^3 flops. The readable twin of the kernel in src/kernel/assembly/nullingRectangular.ts: the same
+ * arithmetic in the same order, so the same result to the last bit.
  * @param negligibleSquare entries whose squares are at most that count as zero
+ * @param reach what the cells can do
  */
-export function nullRectangularInPlace(work: ComplexMatrix, mesh: Mesh, negligibleSquare: number): Rotations {
+export function nullRectangularInPlace(
+  work: ComplexMatrix,
+  mesh: Mesh,
+  negligibleSquare: number,
+  reach: MeshReach,
+): Rotations {
   const modes = work.rows;
   const sweep = createRotations(Math.max(0, modes - 1));
   const rotations = createRotations(mesh.cells);
   for (let diagonal = 0; diagonal < modes - 1; diagonal++) {
     const byRows = diagonal % 2 === 1;
-    if (byRows) nullByRowsInPlace(work, diagonal, sweep, negligibleSquare);
-    else nullByColumnsInPlace(work, diagonal, sweep, negligibleSquare);
+    const cellOf = (step: number): number =>
+      byRows
+        ? cellIndexAt(mesh, modes - 1 - step, modes - 2 - diagonal + step)
+        : cellIndexAt(mesh, step, diagonal - step);
+    const nullInPlace = byRows ? nullByRowsInPlace : nullByColumnsInPlace;
+    nullInPlace(work, diagonal, sweep, negligibleSquare, reach, cellOf);
     for (let step = 0; step <= diagonal; step++) {
-      const port = byRows ? modes - 2 - diagonal + step : diagonal - step;
-      const cell = cellIndexAt(mesh, byRows ? modes - 1 - step : step, port);
+      const cell = cellOf(step);
       rotations.cosine[cell] = sweep.cosine[step]!;
       rotations.sineRe[cell] = sweep.sineRe[step]!;
       rotations.sineIm[cell] = sweep.sineIm[step]!;
@@ -45,6 +55,8 @@ function nullByColumnsInPlace(
   diagonal: number,
   sweep: Rotations,
   negligibleSquare: number,
+  reach: MeshReach,
+  cellOf: (step: number) => number,
 ): void {
   const { cosine, sineRe, sineIm } = sweep;
   for (let row = modes - 1; row >= 0; row--) {
@@ -74,7 +86,8 @@ function nullByColumnsInPlace(
     }
     const xr = re[at]!;
     const xi = im[at]!;
-    setNullingRotation(sweep, ownStep, xr, xi, carryRe, carryIm, negligibleSquare);
+    const cell = cellOf(ownStep);
+    setNullingRotation(sweep, ownStep, xr, xi, carryRe, carryIm, negligibleSquare, reach, cell);
     const c = cosine[ownStep]!;
     const sr = sineRe[ownStep]!;
     const si = sineIm[ownStep]!;
@@ -94,12 +107,16 @@ function nullByRowsInPlace(
   diagonal: number,
   sweep: Rotations,
   negligibleSquare: number,
+  reach: MeshReach,
+  cellOf: (step: number) => number,
 ): void {
   for (let step = 0; step <= diagonal; step++) {
     const upper = (modes - 2 - diagonal + step) * modes;
     const lower = upper + modes;
     const at = lower + step;
-    setNullingRotation(sweep, step, re[at]!, im[at]!, re[upper + step]!, im[upper + step]!, negligibleSquare);
+    const kept = upper + step;
+    const cell = cellOf(step);
+    setNullingRotation(sweep, step, re[at]!, im[at]!, re[kept]!, im[kept]!, negligibleSquare, reach, cell);
     const c = sweep.cosine[step]!;
     const sr = sweep.sineRe[step]!;
     const si = sweep.sineIm[step]!;

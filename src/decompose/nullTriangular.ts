@@ -1,3 +1,4 @@
+import type { MeshReach } from '../chip/MeshReach.js';
 import type { ComplexMatrix } from '../matrix/ComplexMatrix.js';
 import type { Mesh } from '../mesh/Mesh.js';
 import { cellIndexAt } from '../mesh/Mesh.js';
@@ -8,22 +9,29 @@ import { createRotations, setNullingRotation } from './Rotations.js';
  * Reck's nulling for the triangular mesh that is not mirrored: row N is nulled from left to right by
  * rotations of neighbouring columns, then row N-1, and so on. Reck et al., Phys. Rev. Lett. 73, 58 (1994).
  *
- * Afterwards `work` is diagonal up to rounding (entries of nulled rows are not written back except the
- * diagonal one), and U = D W_M ... W_2 W_1 with the rotations W at their cells. Cost (20/3) N^3 flops. The
- * readable twin of the kernel in src/kernel/assembly/nullingTriangular.ts: the same arithmetic in the same
- * order, so the same result to the last bit.
+ * Afterwards `work` is diagonal up to rounding and what cells out of reach leave (entries of nulled rows are
+ * not written back except the diagonal one), and U = D W_M ... W_2 W_1 with the rotations W at their cells.
+ * Cost (20/3) N^3 flops. The readable twin of the kernel in src/kernel/assembly/nullingTriangular.ts: the
+ * same arithmetic in the same order, so the same result to the last bit.
  * @param negligibleSquare entries whose squares are at most that count as zero
+ * @param reach what the cells can do
  */
-export function nullTriangularInPlace(work: ComplexMatrix, mesh: Mesh, negligibleSquare: number): Rotations {
+export function nullTriangularInPlace(
+  work: ComplexMatrix,
+  mesh: Mesh,
+  negligibleSquare: number,
+  reach: MeshReach,
+): Rotations {
   const { rows: modes, re, im } = work;
   const chain = createRotations(Math.max(0, modes - 1));
   const rotations = createRotations(mesh.cells);
   for (let row = modes - 1; row >= 1; row--) {
-    findChainInPlace(work, row, chain, negligibleSquare);
-    for (let above = 0; above < row; above++) applyChainInPlace(re, im, above * modes, row, chain);
     const chainNumber = modes - 1 - row;
+    const cellOf = (port: number): number => cellIndexAt(mesh, port + 2 * chainNumber, port);
+    findChainInPlace(work, row, chain, negligibleSquare, reach, cellOf);
+    for (let above = 0; above < row; above++) applyChainInPlace(re, im, above * modes, row, chain);
     for (let port = 0; port < row; port++) {
-      const cell = cellIndexAt(mesh, port + 2 * chainNumber, port);
+      const cell = cellOf(port);
       rotations.cosine[cell] = chain.cosine[port]!;
       rotations.sineRe[cell] = chain.sineRe[port]!;
       rotations.sineIm[cell] = chain.sineIm[port]!;
@@ -38,6 +46,8 @@ function findChainInPlace(
   row: number,
   chain: Rotations,
   negligibleSquare: number,
+  reach: MeshReach,
+  cellOf: (port: number) => number,
 ): void {
   const start = row * modes;
   let carryRe = re[start]!;
@@ -45,7 +55,8 @@ function findChainInPlace(
   for (let port = 0; port < row; port++) {
     const nextRe = re[start + port + 1]!;
     const nextIm = im[start + port + 1]!;
-    setNullingRotation(chain, port, carryRe, carryIm, nextRe, nextIm, negligibleSquare);
+    const cell = cellOf(port);
+    setNullingRotation(chain, port, carryRe, carryIm, nextRe, nextIm, negligibleSquare, reach, cell);
     const c = chain.cosine[port]!;
     const sr = chain.sineRe[port]!;
     const si = chain.sineIm[port]!;

@@ -107,7 +107,7 @@ export interface Kernels {
 /**
  * Nulls an N x N matrix; its memory layout is that of assembly/nullingMatrix.ts: the address of row 0, behind
  * three rows that are scribbled on; bytes from row to row. Squares up to `negligibleSquare` count as zero.
- * `sweep` has room for N - 1 rotations of 32 bytes. The results are c, re s and im s of the cells, N(N-1)/2
+ * `reach` holds the least c and the least |s| of each cell, in mesh order. `sweep` has room for N - 1 rotations of 32 bytes. The results are c, re s and im s of the cells, N(N-1)/2
  * doubles each; `diagonalEntries` holds re and im of the N entries that are left.
  */
 type NullingKernel = (
@@ -115,6 +115,7 @@ type NullingKernel = (
   matrix: number,
   rowBytes: number,
   negligibleSquare: number,
+  reach: number,
   sweep: number,
   results: number,
   diagonalEntries: number,

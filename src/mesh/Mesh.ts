@@ -70,6 +70,17 @@ export function createMesh(layout: Layout, modes: number, mirror: Mirror = 'none
 }
 
 /**
+ * The other mirror by which a layout has its cells at the very same places: a rectangle with an even number
+ * of ports may be turned upside down, any other mesh may have its columns in reverse order.
+ */
+export function coincidentMirror({ layout, modes, mirror }: Mesh): Mirror {
+  const upsideDown = layout === 'rectangular' && modes % 2 === 0;
+  const ports = (mirror === 'ports' || mirror === 'both') === !upsideDown;
+  const columns = (mirror === 'columns' || mirror === 'both') === upsideDown;
+  return ports ? (columns ? 'both' : 'ports') : columns ? 'columns' : 'none';
+}
+
+/**
  * Index (from 0) of the cell in a column whose upper port is `port` (index from 0); the place must hold a
  * cell.
  */

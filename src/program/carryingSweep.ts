@@ -89,7 +89,7 @@ export function carryingSweep(
     settings.external[cell] = solution.external;
     carried.phases.set(solution.carried, 2 * upper);
     noteReach(outOfReach, request, decomposition, cell, tolerance);
-    noteRange(outOfRange, solution, shifters);
+    noteRange(outOfRange, solution, shifters, tolerance);
   }
   for (let port = 0; port < modes; port++) {
     carried.meetDiagonal(port, againstLight ? -1 : cells);
@@ -177,12 +177,19 @@ function noteRange(
   outOfRange: OutOfRange[],
   solution: CellSolution,
   shifters: { readonly external: number; readonly internal: number },
+  tolerance: number,
 ): void {
-  if (solution.internalClamped) {
+  // Near 0 and pi rounding in powers grows to its square root in theta: what counts is whether sin^2(theta/2)
+  // is missed.
+  const { internal, internalWanted } = solution;
+  const missed = Math.abs(
+    Math.sin((internalWanted - internal) / 2) * Math.sin((internalWanted + internal) / 2),
+  );
+  if (solution.internalClamped && missed > tolerance) {
     outOfRange.push({
       shifterIndex: shifters.internal,
-      wantedRad: solution.internalWanted,
-      setRad: solution.internal,
+      wantedRad: internalWanted,
+      setRad: internal,
     });
   }
   if (solution.externalClamped) {

@@ -1,12 +1,13 @@
 import type { Chip, ProcessErrors } from '../chip/Chip.js';
 import type { ComplexMatrix } from '../matrix/ComplexMatrix.js';
 import type { Merit } from '../merit/merit.js';
+import type { Retuning as AnyRetuning } from '../program/retunings.js';
 
 /**
  * How each sampled chip is programmed. `none`: once, for the chip file as it stands. `cell`: each by the
  * carrying sweep with its own ratios, as if they had been measured.
  */
-export const RETUNINGS = ['none', 'cell'] as const;
+export const RETUNINGS = ['none', 'cell'] as const satisfies readonly AnyRetuning[];
 /** A way to program sampled chips. */
 export type Retuning = (typeof RETUNINGS)[number];
 

@@ -1,11 +1,18 @@
-import { decompose } from '../../src/decompose/decompose.js';
+import { idealChip } from '../../src/chip/idealChip.js';
+import { reachOfChip } from '../../src/chip/reachOfChip.js';
+import { decompose, decomposeFromFarSide } from '../../src/decompose/decompose.js';
 import { decomposeWith } from '../../src/decompose/decomposeWith.js';
 import { nullReadably } from '../../src/decompose/nullReadably.js';
 import { haarUnitary } from '../../src/matrix/haar.js';
 import { createMesh, LAYOUTS } from '../../src/mesh/Mesh.js';
+import { randomStream } from '../../src/random/RandomStream.js';
 import { machineLine, medianOf, startYardstick } from './measuring.js';
 
 const SIZES = [8, 16, 32, 64, 128, 256];
+/** Standard deviation of the splitters' angles where cells have a reach. */
+const SPREAD = 0.05;
+/** The most that nulling with a reach may take, from both sides together, in units of the plain one. */
+const MOST_FOR_REACH = 3;
 
 /** Median time of a function in microseconds: short runs are put together to 0.2 ms, for half a second. */
 function median(run: () => void): number {
@@ -48,3 +55,27 @@ for (const modes of SIZES) {
   }
 }
 yardstick?.close();
+
+print(
+  `with a reach: splitter angles scattered by ${SPREAD}; from one side, and from both as retuning mesh does`,
+);
+print('   N  layout            plain     one side   both sides   both/plain');
+for (const modes of SIZES) {
+  const target = haarUnitary(modes, 1);
+  for (const layout of LAYOUTS) {
+    const { mesh, couplingRatios, ...rest } = idealChip(modes, { layout });
+    const random = randomStream(1, 900);
+    const scattered = couplingRatios.map(() => Math.sin(Math.PI / 4 + SPREAD * random.normal()) ** 2);
+    const reach = reachOfChip({ ...rest, mesh, couplingRatios: scattered });
+    const plain = median(() => decompose(target, mesh));
+    const oneSide = median(() => decompose(target, mesh, reach));
+    const bothSides = median(() => {
+      decompose(target, mesh, reach);
+      decomposeFromFarSide(target, mesh, reach);
+    });
+    const ratio = bothSides / plain;
+    const verdict = ratio <= MOST_FOR_REACH ? '' : `  more than ${MOST_FOR_REACH}`;
+    const figures = [plain, oneSide, bothSides, ratio].map(cell).join(' ');
+    print(`${String(modes).padStart(4)}  ${layout.padEnd(11)}${figures}${verdict}`);
+  }
+}

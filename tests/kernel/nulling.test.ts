@@ -27,12 +27,13 @@ function nullMatrix(layout: Layout, matrix: ComplexMatrix, negligible: number, f
   const memory = loadKernels();
   const guard = 16;
   const rowLength = 8 * (Math.ceil(modes / 4) | 1);
-  const lengths = [(modes + 3) * rowLength, 4 * Math.max(0, modes - 1), 3 * cells, 2 * modes];
+  const lengths = [(modes + 3) * rowLength, 2 * cells, 4 * Math.max(0, modes - 1), 3 * cells, 2 * modes];
   const addresses = lengths.map((length) => memory.reserve(length + 2 * guard) + 8 * guard);
   const whole = addresses.map((address, k) => memory.doubles(address - 8 * guard, lengths[k]! + 2 * guard));
   whole.forEach((view) => view.fill(-5));
-  const [tiles, , results, entries] = whole.map((view) => view.subarray(guard, view.length - guard));
+  const [tiles, reaches, , results, entries] = whole.map((view) => view.subarray(guard, view.length - guard));
   tiles!.fill(filler);
+  reaches!.fill(0);
   for (let i = 0; i < modes; i++) {
     for (let j = 0; j < modes; j++) {
       // Two columns to a tile: re, re', im, im'.
@@ -43,9 +44,9 @@ function nullMatrix(layout: Layout, matrix: ComplexMatrix, negligible: number, f
   }
   const { nullRectangular, nullTriangular } = memory.kernels;
   const nulling = layout === 'rectangular' ? nullRectangular : nullTriangular;
-  const [matrixAddress, sweep, resultsAddress, entriesAddress] = addresses;
+  const [matrixAddress, reach, sweep, resultsAddress, entriesAddress] = addresses;
   const rowZero = matrixAddress! + 3 * 8 * rowLength;
-  nulling(modes, rowZero, 8 * rowLength, negligible ** 2, sweep!, resultsAddress!, entriesAddress!);
+  nulling(modes, rowZero, 8 * rowLength, negligible ** 2, reach!, sweep!, resultsAddress!, entriesAddress!);
   const [cosine, sineRe, sineIm] = [0, 1, 2].map((k) =>
     Array.from(results!.subarray(k * cells, (k + 1) * cells)),
   );

@@ -160,10 +160,10 @@ describe('an instance of twins', () => {
   });
 
   it('says so when a kernel has no twin, and takes one from the caller', () => {
-    expect(() => twinInstance().kernels.nullTriangular(1, 0, 8, 0, 0, 0, 0)).toThrow('no twin');
+    expect(() => twinInstance().kernels.nullTriangular(1, 0, 8, 0, 0, 0, 0, 0)).toThrow('no twin');
     const called: number[] = [];
     const { kernels } = twinInstance({ nullTriangular: (modes) => called.push(modes) });
-    kernels.nullTriangular(5, 0, 8, 0, 0, 0, 0);
+    kernels.nullTriangular(5, 0, 8, 0, 0, 0, 0, 0);
     expect(called).toEqual([5]);
   });
 });

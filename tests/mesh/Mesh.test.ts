@@ -1,6 +1,6 @@
 import { describe, expect, it } from 'vitest';
 import type { Mesh } from '../../src/mesh/Mesh.js';
-import { cellIndexAt, createMesh, LAYOUTS, MIRRORS } from '../../src/mesh/Mesh.js';
+import { cellIndexAt, coincidentMirror, createMesh, LAYOUTS, MIRRORS } from '../../src/mesh/Mesh.js';
 
 /** Cells as [column, upper port], both from 1, in the order of their numbers. */
 function places(mesh: Mesh): [number, number][] {
@@ -97,4 +97,20 @@ it('refuses a number of ports that is none', () => {
   for (const modes of [0, -1, 2.5, NaN, Infinity]) {
     expect(() => createMesh('rectangular', modes)).toThrow(RangeError);
   }
+});
+
+describe('the coincident mirror', () => {
+  it('is another one, has the same places, and is mutual', () => {
+    for (const layout of LAYOUTS) {
+      for (let modes = 1; modes <= 9; modes++) {
+        for (const mirror of MIRRORS) {
+          const mesh = createMesh(layout, modes, mirror);
+          const other = createMesh(layout, modes, coincidentMirror(mesh));
+          expect(other.mirror).not.toBe(mirror);
+          expect({ ...other, mirror }).toEqual(mesh);
+          expect(coincidentMirror(other)).toBe(mirror);
+        }
+      }
+    }
+  });
 });

@@ -8,6 +8,8 @@
 // between N and the next multiple of four. No nulled entry is ever set to zero: no rotation is found from it.
 //
 // A rotation [[c, -conj(s)], [s, c]] is four doubles: c, re s, im s, and one that is not used.
+//
+// What cells can do is two doubles a cell, in the order of the mesh: the least c and the least |s|.
 
 import { add, multiply, subtract } from './lanes';
 
@@ -17,6 +19,8 @@ export const ROTATION: usize = 32;
 const IMAGINARY: usize = 16;
 /** Rows above the first one that may be written. */
 const ROWS_ABOVE: usize = 3;
+/** Bytes of a cell's reach. */
+const REACH: usize = 16;
 /** Bytes of a column on the average: four columns are 64. */
 export const COLUMN: usize = 16;
 
@@ -42,10 +46,10 @@ export const COLUMN: usize = 16;
 /**
  * Writes the rotation that nulls the entry at `nulled` against the one at `kept`. Entries whose squares are
  * at most `negligibleSquare` count as zero: nothing to null is the exact bar state, nothing to keep the exact
- * cross state.
+ * cross state. What the cell cannot do becomes the nearest that it can, the phase of s kept.
  */
 @inline export function findRotation(
-  rotation: usize, nulled: usize, kept: usize, negligibleSquare: f64,
+  rotation: usize, nulled: usize, kept: usize, negligibleSquare: f64, reach: usize, cell: i32,
 ): void {
   const nr = load<f64>(nulled);
   const ni = load<f64>(nulled, IMAGINARY);
@@ -66,6 +70,27 @@ export const COLUMN: usize = 16;
     c = keptSquare * scale;
     sr = (nr * kr + ni * ki) * scale;
     si = (ni * kr - nr * ki) * scale;
+  }
+  const ownReach = reach + usize(cell) * REACH;
+  const leastBar = load<f64>(ownReach);
+  const leastCross = load<f64>(ownReach, 8);
+  const sineSquare = sr * sr + si * si;
+  if (c < leastBar) {
+    const sine = max(leastCross, sqrt((1.0 - leastBar) * (1.0 + leastBar)));
+    const scale = sine / sqrt(sineSquare);
+    c = leastBar;
+    sr *= scale;
+    si *= scale;
+  } else if (sineSquare < leastCross * leastCross) {
+    const scale = leastCross / sqrt(sineSquare);
+    c = max(leastBar, sqrt((1.0 - leastCross) * (1.0 + leastCross)));
+    if (sineSquare > 0.0) {
+      sr *= scale;
+      si *= scale;
+    } else {
+      sr = leastCross;
+      si = 0.0;
+    }
   }
   store<f64>(rotation, c);
   store<f64>(rotation, sr, 8);

@@ -10,9 +10,18 @@ import { rotateColumnsLeft, rotateRowsDown } from './nullingMatrix';
   return (column >> 1) * (modes - 1) + (column & 1) * (modes >> 1) + (port >> 1);
 }
 
+/** Cell of step k by columns, and by rows. */
+@inline function cellByColumns(modes: i32, diagonal: i32, step: i32): i32 {
+  return cellAt(modes, step, diagonal - step);
+}
+@inline function cellByRows(modes: i32, diagonal: i32, step: i32): i32 {
+  return cellAt(modes, modes - 1 - step, modes - 2 - diagonal + step);
+}
+
 /** Step k rotates columns (d-k, d-k+1) so that entry (N-1-k, d-k) vanishes. */
 function nullByColumns(
   modes: i32, matrix: usize, rowBytes: usize, diagonal: i32, sweep: usize, negligibleSquare: f64,
+  reach: usize,
 ): void {
   let row = matrix + usize(modes - 1) * rowBytes;
   for (let group = 0; group < modes; group += 4) {
@@ -23,7 +32,9 @@ function nullByColumns(
       const rotation = sweep + usize(step) * ROTATION;
       const ownRow = row - usize(step - group) * rowBytes;
       const left = diagonal - step;
-      findRotation(rotation, ownRow + columnOffset(left), ownRow + columnOffset(left + 1), negligibleSquare);
+      const nulled = ownRow + columnOffset(left);
+      const kept = ownRow + columnOffset(left + 1);
+      findRotation(rotation, nulled, kept, negligibleSquare, reach, cellByColumns(modes, diagonal, step));
       rotateColumnsLeft(row, rowBytes, left + 1, rotation, 1);
     }
     row -= 4 * rowBytes;
@@ -33,6 +44,7 @@ function nullByColumns(
 /** Step k rotates rows (N-2-d+k, N-1-d+k) so that entry (N-1-d+k, k) vanishes. */
 function nullByRows(
   modes: i32, matrix: usize, rowBytes: usize, diagonal: i32, sweep: usize, negligibleSquare: f64,
+  reach: usize,
 ): void {
   const firstRow = matrix + usize(modes - 2 - diagonal) * rowBytes;
   for (let strip = 0; strip < modes; strip += 4) {
@@ -44,7 +56,8 @@ function nullByRows(
       const rotation = sweep + usize(step) * ROTATION;
       const upper = top + usize(step) * rowBytes;
       const kept = upper + columnOffset(step - strip);
-      findRotation(rotation, kept + rowBytes, kept, negligibleSquare);
+      const cell = cellByRows(modes, diagonal, step);
+      findRotation(rotation, kept + rowBytes, kept, negligibleSquare, reach, cell);
       rotateRowsDown(upper, rowBytes, rotation, 1);
     }
   }
@@ -53,23 +66,22 @@ function nullByRows(
 /**
  * Nulls an N x N unitary for the rectangular mesh that is not mirrored.
  * @param matrix address of row 0, laid out as nullingMatrix.ts says; lost
+ * @param reach least c and least |s| of the cells in mesh order, two doubles a cell
  * @param sweep room for N - 1 rotations
  * @param results c, re s and im s of the cells in mesh order, N(N-1)/2 doubles each
  * @param diagonalEntries re and im of the N entries that are left on the diagonal
  */
 export function nullRectangular(
-  modes: i32, matrix: usize, rowBytes: usize, negligibleSquare: f64,
+  modes: i32, matrix: usize, rowBytes: usize, negligibleSquare: f64, reach: usize,
   sweep: usize, results: usize, diagonalEntries: usize,
 ): void {
   const cells = (modes * (modes - 1)) >> 1;
   for (let diagonal = 0; diagonal < modes - 1; diagonal++) {
     const byRows = (diagonal & 1) === 1;
-    if (byRows) nullByRows(modes, matrix, rowBytes, diagonal, sweep, negligibleSquare);
-    else nullByColumns(modes, matrix, rowBytes, diagonal, sweep, negligibleSquare);
+    if (byRows) nullByRows(modes, matrix, rowBytes, diagonal, sweep, negligibleSquare, reach);
+    else nullByColumns(modes, matrix, rowBytes, diagonal, sweep, negligibleSquare, reach);
     for (let step = 0; step <= diagonal; step++) {
-      const cell = byRows
-        ? cellAt(modes, modes - 1 - step, modes - 2 - diagonal + step)
-        : cellAt(modes, step, diagonal - step);
+      const cell = byRows ? cellByRows(modes, diagonal, step) : cellByColumns(modes, diagonal, step);
       putAtCell(results, cells, cell, sweep + usize(step) * ROTATION);
     }
   }

@@ -17,7 +17,7 @@ import { rotateColumnsRight } from './nullingMatrix';
  * of neighbouring columns, then row N - 1, and so on. Parameters as for nullRectangular.
  */
 export function nullTriangular(
-  modes: i32, matrix: usize, rowBytes: usize, negligibleSquare: f64,
+  modes: i32, matrix: usize, rowBytes: usize, negligibleSquare: f64, reach: usize,
   chain: usize, results: usize, diagonalEntries: usize,
 ): void {
   const cells = (modes * (modes - 1)) >> 1;
@@ -25,10 +25,12 @@ export function nullTriangular(
     let lowest = matrix + usize(row) * rowBytes;
     let rotation = chain;
     for (let port = 0; port < row; port++) {
-      findRotation(rotation, lowest + columnOffset(port), lowest + columnOffset(port + 1), negligibleSquare);
+      const cell = firstCellOf(modes, port + 2 * (modes - 1 - row)) + (port >> 1);
+      const nulled = lowest + columnOffset(port);
+      const kept = lowest + columnOffset(port + 1);
+      findRotation(rotation, nulled, kept, negligibleSquare, reach, cell);
       rotateColumnsRight(lowest, rowBytes, port, rotation, 1);
-      const column = port + 2 * (modes - 1 - row);
-      putAtCell(results, cells, firstCellOf(modes, column) + (port >> 1), rotation);
+      putAtCell(results, cells, cell, rotation);
       rotation += ROTATION;
     }
     for (let above = row - 4; above >= 0; above -= 4) {

@@ -1,0 +1,42 @@
+import type { Chip, PhaseRange } from './Chip.js';
+import type { MeshReach } from './MeshReach.js';
+import { cosineOfSum, sineOfDifference } from './reach.js';
+import { shifterIndicesOfCell } from './shifters.js';
+
+/**
+ * What each cell of a chip can attain with its own splitters and within the range of its internal phase: with
+ * q = sin^2(theta/2), cos^2(theta/2) for real splitters,
+ *
+ *     |W11|^2 = cos^2(a+b) + q sin 2a sin 2b,    |W12|^2 = sin^2(a-b) + (1 - q) sin 2a sin 2b
+ *
+ * (conventions, section 5). A theta that can take one value only leaves one point. Ranges of external phases
+ * play no part: they do not move powers. Losses are ignored.
+ */
+export function reachOfChip(chip: Chip): MeshReach {
+  const { mesh, style, couplingRatios, shifterRange, shifterRanges } = chip;
+  const leastBar = new Float64Array(mesh.cells);
+  const leastCross = new Float64Array(mesh.cells);
+  for (let cell = 0; cell < mesh.cells; cell++) {
+    const first = couplingRatios[2 * cell]!;
+    const second = couplingRatios[2 * cell + 1]!;
+    leastBar[cell] = cosineOfSum(first, second);
+    leastCross[cell] = sineOfDifference(first, second);
+    const range = shifterRanges.get(shifterIndicesOfCell(chip, cell).internal) ?? shifterRange;
+    if (range === null) continue;
+    const [least, greatest] = halfSineSquares(range);
+    const span = 4 * Math.sqrt(first * (1 - first) * second * (1 - second));
+    const [barMissed, crossMissed] =
+      style.splitterForm === 'real' ? [1 - greatest, least] : [least, 1 - greatest];
+    leastBar[cell] = Math.sqrt(leastBar[cell]! ** 2 + span * barMissed);
+    leastCross[cell] = Math.sqrt(leastCross[cell]! ** 2 + span * crossMissed);
+  }
+  return { leastBar, leastCross };
+}
+
+/** Least and greatest sin^2(theta/2) over a range of theta. */
+function halfSineSquares([low, high]: PhaseRange): [least: number, greatest: number] {
+  const holds = (angle: number): boolean =>
+    Math.ceil((low - angle) / (2 * Math.PI)) <= Math.floor((high - angle) / (2 * Math.PI));
+  const ends = [low, high].map((theta) => Math.sin(theta / 2) ** 2) as [number, number];
+  return [holds(0) ? 0 : Math.min(...ends), holds(Math.PI) ? 1 : Math.max(...ends)];
+}
