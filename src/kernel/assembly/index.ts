@@ -1,3 +1,4 @@
+export { carryAdjoints, carryFields } from './carry';
 export { correlateGrid, correlatePairs, drawSplitters, pickPlaces, turnFactors, turnSplitters } from './errors';
 export { fillNormals, fillUniforms, seedTrials } from './normals';
 export { accumulatePanel, composeCells, judgeTrial, propagatePanel } from './propagate';
