@@ -97,22 +97,26 @@ function wantedPart(
 
 /** @param free null when no phase but the global one is free */
 function fidelityCost(wanted: ComplexMatrix, free: PortSide | null): CostFunctions {
-  const { rows, columns } = wanted;
+  const { rows, columns, re: wantedRe, im: wantedIm } = wanted;
   const wantedPower = squaredNorm(wanted);
   if (!(wantedPower > 0)) throw noneWanted('the chosen inputs');
+  // Entries of one group share a phase: all of them, or those of a row, or those of a column.
   const groups = free === null ? 1 : free === 'output' ? rows : columns;
-  const groupOf = (row: number, column: number): number =>
-    free === null ? 0 : free === 'output' ? row : column;
+  const byRow = free === 'output' ? 2 : 0;
+  const byColumn = free === 'input' ? 2 : 0;
   const overlaps = new Float64Array(2 * groups);
 
-  /** Writes the overlaps of all groups that share a phase; returns the sum of their lengths. */
+  /** Writes the overlaps of all groups; returns the sum of their lengths. */
   function overlap(achieved: ComplexMatrix): number {
+    const { re, im } = achieved;
     overlaps.fill(0);
     for (let row = 0, k = 0; row < rows; row++) {
       for (let column = 0; column < columns; column++, k++) {
-        const at = 2 * groupOf(row, column);
-        const [ur, ui] = [wanted.re[k]!, wanted.im[k]!];
-        const [vr, vi] = [achieved.re[k]!, achieved.im[k]!];
+        const at = byRow * row + byColumn * column;
+        const ur = wantedRe[k]!;
+        const ui = wantedIm[k]!;
+        const vr = re[k]!;
+        const vi = im[k]!;
         overlaps[at]! += ur * vr + ui * vi;
         overlaps[at + 1]! += ur * vi - ui * vr;
       }
@@ -122,9 +126,36 @@ function fidelityCost(wanted: ComplexMatrix, free: PortSide | null): CostFunctio
     return sum;
   }
 
+  /** Writes V - W into `rest` and returns its squared norm; the overlaps hold the factors of the groups in W. */
+  function missedBy(achieved: ComplexMatrix, rest: ComplexMatrix): number {
+    const { re, im } = achieved;
+    const { re: restRe, im: restIm } = rest;
+    let missed = 0;
+    for (let row = 0, k = 0; row < rows; row++) {
+      for (let column = 0; column < columns; column++, k++) {
+        const at = byRow * row + byColumn * column;
+        const fr = overlaps[at]!;
+        const fi = overlaps[at + 1]!;
+        const ur = wantedRe[k]!;
+        const ui = wantedIm[k]!;
+        const x = re[k]! - (fr * ur - fi * ui);
+        const y = im[k]! - (fr * ui + fi * ur);
+        missed += x * x + y * y;
+        restRe[k] = x;
+        restIm[k] = y;
+      }
+    }
+    return missed;
+  }
+
   return {
     evaluate: (achieved, slope) => {
       const power = squaredNorm(achieved);
+      if (!(power > 0)) {
+        slope.re.fill(0);
+        slope.im.fill(0);
+        return power === 0 ? 1 : NaN;
+      }
       const scale = overlap(achieved) / wantedPower;
       // The factor of each group in W: its phase, and the one length of all.
       for (let at = 0; at < 2 * groups; at += 2) {
@@ -132,29 +163,10 @@ function fidelityCost(wanted: ComplexMatrix, free: PortSide | null): CostFunctio
         overlaps[at] = length > 0 ? (scale * overlaps[at]!) / length : scale;
         overlaps[at + 1] = length > 0 ? (scale * overlaps[at + 1]!) / length : 0;
       }
-      let missed = 0;
-      for (let row = 0, k = 0; row < rows; row++) {
-        for (let column = 0; column < columns; column++, k++) {
-          const at = 2 * groupOf(row, column);
-          const [fr, fi] = [overlaps[at]!, overlaps[at + 1]!];
-          const re = achieved.re[k]! - (fr * wanted.re[k]! - fi * wanted.im[k]!);
-          const im = achieved.im[k]! - (fr * wanted.im[k]! + fi * wanted.re[k]!);
-          missed += re * re + im * im;
-          slope.re[k] = re;
-          slope.im[k] = im;
-        }
-      }
-      if (!(power > 0)) {
-        slope.re.fill(0);
-        slope.im.fill(0);
-        return power === 0 ? 1 : NaN;
-      }
+      const cost = missedBy(achieved, slope) / power;
       // W is the best of its kind, so to first order only V itself moves.
-      const cost = missed / power;
-      for (let k = 0; k < slope.re.length; k++) {
-        slope.re[k] = (2 / power) * (slope.re[k]! - cost * achieved.re[k]!);
-        slope.im[k] = (2 / power) * (slope.im[k]! - cost * achieved.im[k]!);
-      }
+      scaledDifferenceInPlace(slope.re, cost, achieved.re, 2 / power);
+      scaledDifferenceInPlace(slope.im, cost, achieved.im, 2 / power);
       return cost;
     },
     figure: (achieved) => {
@@ -213,6 +225,11 @@ function powerCost(wanted: ComplexMatrix, { inputs }: ChosenPorts): CostFunction
       return total / columns;
     },
   };
+}
+
+/** a = factor (a - share b), entry by entry. */
+function scaledDifferenceInPlace(a: Float64Array, share: number, b: Float64Array, factor: number): void {
+  for (let k = 0; k < a.length; k++) a[k] = factor * (a[k]! - share * b[k]!);
 }
 
 function powers({ re, im }: ComplexMatrix): Float64Array {

@@ -121,7 +121,6 @@ function createRun(costAndGradient: CostAndGradient, start: Float64Array, option
   const box = options.box ?? everywhere(size);
   requireBox(box, size);
   const curvature = createCurvatureMemory(options.memory ?? 20);
-  const free = new Uint8Array(size);
   const began = now();
   let iterations = 0;
   let evaluations = 0;
@@ -141,23 +140,26 @@ function createRun(costAndGradient: CostAndGradient, start: Float64Array, option
   let current = evaluateAt(first);
   if (current.cost === Infinity) throw new RangeError('the cost at the start is no finite number');
 
-  /** The direction of the next step; writes which variables are free. */
+  /**
+   * The direction of the next step: towards the limit for a variable that stands near it with the gradient
+   * pushing against it, and by the inverse Hessian in the subspace of all others.
+   */
   function direction(norm: number): Float64Array {
     const { point, gradient } = current;
     const near = Math.min(NEAR_LIMIT, norm);
-    const towards = new Float64Array(size);
+    const towards = gradient.slice();
+    const held: number[] = [];
     for (let k = 0; k < size; k++) {
       const slope = gradient[k]!;
-      const limit = slope > 0 ? box.low[k]! : box.high[k]!;
-      free[k] =
-        slope === 0 ? (box.low[k]! < box.high[k]! ? 1 : 0) : Math.abs(point[k]! - limit) > near ? 1 : 0;
-      towards[k] = free[k] === 1 ? slope : 0;
+      const [low, high] = [box.low[k]!, box.high[k]!];
+      const pushed = slope > 0 ? point[k]! - low <= near : slope < 0 && high - point[k]! <= near;
+      if (!pushed && low < high) continue;
+      held.push(k);
+      towards[k] = 0;
     }
-    curvature.multiplyInPlace(towards, free);
-    for (let k = 0; k < size; k++) {
-      if (free[k] === 1) towards[k] = -towards[k]!;
-      else if (gradient[k] !== 0) towards[k] = (gradient[k]! > 0 ? box.low[k]! : box.high[k]!) - point[k]!;
-    }
+    curvature.multiplyInPlace(towards, held);
+    for (let k = 0; k < size; k++) towards[k] = -towards[k]!;
+    for (const k of held) towards[k] = (gradient[k]! > 0 ? box.low[k]! : box.high[k]!) - point[k]!;
     return towards;
   }
 

@@ -1,3 +1,4 @@
+import type { CellSlopes } from '../chip/cellSlopes.js';
 import { createCellSlopes } from '../chip/cellSlopes.js';
 import type { Chip } from '../chip/Chip.js';
 import { externalAtOutput } from '../chip/Chip.js';
@@ -109,12 +110,14 @@ export function createFieldSweep(chip: Chip, memory: FieldMemory): FieldSweep {
   const count = inputs.length;
   const panels = met.length;
   const total = met.reduce((sum, cellsOfPanel) => sum + cellsOfPanel, 0);
-  const transfers = instance.doubles(at.transfers, CELL * cells);
   const correlations = instance.doubles(at.correlations, CELL * cells);
   const panel = instance.doubles(at.panel, ROW * modes);
-  const byInternal = new Float64Array(CELL * cells);
-  const byExternal = new Float64Array(CELL * cells);
-  const slopesOf = createCellSlopes(chip);
+  const slopes: CellSlopes = {
+    transfer: instance.doubles(at.transfers, CELL * cells),
+    byInternal: new Float64Array(CELL * cells),
+    byExternal: new Float64Array(CELL * cells),
+  };
+  const writeSlopes = createCellSlopes(chip);
   const places = placesOfPhases(chip);
   const ends = createEnds(chip);
   const fields = zeroMatrix(modes, count);
@@ -136,10 +139,7 @@ export function createFieldSweep(chip: Chip, memory: FieldMemory): FieldSweep {
 
   function setCells(phases: Float64Array): void {
     for (let cell = 0; cell < cells; cell++) {
-      const slopes = slopesOf(cell, phases[places.internal[cell]!]!, phases[places.external[cell]!]!);
-      transfers.set(slopes.transfer, CELL * cell);
-      byInternal.set(slopes.byInternal, CELL * cell);
-      byExternal.set(slopes.byExternal, CELL * cell);
+      writeSlopes(slopes, cell, phases[places.internal[cell]!]!, phases[places.external[cell]!]!);
     }
   }
 
@@ -190,8 +190,8 @@ export function createFieldSweep(chip: Chip, memory: FieldMemory): FieldSweep {
       }
       if (places.port !== null && !ends.portAtInput) addOutputSlopes(gradient, slope);
       for (let cell = 0; cell < cells; cell++) {
-        gradient[places.internal[cell]!] = realProduct(byInternal, correlations, CELL * cell);
-        gradient[places.external[cell]!] = realProduct(byExternal, correlations, CELL * cell);
+        gradient[places.internal[cell]!] = realProduct(slopes.byInternal, correlations, CELL * cell);
+        gradient[places.external[cell]!] = realProduct(slopes.byExternal, correlations, CELL * cell);
       }
     },
   };
