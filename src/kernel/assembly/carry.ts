@@ -96,7 +96,8 @@ export function carryAdjoints(
     for (let cell = load<i32>(ranges, 4) - 1; cell >= first; cell--) {
       historyEnd -= 2 * ROW;
       const x = panel + usize(load<i32>(upperPort + usize(cell) * 4)) * ROW;
-      correlate(x, historyEnd, correlations + usize(cell) * CELL);
+      correlateRow(x, historyEnd, correlations + usize(cell) * CELL);
+      correlateRow(x + ROW, historyEnd, correlations + usize(cell) * CELL + 32);
       const t = transfers + usize(cell) * CELL;
       const ar = v128.load64_splat(t);
       const ai = v128.load64_splat(t, 8);
@@ -114,29 +115,21 @@ export function carryAdjoints(
   }
 }
 
-@inline function correlate(adjoints: usize, fields: usize, sums: usize): void {
-  let r11 = f64x2.splat(0), i11 = f64x2.splat(0), r12 = f64x2.splat(0), i12 = f64x2.splat(0);
-  let r21 = f64x2.splat(0), i21 = f64x2.splat(0), r22 = f64x2.splat(0), i22 = f64x2.splat(0);
+/** Correlations of one row of adjoint fields, (re, im), with both rows of fields; four sums fit the registers. */
+@inline function correlateRow(adjoints: usize, fields: usize, sums: usize): void {
+  let r1 = f64x2.splat(0), i1 = f64x2.splat(0), r2 = f64x2.splat(0), i2 = f64x2.splat(0);
   for (let place: usize = 0; place < 64; place += 16) {
-    const u1 = v128.load(adjoints + place);
-    const v1 = v128.load(adjoints + place, 64);
-    const u2 = v128.load(adjoints + place, ROW);
-    const v2 = v128.load(adjoints + place, ROW + 64);
+    const u = v128.load(adjoints + place);
+    const v = v128.load(adjoints + place, 64);
     const x1 = v128.load(fields + place);
     const y1 = v128.load(fields + place, 64);
-    r11 = add(r11, overlapRe(x1, y1, u1, v1));
-    i11 = add(i11, overlapIm(x1, y1, u1, v1));
-    r21 = add(r21, overlapRe(x1, y1, u2, v2));
-    i21 = add(i21, overlapIm(x1, y1, u2, v2));
+    r1 = add(r1, overlapRe(x1, y1, u, v));
+    i1 = add(i1, overlapIm(x1, y1, u, v));
     const x2 = v128.load(fields + place, ROW);
     const y2 = v128.load(fields + place, ROW + 64);
-    r12 = add(r12, overlapRe(x2, y2, u1, v1));
-    i12 = add(i12, overlapIm(x2, y2, u1, v1));
-    r22 = add(r22, overlapRe(x2, y2, u2, v2));
-    i22 = add(i22, overlapIm(x2, y2, u2, v2));
+    r2 = add(r2, overlapRe(x2, y2, u, v));
+    i2 = add(i2, overlapIm(x2, y2, u, v));
   }
-  accumulate(sums, r11, i11);
-  accumulate(sums + 16, r12, i12);
-  accumulate(sums + 32, r21, i21);
-  accumulate(sums + 48, r22, i22);
+  accumulate(sums, r1, i1);
+  accumulate(sums + 16, r2, i2);
 }
