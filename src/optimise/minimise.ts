@@ -45,7 +45,7 @@ export interface MinimiseOptions {
   readonly stallWithin?: number;
   /** 10 by default. */
   readonly stallIterations?: number;
-  /** Pairs of steps and changes of the gradient that are kept; 20 by default. */
+  /** Pairs of steps and changes of the gradient that are kept; 10 by default. */
   readonly memory?: number;
   /** The time in milliseconds, from any beginning; by default that of the platform. */
   readonly now?: () => number;
@@ -120,7 +120,7 @@ function createRun(costAndGradient: CostAndGradient, start: Float64Array, option
   const size = start.length;
   const box = options.box ?? everywhere(size);
   requireBox(box, size);
-  const curvature = createCurvatureMemory(options.memory ?? 20);
+  const curvature = createCurvatureMemory(options.memory ?? 10);
   const began = now();
   let iterations = 0;
   let evaluations = 0;

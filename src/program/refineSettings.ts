@@ -9,6 +9,9 @@ import { createCost } from '../merit/createCost.js';
 import type { Minimum, MinimiseOptions, StopReason } from '../optimise/minimise.js';
 import { minimise, minimiseInterruptibly } from '../optimise/minimise.js';
 import type { Box, CostAndGradient } from '../optimise/Problem.js';
+import { projectInPlace } from '../optimise/Problem.js';
+import { randomStream } from '../random/RandomStream.js';
+import { STREAMS } from '../random/streams.js';
 import type { FieldMemory, FieldSweep } from '../simulate/createFieldSweep.js';
 import { createFieldSweep, reserveFieldMemory } from '../simulate/createFieldSweep.js';
 
@@ -19,7 +22,10 @@ export interface HeldShifter {
   readonly phaseRad: number;
 }
 
-/** How a refinement is limited and watched. */
+/**
+ * How a refinement is limited and watched. By default it ends after 10,000 iterations, or when the cost has
+ * fallen by less than one part in 100,000 over 20.
+ */
 export interface RefineOptions extends Omit<MinimiseOptions, 'box'> {
   /** Shifters that stay at a phase, whatever their range. */
   readonly held?: readonly HeldShifter[];
@@ -81,6 +87,12 @@ export async function refineInterruptibly(
   );
 }
 
+/**
+ * A chip's cost falls ever more slowly where cells are out of reach: the end comes when it falls by less than
+ * one part in 100,000 over 20 iterations.
+ */
+const DEFAULTS: MinimiseOptions = { mostIterations: 10_000, stallWithin: 1e-5, stallIterations: 20 };
+
 interface Refinement {
   readonly costAndGradient: CostAndGradient;
   readonly start: Float64Array;
@@ -109,16 +121,20 @@ function prepare(
     cost,
     slope,
   );
+  const kicked = kick(begin, modes);
+  projectInPlace(kicked, limits.box);
   return {
     costAndGradient: (phases, gradient) => {
       const value = cost.evaluate(sweep.forward(phases), slope);
       sweep.backward(slope, gradient);
       return value;
     },
-    start: begin.phases,
-    options: { ...options, box: limits.box },
+    start: kicked,
+    options: { ...DEFAULTS, ...options, box: limits.box },
     finish: ({ point, iterations, evaluations, gradientNorm, stopped }) => {
-      const found = judge(limits.bringIn(point), sweep, cost, slope);
+      // Where nothing depends on a phase the search has not moved it.
+      const moved = point.map((phase, k) => (phase === kicked[k] ? begin.phases[k]! : phase));
+      const found = judge(limits.bringIn(moved), sweep, cost, slope);
       // Turns cost a rounding; where nothing was won, not even that may be lost.
       const best = found.cost <= begin.cost ? found : begin;
       return {
@@ -156,6 +172,24 @@ function bestStart(
   const judged = starts.map((phases) => judge(phases, sweep, cost, slope));
   if (judged.length === 0) throw new RangeError('a refinement needs settings to start from');
   return judged.reduce((best, one) => (one.cost < best.cost ? one : best));
+}
+
+/** Costs below this are rounding; there is nothing left to refine. */
+const NO_COST = 1e-20;
+/** Most that a phase is kicked by, as a standard deviation in radians. */
+const MOST_KICK = 1e-2;
+
+/**
+ * The phases a little beside those of the start, always the same way. Cells that are out of reach may leave the
+ * start at a saddle point, for permutations at a whole set of them, where the gradient vanishes by symmetry
+ * although there are better phases nearby. Independent errors s of all phases cost (N - 1) s^2 (conventions,
+ * section 7); s is chosen to cost about a hundredth of what the start does.
+ */
+function kick({ phases, cost }: Judged, modes: number): Float64Array {
+  if (!(cost > NO_COST)) return phases.slice();
+  const deviation = Math.min(MOST_KICK, Math.sqrt(cost / (100 * modes)));
+  const random = randomStream(0, STREAMS.refinementKick);
+  return phases.map((phase) => phase + deviation * random.normal());
 }
 
 /** What the phases of a chip's shifters may be. */
