@@ -28,7 +28,9 @@ export function projectInPlace(point: Float64Array, { low, high }: Box): void {
 export function projectedGradientNorm({ point, gradient }: Evaluated, { low, high }: Box): number {
   let norm = 0;
   for (let k = 0; k < point.length; k++) {
-    const moved = Math.min(Math.max(point[k]! - gradient[k]!, low[k]!), high[k]!);
+    const x = point[k]! - gradient[k]!;
+    const moved = x < low[k]! ? low[k]! : x > high[k]! ? high[k]! : x;
+    // Passes on what is no number.
     norm = Math.max(norm, Math.abs(moved - point[k]!));
   }
   return norm;

@@ -175,7 +175,8 @@ function createRun(costAndGradient: CostAndGradient, start: Float64Array, option
     const { low, high } = box;
     const point = new Float64Array(size);
     for (let k = 0; k < size; k++) {
-      point[k] = Math.min(Math.max(from[k]! + step * towards[k]!, low[k]!), high[k]!);
+      const x = from[k]! + step * towards[k]!;
+      point[k] = x < low[k]! ? low[k]! : x > high[k]! ? high[k]! : x;
     }
     const evaluated = evaluateAt(point);
     yield;

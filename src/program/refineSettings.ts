@@ -23,7 +23,7 @@ export interface HeldShifter {
 }
 
 /**
- * How a refinement is limited and watched. By default it ends after 10,000 iterations, or when the cost has
+ * How a refinement is limited and watched. By default it ends after 5000 iterations, or when the cost has
  * fallen by less than one part in 100,000 over 20.
  */
 export interface RefineOptions extends Omit<MinimiseOptions, 'box'> {
@@ -91,7 +91,7 @@ export async function refineInterruptibly(
  * A chip's cost falls ever more slowly where cells are out of reach: the end comes when it falls by less than
  * one part in 100,000 over 20 iterations.
  */
-const DEFAULTS: MinimiseOptions = { mostIterations: 10_000, stallWithin: 1e-5, stallIterations: 20 };
+const DEFAULTS: MinimiseOptions = { mostIterations: 5000, stallWithin: 1e-5, stallIterations: 20 };
 
 interface Refinement {
   readonly costAndGradient: CostAndGradient;
