@@ -1,3 +1,5 @@
+import type { Evaluated } from './Problem.js';
+
 /** A step, the change of the gradient over it, and their product. */
 interface Pair {
   readonly step: Float64Array;
@@ -8,7 +10,7 @@ interface Pair {
 /** What the last steps tell of the cost's curvature: the limited memory of L-BFGS. */
 export interface CurvatureMemory {
   /** Takes up a step and the change of the gradient over it, in place of the oldest when the memory is full. */
-  remember(step: Float64Array, change: Float64Array): void;
+  remember(from: Evaluated, to: Evaluated): void;
   forget(): void;
   readonly size: number;
   /**
@@ -31,13 +33,22 @@ const LEAST_CURVATURE = 1e-14;
  */
 export function createCurvatureMemory(capacity: number): CurvatureMemory {
   const pairs: Pair[] = [];
+  // Making an array takes longer than filling it: those of forgotten pairs are used again.
+  const spare: Pair[] = [];
   return {
-    remember: (step, change) => {
-      if (pairs.length === capacity) pairs.shift();
+    remember: (from, to) => {
+      if (pairs.length === capacity) spare.push(pairs.shift()!);
+      const size = from.point.length;
+      const { step, change } = spare.pop() ?? {
+        step: new Float64Array(size),
+        change: new Float64Array(size),
+      };
+      differenceInto(step, to.point, from.point);
+      differenceInto(change, to.gradient, from.gradient);
       pairs.push({ step, change, curvature: product(step, change) });
     },
     forget: () => {
-      pairs.length = 0;
+      spare.push(...pairs.splice(0));
     },
     get size() {
       return pairs.length;
@@ -81,6 +92,10 @@ function product(a: Float64Array, b: Float64Array): number {
   }
   for (let k = whole; k < a.length; k++) s0 += a[k]! * b[k]!;
   return s0 + s1 + (s2 + s3);
+}
+
+function differenceInto(out: Float64Array, a: Float64Array, b: Float64Array): void {
+  for (let k = 0; k < out.length; k++) out[k] = a[k]! - b[k]!;
 }
 
 /** The part of a product that some variables contribute. */

@@ -121,6 +121,7 @@ function createRun(costAndGradient: CostAndGradient, start: Float64Array, option
   const box = options.box ?? everywhere(size);
   requireBox(box, size);
   const curvature = createCurvatureMemory(options.memory ?? 10);
+  const towards = new Float64Array(size);
   const began = now();
   let iterations = 0;
   let evaluations = 0;
@@ -144,10 +145,10 @@ function createRun(costAndGradient: CostAndGradient, start: Float64Array, option
    * The direction of the next step: towards the limit for a variable that stands near it with the gradient
    * pushing against it, and by the inverse Hessian in the subspace of all others.
    */
-  function direction(norm: number): Float64Array {
+  function setDirection(norm: number): void {
     const { point, gradient } = current;
     const near = Math.min(NEAR_LIMIT, norm);
-    const towards = gradient.slice();
+    towards.set(gradient);
     const held: number[] = [];
     for (let k = 0; k < size; k++) {
       const slope = gradient[k]!;
@@ -160,17 +161,16 @@ function createRun(costAndGradient: CostAndGradient, start: Float64Array, option
     curvature.multiplyInPlace(towards, held);
     for (let k = 0; k < size; k++) towards[k] = -towards[k]!;
     for (const k of held) towards[k] = (gradient[k]! > 0 ? box.low[k]! : box.high[k]!) - point[k]!;
-    return towards;
   }
 
   /** A whole quasi-Newton step; along the bare gradient none by more than 1 in any variable. */
-  function firstStep(towards: Float64Array): number {
+  function firstStep(): number {
     if (curvature.size > 0) return 1;
     return 1 / towards.reduce((longest, way) => Math.max(longest, Math.abs(way)), 1);
   }
 
   /** A point on the line through the current one, bent along the faces of the box. */
-  function* evaluateStep(towards: Float64Array, step: number): Generator<void, LinePoint> {
+  function* evaluateStep(step: number): Generator<void, LinePoint> {
     const { point: from } = current;
     const { low, high } = box;
     const point = new Float64Array(size);
@@ -190,22 +190,16 @@ function createRun(costAndGradient: CostAndGradient, start: Float64Array, option
       const norm = projectedGradientNorm(current, box);
       if (norm <= gradientWithin) return 'gradient';
       if (iterations >= mostIterations) return 'iterations';
-      const towards = direction(norm);
+      setDirection(norm);
       const from: LinePoint = { ...current, step: 0, slope: slopeAlong(current, towards, box) };
-      const found =
-        from.slope < 0
-          ? yield* searchLine(from, firstStep(towards), (step) => evaluateStep(towards, step))
-          : null;
+      const found = from.slope < 0 ? yield* searchLine(from, firstStep(), evaluateStep) : null;
       if (found === null) {
         // Once more along the gradient; when that does not help either, rounding hides the way.
         if (curvature.size === 0) return 'stall';
         curvature.forget();
         continue;
       }
-      curvature.remember(
-        difference(found.point, current.point),
-        difference(found.gradient, current.gradient),
-      );
+      curvature.remember(current, found);
       current = found;
       iterations++;
       onProgress?.({ iterations, evaluations, cost: current.cost, gradientNorm: norm });
@@ -243,12 +237,6 @@ function slopeAlong({ point, gradient }: Evaluated, towards: Float64Array, { low
     if (!stops) slope += gradient[k]! * way;
   }
   return slope;
-}
-
-function difference(a: Float64Array, b: Float64Array): Float64Array {
-  const result = new Float64Array(a.length);
-  for (let k = 0; k < a.length; k++) result[k] = a[k]! - b[k]!;
-  return result;
 }
 
 function everywhere(size: number): Box {

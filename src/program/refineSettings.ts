@@ -135,8 +135,10 @@ function prepare(
       // Where nothing depends on a phase the search has not moved it.
       const moved = point.map((phase, k) => (phase === kicked[k] ? begin.phases[k]! : phase));
       const found = judge(limits.bringIn(moved), sweep, cost, slope);
-      // Turns cost a rounding; where nothing was won, not even that may be lost.
-      const best = found.cost <= begin.cost ? found : begin;
+      // Turns cost a rounding; where nothing was won, not even that may be lost. Nor may the power distance rise
+      // where only its smooth form has fallen.
+      const farther = description.figure === 'powerDistance' && found.figure > begin.figure;
+      const best = found.cost <= begin.cost && !farther ? found : begin;
       return {
         settings: settingsFromPhases(chip, best.phases),
         costBefore: begin.cost,

@@ -1,5 +1,6 @@
 import { describe, expect, it } from 'vitest';
 import { createCurvatureMemory } from '../../src/optimise/CurvatureMemory.js';
+import type { Evaluated } from '../../src/optimise/Problem.js';
 import type { LinePoint } from '../../src/optimise/searchLine.js';
 import { searchLine } from '../../src/optimise/searchLine.js';
 import { randomStream } from '../../src/random/RandomStream.js';
@@ -9,14 +10,27 @@ function normals(size: number, seed: number): Float64Array {
   return Float64Array.from({ length: size }, () => random.normal());
 }
 
+/** Two points that lie a step apart, with gradients that differ by the change. */
+function between(step: Float64Array, change: Float64Array): [from: Evaluated, to: Evaluated] {
+  const from = { point: step.map(Math.sin), gradient: change.map(Math.cos), cost: 0 };
+  const to = {
+    point: from.point.map((value, k) => value + step[k]!),
+    gradient: from.gradient.map((value, k) => value + change[k]!),
+    cost: 0,
+  };
+  return [from, to];
+}
+
 /** Steps with the changes of the gradient that a fixed diagonal Hessian gives. */
 function remembered(size: number, pairs: number): ReturnType<typeof createCurvatureMemory> {
   const memory = createCurvatureMemory(5);
   for (let k = 0; k < pairs; k++) {
     const step = normals(size, k);
     memory.remember(
-      step,
-      step.map((value, index) => value * (1 + index)),
+      ...between(
+        step,
+        step.map((value, index) => value * (1 + index)),
+      ),
     );
   }
   return memory;
@@ -61,7 +75,7 @@ describe('the memory of curvature', () => {
 
   it('passes over pairs without positive curvature', () => {
     const memory = createCurvatureMemory(3);
-    memory.remember(Float64Array.of(1, 2), Float64Array.of(-1, -1));
+    memory.remember(...between(Float64Array.of(1, 2), Float64Array.of(-1, -1)));
     const vector = Float64Array.of(3, 4);
     memory.multiplyInPlace(vector, []);
     expect(vector).toEqual(Float64Array.of(3, 4));

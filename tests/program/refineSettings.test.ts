@@ -158,8 +158,7 @@ describe('refinement', () => {
           expect(refined.figureBefore).toBeCloseTo(before, 13);
           expect(refined.figure).toBeCloseTo(after, 13);
           expect(refined.cost).toBeLessThanOrEqual(refined.costBefore);
-          // The smooth form of the power distance is off by up to 5e-4.
-          if (figure === 'powerDistance') expect(after).toBeLessThan(before + 5e-4);
+          if (figure === 'powerDistance') expect(after).toBeLessThanOrEqual(before + 1e-14);
           else expect(after).toBeGreaterThanOrEqual(before - 1e-14);
           if (mostIterations === 40 && figure === 'fidelity' && before < 1 - 1e-9) {
             expect(after).toBeGreaterThan(before);
