@@ -59,6 +59,8 @@ export type { Retuning } from './program/retunings.js';
 export { RETUNINGS } from './program/retunings.js';
 export type { LimitedSettings } from './program/limitSettings.js';
 export { limitSettings } from './program/limitSettings.js';
+export type { HeldShifter, RefinedSettings, RefineOptions } from './program/refineSettings.js';
+export { refineInterruptibly, refineSettings } from './program/refineSettings.js';
 
 // What a chip does with them, and how well
 export { simulate } from './simulate/simulate.js';
@@ -68,6 +70,15 @@ export type { PortSide } from './merit/portPhaseFree.js';
 export { freePorts, missingPortPhases, portPhaseFreeFidelity } from './merit/portPhaseFree.js';
 export { judgedFidelity } from './merit/judgedFidelity.js';
 export { powerDistance } from './merit/powerDistance.js';
+export type { Cost, CostDescription, CostFigure } from './merit/createCost.js';
+export { createCost, POWER_SMOOTHING } from './merit/createCost.js';
+export type { FieldMemory, FieldSweep } from './simulate/createFieldSweep.js';
+export { createFieldSweep, reserveFieldMemory } from './simulate/createFieldSweep.js';
+
+// Minimising
+export type { Box, CostAndGradient } from './optimise/Problem.js';
+export type { MinimisationProgress, MinimiseOptions, Minimum, StopReason } from './optimise/minimise.js';
+export { minimise, minimiseInterruptibly } from './optimise/minimise.js';
 
 // Fabricated chips: errors of a process, trials, yield and tolerance
 export type { ErrorDistribution, ProcessErrors } from './chip/Chip.js';

@@ -80,3 +80,27 @@ export function zeroSettings(chip: Chip): Settings {
     port: chip.portShifters ? new Float64Array(chip.mesh.modes) : null,
   };
 }
+
+/** The phases of all shifters in the phase table's order, for settings of the chip's shape. */
+export function phasesInOrder(chip: Chip, settings: Settings): Float64Array {
+  const phases = new Float64Array(shifterCount(chip));
+  for (let cell = 0; cell < chip.mesh.cells; cell++) {
+    const { external, internal } = shifterIndicesOfCell(chip, cell);
+    phases[external] = settings.external[cell]!;
+    phases[internal] = settings.internal[cell]!;
+  }
+  settings.port?.forEach((phase, port) => (phases[shifterIndexOfPort(chip, port)] = phase));
+  return phases;
+}
+
+/** The settings whose phases, in the phase table's order, are these. */
+export function settingsFromPhases(chip: Chip, phases: Float64Array): Settings {
+  const settings = zeroSettings(chip);
+  for (let cell = 0; cell < chip.mesh.cells; cell++) {
+    const { external, internal } = shifterIndicesOfCell(chip, cell);
+    settings.external[cell] = phases[external]!;
+    settings.internal[cell] = phases[internal]!;
+  }
+  settings.port?.forEach((_, port) => (settings.port![port] = phases[shifterIndexOfPort(chip, port)]!));
+  return settings;
+}

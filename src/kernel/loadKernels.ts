@@ -87,6 +87,29 @@ export interface Kernels {
     result: number,
   ): void;
   /**
+   * Sends the fields of a panel through the mesh; with `keeps` the fields before each cell are appended at
+   * `history`. See assembly/carry.ts.
+   */
+  carryFields(
+    columns: number,
+    ranges: number,
+    upperPort: number,
+    transfers: number,
+    panel: number,
+    history: number,
+    keeps: number,
+  ): void;
+  /** Carries adjoint fields back from the outputs to the inputs and adds up the correlations of each cell. */
+  carryAdjoints(
+    columns: number,
+    ranges: number,
+    upperPort: number,
+    transfers: number,
+    panel: number,
+    historyEnd: number,
+    correlations: number,
+  ): void;
+  /**
    * Lays an N x N matrix out as the nulling kernels want it: see assembly/nullingMatrix.ts. Entry (i, j) is
    * double number `first` + i `rowStep` + j `columnStep` of the plane at `source`, N^2 doubles for re, then
    * as many for im.

@@ -1,4 +1,5 @@
 import type { KernelInstance, Kernels } from './loadKernels.js';
+import { twinCarry } from './twinCarry.js';
 import { twinCells } from './twinCells.js';
 import { twinErrors } from './twinErrors.js';
 import type { TwinMemory } from './twinMemory.js';
@@ -45,6 +46,7 @@ export function twinInstance(foreign: Partial<ForeignKernels> = {}): KernelInsta
       ...twinErrors(memory),
       ...twinCells(memory),
       ...twinPanels(memory),
+      ...twinCarry(memory),
       solveCells: absent,
       layOutMatrix: absent,
       nullRectangular: absent,

@@ -12,4 +12,5 @@ export const STREAMS = {
   dieBias: 6,
   phaseErrors: 7,
   splitterLosses: 8,
+  refinementKick: 9,
 } as const;

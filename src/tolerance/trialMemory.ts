@@ -3,6 +3,7 @@ import type { KernelInstance } from '../kernel/loadKernels.js';
 import { BLOCK_SIZE } from '../kernel/loadKernels.js';
 import { writeZiggurat, ZIGGURAT_SIZE } from '../kernel/ziggurat.js';
 import type { ComplexMatrix } from '../matrix/ComplexMatrix.js';
+import { reachedCells } from '../mesh/reachedCells.js';
 
 /** Input ports that the kernels propagate at a time. */
 const PANEL = 8;
@@ -79,32 +80,15 @@ export function reserveTrialMemory(instance: KernelInstance, chip: Chip, correla
     .set(upperPortIndex.map((port, cell) => columnIndex[cell]! * modes + port));
   instance.doubles(memory.nominal, 2 * cells).set(chip.couplingRatios);
   writeZiggurat(instance.doubles(memory.layers, ZIGGURAT_SIZE));
-  instance.integers(memory.ranges, 2 * columns * panels).set(reachedCells(chip));
+  instance.integers(memory.ranges, 2 * columns * panels).set(reachedByPanels(chip));
   return memory;
 }
 
-/**
- * For each panel of inputs and each column the first cell that their light can have reached and the one
- * behind the last: starting from a few ports, light spreads by one port a column.
- */
-function reachedCells({ mesh }: Chip): Int32Array {
-  const { modes, columns, upperPortIndex, firstCellOfColumn } = mesh;
+/** What the light of each panel of inputs can have reached, panel after panel. */
+function reachedByPanels({ mesh }: Chip): Int32Array {
   const ranges: number[] = [];
-  for (let input = 0; input < modes; input += PANEL) {
-    let top = input;
-    let bottom = Math.min(modes, input + PANEL) - 1;
-    for (let column = 0; column < columns; column++) {
-      const end = firstCellOfColumn[column + 1]!;
-      let first = firstCellOfColumn[column]!;
-      while (first < end && upperPortIndex[first]! + 1 < top) first++;
-      let last = first;
-      while (last < end && upperPortIndex[last]! <= bottom) last++;
-      ranges.push(first, last);
-      if (last > first) {
-        top = Math.min(top, upperPortIndex[first]!);
-        bottom = Math.max(bottom, upperPortIndex[last - 1]! + 1);
-      }
-    }
+  for (let input = 0; input < mesh.modes; input += PANEL) {
+    ranges.push(...reachedCells(mesh, input, Math.min(mesh.modes, input + PANEL) - 1));
   }
   return Int32Array.from(ranges);
 }

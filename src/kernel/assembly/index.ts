@@ -1,3 +1,4 @@
+export { carryAdjoints, carryFields } from './carry';
 export { correlateGrid, correlatePairs, drawRatios, pickPlaces, turnFactors, turnRatios } from './errors';
 export { fillNormals, fillUniforms, seedTrials } from './normals';
 export { composeCells } from './composeCells';
