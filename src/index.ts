@@ -42,7 +42,7 @@ export type { Reach } from './chip/reach.js';
 export { cellReach } from './chip/reach.js';
 export type { Settings } from './chip/Settings.js';
 export type { Shifter, ShifterRole } from './chip/shifters.js';
-export { listShifters, phaseOf, shifterCount } from './chip/shifters.js';
+export { listShifters, phaseOf, phasesInOrder, settingsFromPhases, shifterCount } from './chip/shifters.js';
 
 // From a target to phases
 export type { Decomposition } from './decompose/Decomposition.js';
