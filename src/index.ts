@@ -45,7 +45,7 @@ export { meshReach } from './chip/MeshReach.js';
 export { reachOfChip } from './chip/reachOfChip.js';
 export type { Settings } from './chip/Settings.js';
 export type { Shifter, ShifterRole } from './chip/shifters.js';
-export { listShifters, phaseOf, shifterCount } from './chip/shifters.js';
+export { listShifters, phaseOf, phasesInOrder, settingsFromPhases, shifterCount } from './chip/shifters.js';
 
 // From a target to phases
 export type { Decomposition } from './decompose/Decomposition.js';

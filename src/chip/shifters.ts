@@ -81,10 +81,24 @@ export function zeroSettings(chip: Chip): Settings {
   };
 }
 
-/** The phases of all shifters in the phase table's order, for settings of the chip's shape. */
+/**
+ * The phases of all shifters in the phase table's order.
+ * @throws RangeError when the settings are not of the chip's shape
+ */
 export function phasesInOrder(chip: Chip, settings: Settings): Float64Array {
+  const { cells, modes } = chip.mesh;
+  const ports = chip.portShifters ? modes : 0;
+  if (
+    settings.internal.length !== cells ||
+    settings.external.length !== cells ||
+    (settings.port?.length ?? 0) !== ports
+  ) {
+    throw new RangeError(
+      `the settings are not those of a chip with ${cells} cells and ${ports} port shifters`,
+    );
+  }
   const phases = new Float64Array(shifterCount(chip));
-  for (let cell = 0; cell < chip.mesh.cells; cell++) {
+  for (let cell = 0; cell < cells; cell++) {
     const { external, internal } = shifterIndicesOfCell(chip, cell);
     phases[external] = settings.external[cell]!;
     phases[internal] = settings.internal[cell]!;
@@ -93,8 +107,14 @@ export function phasesInOrder(chip: Chip, settings: Settings): Float64Array {
   return phases;
 }
 
-/** The settings whose phases, in the phase table's order, are these. */
+/**
+ * The settings whose phases, in the phase table's order, are these.
+ * @throws RangeError when there is not one for each shifter
+ */
 export function settingsFromPhases(chip: Chip, phases: Float64Array): Settings {
+  if (phases.length !== shifterCount(chip)) {
+    throw new RangeError(`${phases.length} phases for ${shifterCount(chip)} shifters`);
+  }
   const settings = zeroSettings(chip);
   for (let cell = 0; cell < chip.mesh.cells; cell++) {
     const { external, internal } = shifterIndicesOfCell(chip, cell);

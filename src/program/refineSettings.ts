@@ -60,7 +60,8 @@ export interface RefinedSettings {
  *
  * @param target N x N unitary
  * @param starts at least one; phases out of range are moved into it first
- * @throws RangeError for a start of another shape or a held shifter that does not exist; what createCost throws
+ * @throws RangeError for a target or start of another size, no start at all, a held shifter that does not exist or a field memory
+ * of another mesh; what createCost throws
  */
 export function refineSettings(
   chip: Chip,
@@ -112,6 +113,9 @@ function prepare(
     throw new RangeError(`a target of ${target.rows} x ${target.columns} for a chip of ${modes} ports`);
   }
   const cost = createCost(target, description);
+  if (fields && !(fields.mesh === chip.mesh && fields.inputs.join() === cost.inputs.join())) {
+    throw new RangeError('the field memory was reserved for another mesh or for other inputs');
+  }
   const sweep = createFieldSweep(chip, fields ?? reserveFieldMemory(chip.mesh, cost.inputs));
   const slope = zeroMatrix(modes, cost.inputs.length);
   const limits = limitsOfShifters(chip, held);

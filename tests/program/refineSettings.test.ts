@@ -113,6 +113,32 @@ describe('the gradient of a cost by all phases', () => {
   );
 });
 
+describe('the gradient on larger meshes', () => {
+  it('is the slope of the cost along random directions', () => {
+    const random = randomStream(1, 912);
+    for (const modes of [1, 2, 9, 16, 27]) {
+      for (const layout of LAYOUTS) {
+        const chip = lossy(scattered(idealChip(modes, { layout }), 0.1, modes));
+        const cost = createCost(haarUnitary(modes, modes), FIDELITY);
+        const slope = zeroMatrix(modes, modes);
+        const sweep = createFieldSweep(chip, reserveFieldMemory(chip.mesh, cost.inputs));
+        const phases = randomPhases(chip, modes);
+        const along = phases.map(() => random.normal());
+        const costAt = (step: number): number =>
+          cost.evaluate(sweep.forward(phases.map((phase, k) => phase + step * along[k]!)), slope);
+        const h = 1e-4;
+        const difference = (8 * (costAt(h) - costAt(-h)) - (costAt(2 * h) - costAt(-2 * h))) / (12 * h);
+        const gradient = new Float64Array(phases.length);
+        costAt(0);
+        sweep.backward(slope, gradient);
+        const expected = gradient.reduce((sum, value, k) => sum + value * along[k]!, 0);
+        // Rounding eps/h = 2e-12; truncation of the same order as h^4 times a fifth derivative of some hundreds.
+        expect(Math.abs(difference - expected)).toBeLessThan(1e-10);
+      }
+    }
+  });
+});
+
 describe('refinement', () => {
   it.each(ALL_STYLES.map((style) => [styleName(style), style] as const))(
     'finds back to what a chip can do exactly, from phases nearby: %s',
@@ -215,6 +241,8 @@ describe('refinement', () => {
     expect(refineSettings(chip, target, [bad, good, bad], FIDELITY)).toEqual(alone);
     expect(() => refineSettings(chip, target, [], FIDELITY)).toThrow(RangeError);
     expect(() => refineSettings(chip, haarUnitary(4, 1), [good], FIDELITY)).toThrow(RangeError);
+    const other = programmed(idealChip(4), haarUnitary(4, 1));
+    expect(() => refineSettings(chip, target, [other], FIDELITY)).toThrow(RangeError);
   });
 });
 
@@ -395,6 +423,25 @@ describe('limits of shifters in a refinement', () => {
     expect(() =>
       refineSettings(rough, target, [start], FIDELITY, { held: [{ shifterIndex: 36, phaseRad: 0 }] }),
     ).toThrow(RangeError);
+  });
+});
+
+describe('the kernel memory of a refinement', () => {
+  it('serves one chip after another of the same mesh, and no other', () => {
+    const ideal = idealChip(5);
+    const target = haarUnitary(5, 3);
+    const fields = reserveFieldMemory(ideal.mesh, [0, 1, 2, 3, 4]);
+    for (let seed = 1; seed <= 3; seed++) {
+      const chip = scattered(ideal, 0.15, seed);
+      const start = programmed(chip, target);
+      const alone = refineSettings(chip, target, [start], FIDELITY);
+      expect(refineSettings(chip, target, [start], FIDELITY, { fields })).toEqual(alone);
+    }
+    const other = idealChip(5, { layout: 'triangular' });
+    const start = programmed(other, target);
+    expect(() => refineSettings(other, target, [start], FIDELITY, { fields })).toThrow(RangeError);
+    const chosen = { ...FIDELITY, inputs: [1] };
+    expect(() => refineSettings(ideal, target, [start], chosen, { fields })).toThrow(RangeError);
   });
 });
 
