@@ -104,10 +104,13 @@ export const chipFileSchema = z
           shifter: z.int().min(1).describe('Number of the shifter, as in the phase table.'),
           name: name.exactOptional().describe('Name of the shifter, such as its pad.'),
           rangeRad: range.exactOptional(),
+          stuckRad: angle
+            .exactOptional()
+            .describe('The phase in radians at which a dead shifter stays; instead of rangeRad.'),
         }),
       )
       .exactOptional()
-      .describe('Shifters with a name or limits of their own.'),
+      .describe('Shifters with a name or limits of their own, or stuck at a phase.'),
     portNames: z.array(name).exactOptional().describe('Names of the ports from the top.'),
     process: z
       .strictObject({

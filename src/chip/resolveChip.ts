@@ -85,7 +85,7 @@ function resolveOverrides(
   const shifterNames = new Map<number, string>();
   const seen = new Set<number>();
   const names = new Set<string>();
-  file.shifterOverrides?.forEach(({ shifter, name, rangeRad }, k) => {
+  file.shifterOverrides?.forEach(({ shifter, name, rangeRad, stuckRad }, k) => {
     const field = `shifterOverrides[${k}]`;
     if (shifter > shifters) {
       throw chipFault(
@@ -98,6 +98,16 @@ function resolveOverrides(
     if (rangeRad) {
       requireRising(rangeRad, `${field}.rangeRad`);
       shifterRanges.set(shifter - 1, rangeRad);
+    }
+    if (stuckRad !== undefined) {
+      if (rangeRad) {
+        throw chipFault(
+          `${field}.stuckRad`,
+          'a stuck shifter has no range',
+          'Leave out rangeRad, or stuckRad for a shifter that works.',
+        );
+      }
+      shifterRanges.set(shifter - 1, [stuckRad, stuckRad]);
     }
     if (name !== undefined) {
       if (names.has(name)) {

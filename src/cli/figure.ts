@@ -11,7 +11,10 @@ import type { TableOptions } from './loadTable.js';
 import { loadTable } from './loadTable.js';
 import { tellOutOfRange } from './messages.js';
 import { defaultTableFolder } from './names.js';
+import { cellMargins } from '../program/cellMargins.js';
 import { chipBlock, outOfRangeBlock, reportHead } from './reportParts.js';
+import type { MeshShade } from './shadeOption.js';
+import { addShadeOption, marginsForShade } from './shadeOption.js';
 
 interface FigureOptions extends OutputOptions, TableOptions {
   readonly to?: string;
@@ -19,6 +22,7 @@ interface FigureOptions extends OutputOptions, TableOptions {
   readonly numbers?: boolean;
   readonly cellNumbers?: boolean;
   readonly title?: string;
+  readonly shade: MeshShade;
 }
 
 /** Adds the command `figure TABLE`. */
@@ -35,6 +39,7 @@ export function addFigureCommand(parent: Command): void {
     .option('--cell-numbers', 'number the cells')
     .option('--title <text>', 'title instead of the name of the chip')
     .option('--to <file>', 'write the figure here too (.svg)', pathFor('--to'));
+  addShadeOption(command);
   addChipOptions(command);
   addTargetOptions(command);
   addOutputOptions(command)
@@ -43,7 +48,8 @@ export function addFigureCommand(parent: Command): void {
       `
 Examples:
   phasewright figure out/phases-dft-4/phases.csv --width one-column --to mesh.svg
-  phasewright figure phases.csv --chip my.chip.json --no-numbers --title "Chip 7, as programmed"`,
+  phasewright figure phases.csv --chip my.chip.json --no-numbers --title "Chip 7, as programmed"
+  phasewright figure phases.json --shade reach`,
     )
     .action(async (argument: string, options: FigureOptions) => {
       await runFigure(argument, options);
@@ -63,10 +69,19 @@ async function runFigure(path: string, options: FigureOptions): Promise<void> {
   const table = await loadTable(path, options);
   const { chip } = table.readChip;
   const { drawMeshFigure } = await import('../figure/drawMeshFigure.js');
-  const { width, numbers, cellNumbers, title } = options;
+  const { width, numbers, cellNumbers, title, shade } = options;
+  if (shade === 'reach' && table.target === null) {
+    throw new InputError(
+      'table/target',
+      'what is wanted of the cells is not known without the target of this table',
+      'Name it with --target.',
+      { source: path },
+    );
+  }
   const svg = drawMeshFigure(chip, table.settings, {
     title: title ?? chip.name,
     captionLines: captionLines(chip, table.target?.source ?? null, table.merit),
+    ...(shade === 'reach' ? marginsForShade(shade, cellMargins(chip, table.target!.matrix)) : {}),
     ...(width === undefined ? {} : { width }),
     ...(numbers === undefined ? {} : { numbers }),
     ...(cellNumbers === undefined ? {} : { cellNumbers }),
@@ -78,7 +93,7 @@ async function runFigure(path: string, options: FigureOptions): Promise<void> {
       chip: chipHash(table.readChip),
       target: table.target ? matrixHash(table.target.matrix) : '',
     },
-    { width, numbers, cellNumbers, title },
+    { width, numbers, cellNumbers, title, ...(shade === 'phase' ? {} : { shade }) },
   );
   await finish(console, options, {
     folder: options.out ?? defaultTableFolder('figure', path),

@@ -77,12 +77,15 @@ export function shortNumber(value: number): string {
   return String(Number(value.toPrecision(4)));
 }
 
-/** The cautions that go with phases which end in heaters. */
-export function cautions(chip: Chip): string[] {
+/**
+ * The cautions that go with phases which end in heaters.
+ * @param refined whether the phases come from a search, which may leave internal phases beyond pi
+ */
+export function cautions(chip: Chip, refined = false): string[] {
   const limits = chip.shifterRange ?? (chip.shifterRanges.size > 0 ? 'own' : null);
   const assumed =
     limits === null
-      ? 'No shifter limits are given in the chip file; phases are in [0, 2 pi) and the internal ones in [0, pi].'
+      ? `No shifter limits are given in the chip file; phases are in [0, 2 pi)${internalPhases(chip, refined)}.`
       : limits === 'own'
         ? 'Limits are given for some shifters only; the others are taken to reach [0, 2 pi).'
         : `Shifters are taken to reach ${limits[0]} to ${limits[1]} rad, or their own limits.`;
@@ -90,4 +93,9 @@ export function cautions(chip: Chip): string[] {
     `${assumed} Check them against the ratings of the heaters and drivers before anything is switched on.`,
     "Laser safety (IEC 60825-1), local rules and the maker's ratings come first.",
   ];
+}
+
+function internalPhases(chip: Chip, refined: boolean): string {
+  if (!refined) return ' and the internal ones in [0, pi]';
+  return chip.style.internal === 'differential' ? ' and the internal ones in [0, 4 pi)' : '';
 }

@@ -4,15 +4,13 @@ import type { ReadChip } from '../chip/readChip.js';
 import { printableText } from '../figure/printableText.js';
 import { contentHash, matrixHash, runIdentity } from '../files/contentHash.js';
 import { packageVersion } from '../files/version.js';
-import type { Merit } from '../merit/merit.js';
-import { figuresOfMerit, MERIT_KEYS } from '../merit/merit.js';
+import { INTERRUPTED, withInterrupt } from '../files/withInterrupt.js';
+import { MERIT_KEYS } from '../merit/merit.js';
 import { freePorts, missingPortPhases } from '../merit/portPhaseFree.js';
-import type { Program } from '../program/carryingSweep.js';
 import { formatPhaseJson } from '../program/formatPhaseJson.js';
 import type { PhaseRow } from '../program/PhaseTable.js';
 import { formatPhaseCsv, phaseRows } from '../program/PhaseTable.js';
-import { programChip } from '../program/programChip.js';
-import { simulate } from '../simulate/simulate.js';
+import type { Retuning } from '../program/retunings.js';
 import type { AngleUnit } from '../units/angle.js';
 import type {
   ChipOptions,
@@ -46,6 +44,7 @@ import {
   tellRequirements,
 } from './messages.js';
 import { defaultFolder } from './names.js';
+import { createSearchProgress } from './progress.js';
 import {
   chipBlock,
   judge,
@@ -56,9 +55,19 @@ import {
   reportHead,
   shownMerit,
 } from './reportParts.js';
+import type { RetuneOptions } from './retuneOptions.js';
+import { addRetuneOptions, requireSensibleRetuning, settledRetuneOptions } from './retuneOptions.js';
+import { assignmentText, reassignmentBlock, retuningBlocks, retuningText } from './retuneReport.js';
+import type { ReassignedTarget, RetunedTarget, SearchControl } from './retuneTarget.js';
+import { reassignTarget, retuneTarget } from './retuneTarget.js';
+import type { MeshShade } from './shadeOption.js';
+import { addShadeOption, marginsForShade } from './shadeOption.js';
 import { textTable } from './textTable.js';
 
-interface PhasesOptions extends OutputOptions, ChipOptions, TargetOptions, UnitOption, RequireOption {}
+interface PhasesOptions
+  extends OutputOptions, ChipOptions, TargetOptions, UnitOption, RequireOption, RetuneOptions {
+  readonly shade: MeshShade;
+}
 
 /** Larger meshes are not drawn: a figure of them would be a grey field of several megabytes. */
 const LARGEST_FIGURE = 64;
@@ -78,6 +87,8 @@ export function addPhasesCommand(parent: Command, setExitCode: (code: number) =>
     );
   addChipOptions(command);
   addTargetOptions(command);
+  addRetuneOptions(command);
+  addShadeOption(command);
   addRequireOption(command);
   addUnitOption(command);
   addOutputOptions(command)
@@ -88,6 +99,8 @@ Examples:
   phasewright phases "dft(4)"                                  an ideal rectangular mesh
   phasewright phases target.npy --chip my.chip.json            your own chip
   phasewright phases target.npy --chip my.chip.json --require fidelity=0.99 --json
+  phasewright phases target.npy --chip my.chip.json --retune refine
+  phasewright phases target.npy --chip my.chip.json --retune refine --inputs 1,3 --outputs 2-5
   phasewright phases "splitter(0.3)" --ports 3-4 --chip my.chip.json
   python3 make_target.py | phasewright phases - --layout triangular`,
     )
@@ -97,12 +110,11 @@ Examples:
 }
 
 /** A target programmed on a chip, and how well the chip does it. */
-interface Programmed {
+interface Programmed extends RetunedTarget {
+  /** The target as the chip's ports see it. */
   readonly target: LoadedTarget;
-  readonly program: Program;
+  readonly reassigned: ReassignedTarget;
   readonly rows: PhaseRow[];
-  readonly merit: Merit;
-  readonly meritUncorrected: Merit | null;
   readonly missing: Float64Array | null;
 }
 
@@ -110,15 +122,35 @@ async function runPhases(argument: string, options: PhasesOptions): Promise<numb
   const console = createConsole(options);
   const [raw, namedChip] = await Promise.all([readTarget(argument), loadNamedChip(options)]);
   const readChip = namedChip ?? (await idealChipFor(raw.matrices[0]!.rows, options));
-  const modes = namedChip?.chip.mesh.modes;
+  const { modes } = readChip.chip.mesh;
+  requireSensibleRetuning(options, modes);
   const inputs = { target: rawTargetHash(raw), chip: chipHash(readChip) };
-  const runId = runIdentity('phases', inputs, settledTargetOptions(options));
+  const settled = { ...settledTargetOptions(options), ...settledRetuneOptions(options) };
+  const runId = runIdentity('phases', inputs, {
+    ...settled,
+    ...(options.shade === 'phase' ? {} : { shade: options.shade }),
+  });
   const folder = options.out ?? defaultFolder('phases', { ...raw, text: raw.source });
-  const each = raw.matrices.map((matrix, k) =>
-    programOne(readChip, prepareLoaded(raw, matrix, options, modes, k)),
+  const targets = raw.matrices.map((matrix, k) =>
+    prepareLoaded(raw, matrix, options, namedChip ? modes : undefined, k),
   );
-  const run: Run = { console, options, readChip, raw, each, runId, folder };
-  return raw.batch ? reportBatch(run) : reportOne(run);
+  const progress = createSearchProgress(console);
+  const { value, interrupted } = await withInterrupt(async (signal) => {
+    const each: Programmed[] = [];
+    for (const target of targets) {
+      each.push(
+        await programOne(readChip, target, options, { signal, onProgress: (at) => progress.show(at) }),
+      );
+    }
+    return each;
+  });
+  progress.end();
+  // Interrupted, what is left is programmed without a search: nothing is lost.
+  const run: Run = { console, options, readChip, raw, each: value!, runId, folder, settled };
+  const code = await (raw.batch ? reportBatch(run) : reportOne(run));
+  if (!interrupted) return code;
+  console.warning('interrupted: these are the best phases so far');
+  return INTERRUPTED;
 }
 
 interface Run {
@@ -129,21 +161,25 @@ interface Run {
   readonly each: readonly Programmed[];
   readonly runId: string;
   readonly folder: string;
+  /** The options that change the phases. */
+  readonly settled: Readonly<Record<string, unknown>>;
 }
 
-function programOne({ chip }: ReadChip, target: LoadedTarget): Programmed {
-  const { program, uncorrected } = programChip(chip, target.matrix);
-  const achieved = simulate(chip, program.settings);
-  const free = freePorts(chip);
+async function programOne(
+  { chip }: ReadChip,
+  target: LoadedTarget,
+  options: PhasesOptions,
+  control: SearchControl,
+): Promise<Programmed> {
+  const reassigned = reassignTarget(chip, target.matrix, options, control.signal);
+  const { matrix, assignment } = reassigned;
+  const found = await retuneTarget(chip, matrix, assignment, options, control);
   return {
-    target,
-    program,
-    rows: phaseRows(chip, program.settings),
-    merit: figuresOfMerit(target.matrix, achieved, free),
-    meritUncorrected: uncorrected
-      ? figuresOfMerit(target.matrix, simulate(chip, uncorrected.settings), free)
-      : null,
-    missing: chip.portShifters ? null : missingPortPhases(target.matrix, achieved, free),
+    ...found,
+    target: { ...target, matrix, source: `${target.source}${assignmentText(assignment)}` },
+    reassigned,
+    rows: phaseRows(chip, found.settings),
+    missing: chip.portShifters ? null : missingPortPhases(matrix, found.achieved, freePorts(chip)),
   };
 }
 
@@ -151,14 +187,18 @@ async function reportOne(run: Run): Promise<number> {
   const { console, options, readChip, runId, folder } = run;
   const one = run.each[0]!;
   const { chip } = readChip;
-  const { target, program, merit } = one;
+  const { target, settings, merit } = one;
   const files = new Map<string, string>(tableFiles(run, one, ''));
   if (chip.mesh.modes <= LARGEST_FIGURE) {
     const { drawMeshFigure } = await import('../figure/drawMeshFigure.js');
     const caption = captionLines(chip, target.source, merit);
     files.set(
       'mesh.svg',
-      drawMeshFigure(chip, program.settings, { title: chip.name, captionLines: caption }),
+      drawMeshFigure(chip, settings, {
+        title: chip.name,
+        captionLines: caption,
+        ...marginsForShade(options.shade, one.margins),
+      }),
     );
   }
   const requirements = judge(options.require ?? [], merit);
@@ -176,21 +216,29 @@ async function reportOne(run: Run): Promise<number> {
       chip: chipBlock(chip),
       ...programmedBlocks(run, one),
       requirements,
-      cautions: cautions(chip),
+      cautions: cautions(chip, options.retune === 'refine'),
     },
     show: () => showOne(run, one),
   });
-  tellOutOfReach(console, chip, program.outOfReach);
-  tellOutOfRange(console, program.outOfRange, options.unit);
-  for (const caution of cautions(chip)) console.message(`caution: ${caution}`);
+  tellOutOfReach(console, chip, one.outOfReach, MEANING_OUT_OF_REACH[options.retune]);
+  tellOutOfRange(console, one.outOfRange, options.unit);
+  for (const caution of cautions(chip, options.retune === 'refine')) console.message(`caution: ${caution}`);
   return tellRequirements(console, requirements);
 }
 
-function showOne(
-  { console, options, readChip }: Run,
-  { target, rows, merit, meritUncorrected }: Programmed,
-): void {
+/** What becomes of cells that are out of reach. */
+const MEANING_OUT_OF_REACH: Readonly<Record<Retuning, string>> = {
+  none: 'no phases do the target exactly',
+  cell: 'the nearest in reach is set',
+  mesh: 'later cells make good what they can',
+  refine: 'all phases together make good what they can',
+};
+
+function showOne({ console, options, readChip }: Run, one: Programmed): void {
+  const { target, rows, merit, retunings } = one;
   const { chip } = readChip;
+  const meritUncorrected =
+    retunings[0]!.retune === 'none' && retunings.length > 1 ? retunings[0]!.merit : null;
   console.result(
     `${printableText(chip.name)}: ${printableText(target.source)} on ${counted(chip.mesh.cells, 'cell')} in ${counted(chip.mesh.columns, 'column')}\n`,
   );
@@ -205,18 +253,22 @@ function showOne(
         : '\nno port shifters: the port-phase-free fidelity is what detectors of power see',
     );
   }
+  for (const paragraph of retuningText(one, one.reassigned, options.unit)) console.result(`\n${paragraph}`);
   console.result(`\n${shownRows(readChip, rows, options.unit)}`);
 }
 
 /** The blocks of a report that belong to one programmed target. */
 function programmedBlocks({ readChip: { chip } }: Run, one: Programmed): Record<string, unknown> {
-  const { program, merit, meritUncorrected, missing } = one;
+  const { merit, retunings, outOfReach, outOfRange, missing } = one;
+  const isIdeal = chip.couplingRatios.every((ratio) => ratio === 0.5);
   return {
     merit,
-    ...(meritUncorrected ? { meritUncorrected } : {}),
-    outOfReach: outOfReachBlock(chip, program.outOfReach),
-    outOfRange: outOfRangeBlock(program.outOfRange),
+    ...(isIdeal ? {} : { meritUncorrected: retunings[0]!.merit }),
+    outOfReach: outOfReachBlock(chip, outOfReach),
+    outOfRange: outOfRangeBlock(outOfRange),
     missingPortPhases: missingPortPhasesBlock(missing),
+    ...retuningBlocks(chip, one),
+    ...reassignmentBlock(one.reassigned),
   };
 }
 
@@ -231,7 +283,7 @@ function tableFiles(
     version: packageVersion(),
     target,
     chip: withoutSchema(run.readChip.file),
-    options: settledTargetOptions(run.options),
+    options: run.settled,
     hashes: { target: matrixHash(target.matrix), chip: chipHash(run.readChip), phases: contentHash(csv) },
   });
   return [
@@ -276,7 +328,7 @@ async function reportBatch(run: Run): Promise<number> {
       ...programmedBlocks(run, each[worst]!),
       requirements: judged[worst],
       tables,
-      cautions: cautions(readChip.chip),
+      cautions: cautions(readChip.chip, options.retune === 'refine'),
     },
     show: () =>
       console.result(
@@ -284,12 +336,11 @@ async function reportBatch(run: Run): Promise<number> {
           `${worst + 1}, with fidelity ${shownMerit(each[worst]!.merit.fidelity)}`,
       ),
   });
-  const short = each.filter(
-    ({ program }) => program.outOfReach.length + program.outOfRange.length > 0,
-  ).length;
+  const short = each.filter(({ outOfReach, outOfRange }) => outOfReach.length + outOfRange.length > 0).length;
   if (short > 0)
     console.warning(`${short} of them ask for more than cells or shifters can do (see the report)`);
-  for (const caution of cautions(readChip.chip)) console.message(`caution: ${caution}`);
+  for (const caution of cautions(readChip.chip, options.retune === 'refine'))
+    console.message(`caution: ${caution}`);
   const codes = judged.map((one, k) => tellRequirements(console, one, ` by matrix ${k + 1}`));
   return Math.max(...codes);
 }

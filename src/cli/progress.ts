@@ -35,3 +35,26 @@ export function createProgress(console: Console | undefined, total: number): Pro
     end: () => process.stderr.write('\r\u001b[K'),
   };
 }
+
+/** A line on a terminal that says how far a search is. */
+export interface SearchProgress {
+  show(progress: { readonly iterations: number; readonly cost: number }): void;
+  end(): void;
+}
+
+/** Progress of a search for a minimum; silent where standard error is no terminal or --quiet was given. */
+export function createSearchProgress(console: Console): SearchProgress {
+  if (!console.showsProgress) return { show: () => undefined, end: () => undefined };
+  let shown = -Infinity;
+  return {
+    show: ({ iterations, cost }) => {
+      const now = performance.now();
+      if (now - shown < BETWEEN_LINES) return;
+      shown = now;
+      process.stderr.write(`\r\u001b[Krefining: step ${iterations}, cost ${cost.toPrecision(4)}`);
+    },
+    end: () => {
+      if (shown > -Infinity) process.stderr.write('\r\u001b[K');
+    },
+  };
+}

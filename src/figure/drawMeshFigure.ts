@@ -4,6 +4,7 @@ import { drawLegend } from './drawLegend.js';
 import { drawColumnNumbers } from './drawColumnNumbers.js';
 import { drawMesh } from './drawMesh.js';
 import { drawPortLabels } from './drawPortLabels.js';
+import { drawReach, drawReachKey } from './drawReach.js';
 import type { FigureWidth, MeshFigureLayout } from './meshFigureLayout.js';
 import {
   LABEL_GAP,
@@ -49,6 +50,11 @@ export interface MeshFigureOptions {
    * case.
    */
   readonly cellNumbers?: boolean;
+  /**
+   * For each cell the bar power between what is wanted of it and the nearer end of its reach, below 0 where it
+   * cannot be done: cells are then shaded by it.
+   */
+  readonly cellMargins?: readonly number[];
 }
 
 /**
@@ -64,6 +70,9 @@ export interface MeshFigureOptions {
  */
 export function drawMeshFigure(chip: Chip, settings: Settings, options: MeshFigureOptions = {}): string {
   checkSettings(chip, settings);
+  if (options.cellMargins && options.cellMargins.length !== chip.mesh.cells) {
+    throw new RangeError(`${options.cellMargins.length} margins for ${chip.mesh.cells} cells`);
+  }
   const layout = meshFigureLayout(chip, {
     width: options.width,
     numbers: options.numbers,
@@ -87,10 +96,12 @@ export function drawMeshFigure(chip: Chip, settings: Settings, options: MeshFigu
     page.addText('desc', describeFigure(chip));
     page.add('rect', { id: 'paper', width: '100%', height: '100%', fill: '#ffffff' });
     drawLines(page, 'title', titleLines, TITLE_TEXT, MARGIN + 0.8 * TITLE_TEXT, true);
+    if (options.cellMargins) drawReach(page, pen, options.cellMargins);
     drawMesh(page, pen, options.cellNumbers === true && hasRoomForCellNumbers(chip, layout));
     drawPortLabels(page, pen);
     drawColumnNumbers(page, pen, columnBaseline);
-    const legendBottom = drawLegend(page, chip, layout, legendTop);
+    let legendBottom = drawLegend(page, chip, layout, legendTop);
+    if (options.cellMargins) legendBottom = drawReachKey(page, layout, legendBottom);
     height = drawCaption(page, options.captionLines ?? [], layout, legendBottom) + MARGIN;
   };
   return svgText(body, () => ({

@@ -4,13 +4,13 @@ import type { ComplexMatrix } from '../matrix/ComplexMatrix.js';
 import type { Program } from './carryingSweep.js';
 import { carryingSweep } from './carryingSweep.js';
 import { programThroughMesh } from './programThroughMesh.js';
-import type { Retuning } from './retunings.js';
+import type { DirectRetuning } from './retunings.js';
 
 /** A target's program for the chip as it is, and the one that takes the chip for ideal. */
 export interface ChipPrograms {
   readonly program: Program;
   /** The retuning that `program` comes from: what was asked for, or a lesser one that does as well. */
-  readonly retuned: Retuning;
+  readonly retuned: DirectRetuning;
   /** The phases of a chip with all splitters at 1/2; null when `program` is the same. */
   readonly uncorrected: Program | null;
 }
@@ -23,7 +23,11 @@ export interface ChipPrograms {
  * @param target N x N unitary (within the precision wanted of the result), N the number of the chip's ports
  * @throws RangeError when target and chip differ in size
  */
-export function programChip(chip: Chip, target: ComplexMatrix, retune: Retuning = 'cell'): ChipPrograms {
+export function programChip(
+  chip: Chip,
+  target: ComplexMatrix,
+  retune: DirectRetuning = 'cell',
+): ChipPrograms {
   const factors = decompose(target, chip.mesh);
   const nominal = chip.couplingRatios.every((ratio) => ratio === 0.5)
     ? null

@@ -57,7 +57,8 @@ describe.concurrent('phases', () => {
     const report = asRecord(await run.read('r/report.json'));
     expect(Object.keys(report)).toEqual([
       ...['version', 'runId', 'command', 'target', 'chip', 'merit', 'outOfReach', 'outOfRange'],
-      ...['missingPortPhases', 'requirements', 'cautions', 'files'],
+      ...['missingPortPhases', 'retunings', 'leastMargin', 'reach', 'stuckShifters'],
+      ...['requirements', 'cautions', 'files'],
     ]);
     expect(report['command']).toBe('phases');
     expect(report['runId']).toMatch(/^[0-9a-f]{16}$/);
