@@ -32,5 +32,6 @@ export function meshReach(intervals: readonly Reach[]): MeshReach {
 
 /** The reach of cells that can do everything: 50:50 splitters, phases of any size. */
 export function fullReach(cells: number): MeshReach {
-  return { leastBar: new Float64Array(cells), leastCross: new Float64Array(cells) };
+  const numbers = new Float64Array(2 * cells);
+  return { leastBar: numbers.subarray(0, cells), leastCross: numbers.subarray(cells) };
 }

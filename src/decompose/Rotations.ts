@@ -8,10 +8,12 @@ export interface Rotations {
 }
 
 export function createRotations(count: number): Rotations {
+  // One array for all three: to make an array costs as much as nulling several entries.
+  const numbers = new Float64Array(3 * count);
   return {
-    cosine: new Float64Array(count),
-    sineRe: new Float64Array(count),
-    sineIm: new Float64Array(count),
+    cosine: numbers.subarray(0, count),
+    sineRe: numbers.subarray(count, 2 * count),
+    sineIm: numbers.subarray(2 * count),
   };
 }
 

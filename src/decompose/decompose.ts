@@ -40,5 +40,14 @@ export function decomposeFromFarSide(
   mesh: Mesh,
   reach: MeshReach | null = null,
 ): Decomposition {
-  return { ...decompose(target, { ...mesh, mirror: coincidentMirror(mesh) }, reach), mesh };
+  return { ...decompose(target, farSideOf(mesh), reach), mesh };
 }
+
+/** One and the same mesh for each, so that what is known of its places serves many targets. */
+function farSideOf(mesh: Mesh): Mesh {
+  let far = farSides.get(mesh);
+  if (far === undefined) farSides.set(mesh, (far = { ...mesh, mirror: coincidentMirror(mesh) }));
+  return far;
+}
+
+const farSides = new WeakMap<Mesh, Mesh>();

@@ -37,12 +37,30 @@ export function decomposeWith(
     columns: mirror === 'columns' || mirror === 'both',
   };
   const negligible = NEGLIGIBLE * modes * Number.EPSILON;
-  const places = mirror === 'none' ? null : placesOnMesh(mesh, mirrored);
+  const { places, diagonalBefore } = placesOf(mesh, mirrored);
   const plainReach = places && reach ? takeFromPlaces(reach, places) : reach;
   const { rotations, diagonal } = nulling(target, layout, mirrored, negligible * negligible, plainReach);
   const { cosine, sineRe, sineIm } = places ? putAtPlaces(rotations, places, mirrored) : rotations;
   if (mirrored.ports) diagonal.reverse();
-  return { mesh, cosine, sineRe, sineIm, diagonal, diagonalBefore: placeDiagonal(mesh, mirrored) };
+  return { mesh, cosine, sineRe, sineIm, diagonal, diagonalBefore };
+}
+
+/** Where the nulling's results stand on a mesh: to find out costs as much as the nulling of a small one. */
+interface Places {
+  /** Null on a mesh that is not mirrored. */
+  readonly places: Int32Array | null;
+  readonly diagonalBefore: Int32Array;
+}
+
+const placesOfMeshes = new WeakMap<Mesh, Places>();
+
+function placesOf(mesh: Mesh, mirrored: Mirrored): Places {
+  let found = placesOfMeshes.get(mesh);
+  if (found === undefined) {
+    const places = mesh.mirror === 'none' ? null : placesOnMesh(mesh, mirrored);
+    placesOfMeshes.set(mesh, (found = { places, diagonalBefore: placeDiagonal(mesh, mirrored) }));
+  }
+  return found;
 }
 
 /** Per cell of the plain mesh, index of the same cell on the mirrored one. */
