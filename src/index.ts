@@ -66,6 +66,7 @@ export { RETUNINGS } from './program/retunings.js';
 export type { LimitedSettings } from './program/limitSettings.js';
 export { limitSettings } from './program/limitSettings.js';
 export type { HeldShifter, RefinedSettings, RefineOptions } from './program/refineSettings.js';
+export { principalSettings } from './program/principalSettings.js';
 export { refineInterruptibly, refineSettings } from './program/refineSettings.js';
 
 // What a chip does with them, and how well

@@ -79,13 +79,13 @@ export function shortNumber(value: number): string {
 
 /**
  * The cautions that go with phases which end in heaters.
- * @param refined whether the phases come from a search, which may leave internal phases beyond pi
+ * @param beyondPi whether an internal phase is beyond pi, as a search may leave it
  */
-export function cautions(chip: Chip, refined = false): string[] {
+export function cautions(chip: Chip, beyondPi = false): string[] {
   const limits = chip.shifterRange ?? (chip.shifterRanges.size > 0 ? 'own' : null);
   const assumed =
     limits === null
-      ? `No shifter limits are given in the chip file; phases are in [0, 2 pi)${internalPhases(chip, refined)}.`
+      ? `No shifter limits are given in the chip file; phases are in [0, 2 pi)${internalPhases(chip, beyondPi)}.`
       : limits === 'own'
         ? 'Limits are given for some shifters only; the others are taken to reach [0, 2 pi).'
         : `Shifters are taken to reach ${limits[0]} to ${limits[1]} rad, or their own limits.`;
@@ -95,7 +95,7 @@ export function cautions(chip: Chip, refined = false): string[] {
   ];
 }
 
-function internalPhases(chip: Chip, refined: boolean): string {
-  if (!refined) return ' and the internal ones in [0, pi]';
+function internalPhases(chip: Chip, beyondPi: boolean): string {
+  if (!beyondPi) return ' and the internal ones in [0, pi]';
   return chip.style.internal === 'differential' ? ' and the internal ones in [0, 4 pi)' : '';
 }

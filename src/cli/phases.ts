@@ -216,14 +216,18 @@ async function reportOne(run: Run): Promise<number> {
       chip: chipBlock(chip),
       ...programmedBlocks(run, one),
       requirements,
-      cautions: cautions(chip, options.retune === 'refine'),
+      cautions: cautions(chip, isBeyondPi(one)),
     },
     show: () => showOne(run, one),
   });
   tellOutOfReach(console, chip, one.outOfReach, MEANING_OUT_OF_REACH[options.retune]);
   tellOutOfRange(console, one.outOfRange, options.unit);
-  for (const caution of cautions(chip, options.retune === 'refine')) console.message(`caution: ${caution}`);
+  for (const caution of cautions(chip, isBeyondPi(one))) console.message(`caution: ${caution}`);
   return tellRequirements(console, requirements);
+}
+
+function isBeyondPi({ settings }: Programmed): boolean {
+  return settings.internal.some((theta) => theta > Math.PI);
 }
 
 /** What becomes of cells that are out of reach. */
@@ -328,7 +332,7 @@ async function reportBatch(run: Run): Promise<number> {
       ...programmedBlocks(run, each[worst]!),
       requirements: judged[worst],
       tables,
-      cautions: cautions(readChip.chip, options.retune === 'refine'),
+      cautions: cautions(readChip.chip, each.some(isBeyondPi)),
     },
     show: () =>
       console.result(
@@ -339,7 +343,7 @@ async function reportBatch(run: Run): Promise<number> {
   const short = each.filter(({ outOfReach, outOfRange }) => outOfReach.length + outOfRange.length > 0).length;
   if (short > 0)
     console.warning(`${short} of them ask for more than cells or shifters can do (see the report)`);
-  for (const caution of cautions(readChip.chip, options.retune === 'refine'))
+  for (const caution of cautions(readChip.chip, each.some(isBeyondPi)))
     console.message(`caution: ${caution}`);
   const codes = judged.map((one, k) => tellRequirements(console, one, ` by matrix ${k + 1}`));
   return Math.max(...codes);

@@ -13,6 +13,7 @@ import type { MinimisationProgress } from '../optimise/minimise.js';
 import type { OutOfRange, OutOfReach } from '../program/carryingSweep.js';
 import type { CellMargin } from '../program/cellMargins.js';
 import { cellMargins } from '../program/cellMargins.js';
+import { principalSettings } from '../program/principalSettings.js';
 import { programChip } from '../program/programChip.js';
 import type { PortAssignment } from '../program/reassignPorts.js';
 import { reassignPorts, sameAssignment } from '../program/reassignPorts.js';
@@ -165,7 +166,24 @@ async function programsOf(
     ...(options.refineSeconds === undefined ? {} : { mostSeconds: options.refineSeconds }),
     ...(options.refineIterations === undefined ? {} : { mostIterations: options.refineIterations }),
   });
-  return { settings: refinement.settings, outOfRange: [], outOfReach, lesser, refinement, refined };
+  const settings = calmer(chip, target, refinement.settings, refined);
+  return { settings, outOfRange: [], outOfReach, lesser, refinement, refined };
+}
+
+/** Figures that differ by no more are the same to rounding. */
+const SAME_FIGURE = 1e-12;
+
+/** The refined phases as a plain program would have them, where that changes nothing but rounding. */
+function calmer(
+  chip: Chip,
+  target: ComplexMatrix,
+  settings: Settings,
+  description: CostDescription,
+): Settings {
+  const cost = createCost(target, description);
+  const figureOf = (one: Settings): number => cost.figure(takeColumns(simulate(chip, one), cost.inputs));
+  const principal = principalSettings(chip, settings);
+  return Math.abs(figureOf(principal) - figureOf(settings)) <= SAME_FIGURE ? principal : settings;
 }
 
 /** What is refined: the figure asked for, on the chip's ports that stand for those chosen of the target. */
