@@ -1,10 +1,11 @@
+import { ratiosOfCell } from './cellSplitters.js';
 import type { Chip, PhaseRange } from './Chip.js';
 import type { MeshReach } from './MeshReach.js';
 import { cosineOfSum, sineOfDifference } from './reach.js';
 import { shifterIndicesOfCell } from './shifters.js';
 
 /**
- * What each cell of a chip can attain with its own splitters and within the range of its internal phase: with
+ * What each cell of a chip can attain with the two splitters around its arms and within the range of its internal phase: with
  * q = sin^2(theta/2), cos^2(theta/2) for real splitters,
  *
  *     |W11|^2 = cos^2(a+b) + q sin 2a sin 2b,    |W12|^2 = sin^2(a-b) + (1 - q) sin 2a sin 2b
@@ -17,8 +18,7 @@ export function reachOfChip(chip: Chip): MeshReach {
   const leastBar = new Float64Array(mesh.cells);
   const leastCross = new Float64Array(mesh.cells);
   for (let cell = 0; cell < mesh.cells; cell++) {
-    const first = couplingRatios[2 * cell]!;
-    const second = couplingRatios[2 * cell + 1]!;
+    const { first, second } = ratiosOfCell(style, couplingRatios, cell);
     leastBar[cell] = cosineOfSum(first, second);
     leastCross[cell] = sineOfDifference(first, second);
     const range = shifterRanges.get(shifterIndicesOfCell(chip, cell).internal) ?? shifterRange;

@@ -22,6 +22,7 @@ export function programThroughMesh(
   factors: Decomposition,
   cellByCell: Program,
 ): Program | null {
+  if (chip.style.splitters !== 2) return null;
   const reach = reachOfChip(chip);
   const held = decompose(target, chip.mesh, reach);
   if (held.cosine.every((cosine, cell) => cosine === factors.cosine[cell])) return null;

@@ -386,7 +386,12 @@ describe('port shifters', () => {
 
 it('programs real, sparse and block-diagonal targets without noise in their phases', () => {
   // A differential pair adds no common phase, so a real matrix needs multiples of pi/2 alone.
-  const style = { internal: 'differential', external: 'upper-input', splitterForm: 'symmetric' } as const;
+  const style = {
+    internal: 'differential',
+    external: 'upper-input',
+    splitterForm: 'symmetric',
+    splitters: 2,
+  } as const;
   const quarter = (phase: number): number => Math.abs(Math.sin(2 * phase));
   for (const layout of LAYOUTS) {
     for (const target of [hadamard(8), blockDiagonal(hadamard(2), hadamard(4)), permutation([2, 0, 3, 1])]) {

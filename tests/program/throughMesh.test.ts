@@ -104,11 +104,12 @@ describe('retuning through the mesh', () => {
     }
   });
 
-  const REAL: CellStyle = { internal: 'lower', external: 'lower-output', splitterForm: 'real' };
+  const REAL: CellStyle = { internal: 'lower', external: 'lower-output', splitterForm: 'real', splitters: 2 };
   const DIFFERENTIAL: CellStyle = {
     internal: 'differential',
     external: 'upper-output',
     splitterForm: 'symmetric',
+    splitters: 2,
   };
   // From one side the nulling leaves the share (2N + 5)/(3 (N + 1)) of the error cell by cell, bar states
   // aside: 0.78 for N = 8 (tests/decompose/reach.test.ts). The better of two sides was seen to leave 0.60 to
