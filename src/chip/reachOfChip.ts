@@ -1,6 +1,8 @@
 import { ratiosOfCell } from './cellSplitters.js';
+import { applyOuterSplitterInPlace } from './cellTransfer.js';
 import type { Chip, PhaseRange } from './Chip.js';
-import type { MeshReach } from './MeshReach.js';
+import { externalAtOutput } from './Chip.js';
+import type { BesideFactors, MeshReach } from './MeshReach.js';
 import { cosineOfSum, sineOfDifference } from './reach.js';
 import { shifterIndicesOfCell } from './shifters.js';
 
@@ -31,6 +33,25 @@ export function reachOfChip(chip: Chip): MeshReach {
     leastCross[cell] = Math.sqrt(leastCross[cell]! ** 2 + span * crossMissed);
   }
   return { leastBar, leastCross };
+}
+
+/**
+ * What stands beside the factor of each cell of three splitters where its reach is judged: diag(e^{i d}) S(c)^dag
+ * on its right, or S(c)^dag diag(e^{i d}) on its left for an external phase at the output.
+ * @param carriedIn the phases e^{i d} that each cell meets in the carrying sweep, 4 numbers a cell: upper re, im,
+ * lower
+ */
+export function besideFactors(chip: Chip, carriedIn: Float64Array): BesideFactors {
+  const { mesh, style, couplingRatios } = chip;
+  const matrices = new Float64Array(8 * mesh.cells);
+  for (let cell = 0; cell < mesh.cells; cell++) {
+    const matrix = matrices.subarray(8 * cell, 8 * (cell + 1));
+    matrix.set(carriedIn.subarray(4 * cell, 4 * cell + 2), 0);
+    matrix.set(carriedIn.subarray(4 * cell + 2, 4 * cell + 4), 6);
+    const { outer } = ratiosOfCell(style, couplingRatios, cell);
+    if (outer !== null) applyOuterSplitterInPlace(matrix, style, outer, true);
+  }
+  return { matrices, onLeft: externalAtOutput(style) };
 }
 
 /** Least and greatest sin^2(theta/2) over a range of theta. */

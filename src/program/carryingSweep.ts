@@ -51,12 +51,15 @@ const ROUNDING = 16;
  * Englund, Nat. Commun. 13, 6831 (2022)). Losses are ignored. Cost O(N^2).
  * @param couplingRatios the ratios to reckon with, as many per cell as it has splitters; by default the
  * chip's own
+ * @param carriedIn written where given: the carried phases that each cell meets, 4 numbers a cell, the upper
+ * port's re and im first
  * @throws RangeError when the decomposition stands on another mesh than the chip's
  */
 export function carryingSweep(
   chip: Chip,
   decomposition: Decomposition,
   couplingRatios: Float64Array = chip.couplingRatios,
+  carriedIn: Float64Array | null = null,
 ): Program {
   const { mesh, style } = chip;
   const { modes, cells, upperPortIndex } = mesh;
@@ -82,6 +85,7 @@ export function carryingSweep(
     const shifters = shifterIndicesOfCell(chip, cell);
     carried.meetDiagonal(upper, cell);
     carried.meetDiagonal(upper + 1, cell);
+    carriedIn?.set(carried.phases.subarray(2 * upper, 2 * upper + 4), 4 * cell);
     writeWanted(request.wanted, decomposition, cell, carried.phases, upper, againstLight);
     const { first, second, outer } = ratiosOfCell(style, couplingRatios, cell);
     if (outer !== null) undoOuterSplitter(request.wanted, style, outer, tolerance);
