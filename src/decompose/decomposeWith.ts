@@ -29,7 +29,7 @@ export function decomposeWith(
   if (target.rows !== modes || target.columns !== modes) {
     throw new RangeError(`the mesh has ${modes} ports, the target is ${target.rows} x ${target.columns}`);
   }
-  if (reach !== null && (reach.leastBar.length !== cells || reach.leastCross.length !== cells)) {
+  if (reach !== null && !isForCells(reach, cells)) {
     throw new RangeError(`the mesh has ${cells} cells, the reach is that of ${reach.leastBar.length}`);
   }
   const mirrored: Mirrored = {
@@ -43,6 +43,11 @@ export function decomposeWith(
   const { cosine, sineRe, sineIm } = places ? putAtPlaces(rotations, places, mirrored) : rotations;
   if (mirrored.ports) diagonal.reverse();
   return { mesh, cosine, sineRe, sineIm, diagonal, diagonalBefore: placeDiagonal(mesh, mirrored) };
+}
+
+function isForCells({ leastBar, leastCross, beside }: MeshReach, cells: number): boolean {
+  const besideFits = beside === undefined || beside.matrices.length === 8 * cells;
+  return leastBar.length === cells && leastCross.length === cells && besideFits;
 }
 
 /** Per cell of the plain mesh, index of the same cell on the mirrored one. */
