@@ -5,7 +5,7 @@ export const INTERNAL_ARMS = ['upper', 'lower', 'differential'] as const;
 /** Where the internal phase sits. */
 export type InternalArm = (typeof INTERNAL_ARMS)[number];
 
-/** The guide on which the external phase sits, before or behind the two splitters. */
+/** The guide on which the external phase sits, before or behind the two splitters of the internal phase. */
 export const EXTERNAL_GUIDES = ['upper-input', 'lower-input', 'upper-output', 'lower-output'] as const;
 /** Where the external phase sits. */
 export type ExternalGuide = (typeof EXTERNAL_GUIDES)[number];
@@ -15,11 +15,21 @@ export const SPLITTER_FORMS = ['symmetric', 'real'] as const;
 /** The form of a splitter's matrix. */
 export type SplitterForm = (typeof SPLITTER_FORMS)[number];
 
+/**
+ * Splitters of a cell. The third one stands on the far side of the external phase: light meets it before an
+ * external phase at the input, or behind one at the output. It moves what a cell cannot reach away from the
+ * full cross and bar states: Hamerly, Bandyopadhyay, Englund, Nat. Commun. 13, 6831 (2022).
+ */
+export const SPLITTER_COUNTS = [2, 3] as const;
+/** How many splitters a cell has. */
+export type SplitterCount = (typeof SPLITTER_COUNTS)[number];
+
 /** How every cell of a chip is built, as it stands on the chip. */
 export interface CellStyle {
   readonly internal: InternalArm;
   readonly external: ExternalGuide;
   readonly splitterForm: SplitterForm;
+  readonly splitters: SplitterCount;
 }
 
 /** Amplitude factors in (0, 1]; 1 is no loss. */
@@ -53,7 +63,10 @@ export interface ProcessErrors {
   readonly bias: number;
   /** Standard deviation of a shift that all splitters of a die share. */
   readonly biasSigma: number;
-  /** Correlation of the local errors (sigma, sigmaAngle) of the two splitters of a cell, from -1 to 1. */
+  /**
+   * Correlation of the local errors (sigma, sigmaAngle) of any two splitters of a cell, from -1 to 1; from
+   * -1/2 for cells of three, no two of which can be opposite to each other.
+   */
   readonly pairCorrelation: number;
   /** Distance in cells over which the local errors' correlation falls to 1/e; 0 for none. */
   readonly correlationLength: number;
@@ -100,14 +113,14 @@ export interface Chip {
    */
   readonly portShifters: boolean;
   /**
-   * Power that crosses, two per cell in cell order: at 2k the splitter that the light meets first, at 2k+1
-   * the second.
+   * Power that crosses, `style.splitters` per cell in cell order, a cell's as the light meets them; see
+   * `ratiosOfCell`.
    */
   readonly couplingRatios: Float64Array;
   readonly loss: ChipLoss;
   /**
-   * Amplitude factor of the two splitters of each cell together, where splitters differ in loss; null:
-   * loss.splitter squared everywhere.
+   * Amplitude factor of the splitters of each cell together, where splitters differ in loss; null:
+   * loss.splitter for each of them.
    */
   readonly cellLoss: Float64Array | null;
   /** Range of every shifter without one of its own; null when the chip states none. */

@@ -9,6 +9,18 @@ export interface MeshReach {
   readonly leastBar: Float64Array;
   /** Least |W12| = |W21| of each cell, in [0, 1]; leastBar^2 + leastCross^2 <= 1. */
   readonly leastCross: Float64Array;
+  /** What stands beside W where the amplitudes are judged, for cells of three splitters. */
+  readonly beside?: BesideFactors;
+}
+
+/**
+ * A unitary Q of every cell: not W is judged, but W Q, or Q W for `onLeft`. Phases on the other side of W
+ * change nothing and are free.
+ */
+export interface BesideFactors {
+  /** 8 numbers a cell: Q11 re, im, Q12, Q21, Q22. */
+  readonly matrices: Float64Array;
+  readonly onLeft: boolean;
 }
 
 /**

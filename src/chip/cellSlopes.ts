@@ -1,4 +1,5 @@
-import { writeSplitArms } from './cellTransfer.js';
+import { ratiosOfCell, splitterAmplitude } from './cellSplitters.js';
+import { applyOuterSplitterInPlace, writeSplitArms } from './cellTransfer.js';
 import type { Chip, ExternalGuide, InternalArm } from './Chip.js';
 
 /** Numbers of a cell's 2x2 matrix: 11 re, im, 12, 21, 22. */
@@ -26,12 +27,13 @@ export type WriteCellSlopes = (slopes: CellSlopes, cell: number, internal: numbe
  * times i/2 and -i/2).
  */
 export function createCellSlopes(chip: Chip): WriteCellSlopes {
-  const { style, loss } = chip;
+  const { style, loss, couplingRatios } = chip;
   const aroundUpper = aroundArm(chip, 0);
   const aroundLower = aroundArm(chip, 1);
   const [upperShare, lowerShare] = ARM_SHARES[style.internal];
   const [onePlace, otherPlace] = EXTERNAL_PLACES[style.external];
-  return ({ transfer, byInternal, byExternal }, cell, internal, external) => {
+  return (slopes, cell, internal, external) => {
+    const { transfer, byInternal, byExternal } = slopes;
     const at = CELL * cell;
     const ur = upperShare === 0 ? 1 : loss.shifter * Math.cos(upperShare * internal);
     const ui = upperShare === 0 ? 0 : loss.shifter * Math.sin(upperShare * internal);
@@ -68,6 +70,12 @@ export function createCellSlopes(chip: Chip): WriteCellSlopes {
         byExternal[k + 1] = 0;
       }
     }
+    if (style.splitters === 2) return;
+    // A third splitter is multiplied into all three: no phase moves it.
+    const outer = ratiosOfCell(style, couplingRatios, cell).outer!;
+    applyOuterSplitterInPlace(transfer, style, outer, false, at);
+    applyOuterSplitterInPlace(byInternal, style, outer, false, at);
+    applyOuterSplitterInPlace(byExternal, style, outer, false, at);
   };
 }
 
@@ -86,15 +94,16 @@ const EXTERNAL_PLACES: Readonly<Record<ExternalGuide, readonly [number, number]>
   'lower-output': [4, 6],
 };
 
-/** The two splitters of every cell, losses included, with light on one arm alone between them. */
+/** The two splitters around every cell's arms, with the losses of all, and light on one arm alone. */
 function aroundArm(chip: Chip, arm: 0 | 1): Float64Array {
-  const { mesh, style, couplingRatios, loss, cellLoss } = chip;
+  const { mesh, style, couplingRatios } = chip;
   const result = new Float64Array(CELL * mesh.cells);
   const arms = new Float64Array(4);
   for (let cell = 0; cell < mesh.cells; cell++) {
-    arms[2 * arm] = cellLoss ? cellLoss[cell]! : loss.splitter * loss.splitter;
+    arms[2 * arm] = splitterAmplitude(chip, cell);
     const place = result.subarray(CELL * cell, CELL * (cell + 1));
-    writeSplitArms(place, style.splitterForm, couplingRatios[2 * cell]!, couplingRatios[2 * cell + 1]!, arms);
+    const { first, second } = ratiosOfCell(style, couplingRatios, cell);
+    writeSplitArms(place, style.splitterForm, first, second, arms);
   }
   return result;
 }

@@ -1,4 +1,5 @@
 import type { CellStyle, InternalArm, SplitterForm } from './Chip.js';
+import { externalAtOutput } from './Chip.js';
 
 /**
  * Writes the amplitude factors of a cell's two arms for an internal phase theta into `arms` (4 numbers: upper
@@ -90,5 +91,45 @@ export function applyExternalInPlace(
     const y = transfer[at + 1]!;
     transfer[at] = re * x - im * y;
     transfer[at + 1] = re * y + im * x;
+  }
+}
+
+/**
+ * Multiplies a cell's third splitter into its transfer matrix, which holds the external phase already: T S(c)
+ * for an external phase at the input, S(c) T for one at the output, sin^2 c being the coupling ratio.
+ * @param undone multiplies by its inverse S(c)^dag instead
+ * @param at where the matrix begins
+ */
+export function applyOuterSplitterInPlace(
+  transfer: Float64Array,
+  style: CellStyle,
+  ratio: number,
+  undone = false,
+  at = 0,
+): void {
+  const c = Math.sqrt(1 - ratio);
+  const s = Math.sqrt(ratio);
+  // Entries are taken in pairs: those of one row for a product with S on the right, of one column for one on
+  // the left. S is symmetric, so both come to the same.
+  const atOutput = externalAtOutput(style);
+  for (let pair = 0; pair < 2; pair++) {
+    const first = at + (atOutput ? 2 : 4) * pair;
+    const second = first + (atOutput ? 4 : 2);
+    const xr = transfer[first]!;
+    const xi = transfer[first + 1]!;
+    const yr = transfer[second]!;
+    const yi = transfer[second + 1]!;
+    if (style.splitterForm === 'real') {
+      transfer[first] = c * xr + s * yr;
+      transfer[first + 1] = c * xi + s * yi;
+      transfer[second] = s * xr - c * yr;
+      transfer[second + 1] = s * xi - c * yi;
+    } else {
+      const cross = undone ? -s : s;
+      transfer[first] = c * xr - cross * yi;
+      transfer[first + 1] = c * xi + cross * yr;
+      transfer[second] = c * yr - cross * xi;
+      transfer[second + 1] = c * yi + cross * xr;
+    }
   }
 }

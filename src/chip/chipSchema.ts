@@ -1,6 +1,12 @@
 import { z } from 'zod';
 import { LAYOUTS, MIRRORS } from '../mesh/Mesh.js';
-import { ERROR_DISTRIBUTIONS, EXTERNAL_GUIDES, INTERNAL_ARMS, SPLITTER_FORMS } from './Chip.js';
+import {
+  ERROR_DISTRIBUTIONS,
+  EXTERNAL_GUIDES,
+  INTERNAL_ARMS,
+  SPLITTER_COUNTS,
+  SPLITTER_FORMS,
+} from './Chip.js';
 
 /** The newest chip-file format that this version reads and the one that it writes. */
 export const CHIP_FORMAT = 1;
@@ -13,7 +19,11 @@ const ratio = z
   .min(0)
   .max(1)
   .describe('Power coupling ratio: the share of the power that changes guide.');
-const ratioPair = z.tuple([ratio, ratio]).describe('First and second splitter, as the light meets them.');
+const ratiosOfCell = z
+  .array(ratio)
+  .min(2)
+  .max(3)
+  .describe("The cell's splitters as the light meets them: as many as cellStyle.splitters says.");
 const decibels = z.number().min(0).max(1000).describe('Loss in dB, 0 or more.');
 const decibelsPerPort = z
   .union([decibels, z.array(decibels)])
@@ -67,6 +77,12 @@ export const chipFileSchema = z
           .describe(
             '[[cos a, i sin a], [i sin a, cos a]] (symmetric, default) or [[cos a, sin a], [sin a, -cos a]].',
           ),
+        splitters: z
+          .literal(SPLITTER_COUNTS)
+          .exactOptional()
+          .describe(
+            '3: one more, before an external phase at the input or behind one at the output. Default 2.',
+          ),
       })
       .exactOptional()
       .describe('How every cell is built, as it stands on the chip.'),
@@ -75,11 +91,13 @@ export const chipFileSchema = z
       .array(
         z.strictObject({
           cell: z.int().min(1).describe('Number of the cell.'),
-          couplingRatio: ratioPair,
+          couplingRatio: ratiosOfCell,
           lossDb: z
-            .tuple([decibels, decibels])
+            .array(decibels)
+            .min(2)
+            .max(3)
             .exactOptional()
-            .describe('Losses of its two splitters in dB, instead of lossDb.splitter.'),
+            .describe('Losses of its splitters in dB, as the light meets them, instead of lossDb.splitter.'),
         }),
       )
       .exactOptional()
@@ -125,7 +143,9 @@ export const chipFileSchema = z
           .min(-1)
           .max(1)
           .exactOptional()
-          .describe('Correlation of the local errors of the two splitters of a cell.'),
+          .describe(
+            'Correlation of the local errors of any two splitters of a cell; for three at least -1/2.',
+          ),
         correlationLength: z
           .number()
           .min(0)

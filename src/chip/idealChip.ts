@@ -1,13 +1,15 @@
 import type { Layout, Mirror } from '../mesh/Mesh.js';
 import { createMesh } from '../mesh/Mesh.js';
+import { splitterCount } from './cellSplitters.js';
 import type { CellStyle, Chip } from './Chip.js';
 import { NO_ERRORS } from './Chip.js';
 
-/** External phase on the upper input, internal phase on the upper arm, symmetric splitters. */
+/** External phase on the upper input, internal phase on the upper arm, two symmetric splitters. */
 export const REFERENCE_STYLE: CellStyle = {
   internal: 'upper',
   external: 'upper-input',
   splitterForm: 'symmetric',
+  splitters: 2,
 };
 
 /** What may be chosen of an ideal chip. */
@@ -29,7 +31,7 @@ export function idealChip(modes: number, options: IdealChipOptions = {}): Chip {
     mesh,
     style,
     portShifters,
-    couplingRatios: new Float64Array(2 * mesh.cells).fill(0.5),
+    couplingRatios: new Float64Array(splitterCount({ style, mesh })).fill(0.5),
     loss: { splitter: 1, shifter: 1, column: 1, input: noLoss(), output: noLoss() },
     cellLoss: null,
     shifterRange: null,

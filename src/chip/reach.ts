@@ -1,3 +1,5 @@
+import type { CellRatios } from './cellSplitters.js';
+
 /** The bar powers that a cell can attain by its internal phase, both ends included. */
 export interface Reach {
   readonly low: number;
@@ -14,6 +16,27 @@ export function cellReach(firstRatio: number, secondRatio: number): Reach {
     low: cosineOfSum(firstRatio, secondRatio) ** 2,
     high: cosineOfDifference(firstRatio, secondRatio) ** 2,
   };
+}
+
+/** What a cell as a whole cannot do, its external phase being free. */
+export interface MissedStates {
+  readonly cross: boolean;
+  readonly bar: boolean;
+}
+
+/** Bar powers that differ by less count as the same. */
+const SAME_POWER = 1e-12;
+
+/**
+ * Whether a cell misses the full cross or bar state. Two splitters: where their reach does not hold the bar
+ * power 0 or 1. A third one of ratio sin^2 c, with the external phase free between it and the others, makes
+ * bar amplitudes from | |M11| cos c - |M12| sin c | to |M11| cos c + |M12| sin c of what the two do: cross
+ * asks for the bar power sin^2 c of them, bar for cos^2 c.
+ */
+export function missedStates({ first, second, outer }: CellRatios): MissedStates {
+  const { low, high } = cellReach(first, second);
+  const missed = (power: number): boolean => !(low - SAME_POWER <= power && power <= high + SAME_POWER);
+  return { cross: missed(outer ?? 0), bar: missed(1 - (outer ?? 0)) };
 }
 
 /** |cos(a+b)|, the least bar amplitude. */

@@ -67,8 +67,8 @@ function isMeasuredCell(entry: unknown): entry is MeasuredCell {
   if (typeof entry !== 'object' || entry === null) return false;
   const { cell, couplingRatio, lossDb } = entry as Readonly<Record<string, unknown>>;
   if (Object.keys(entry).length !== (lossDb === undefined ? 2 : 3)) return false;
-  const losses = lossDb === undefined || isPair(lossDb, 0, 1000);
-  return isCount(cell) && isPair(couplingRatio, 0, 1) && losses;
+  const losses = lossDb === undefined || isList(lossDb, 3, 0, 1000);
+  return isCount(cell) && isList(couplingRatio, 3, 0, 1) && losses;
 }
 
 /** The same for shifters with a name or a range. */
@@ -78,17 +78,19 @@ function isShifterOverride(entry: unknown): entry is ShifterOverride {
   const keys = 1 + (name === undefined ? 0 : 1) + (rangeRad === undefined ? 0 : 1);
   if (Object.keys(entry).length !== keys || !isCount(shifter)) return false;
   const named = name === undefined || (typeof name === 'string' && name.length >= 1 && name.length <= 200);
-  return named && (rangeRad === undefined || isPair(rangeRad, -1e4, 1e4));
+  return named && (rangeRad === undefined || isList(rangeRad, 2, -1e4, 1e4));
 }
 
 function isCount(value: unknown): value is number {
   return Number.isSafeInteger(value) && (value as number) >= 1;
 }
 
-function isPair(value: unknown, low: number, high: number): value is [number, number] {
+/** Two numbers within limits, or as many as `most`. */
+function isList(value: unknown, most: 2 | 3, low: number, high: number): boolean {
   return (
     Array.isArray(value) &&
-    value.length === 2 &&
+    value.length >= 2 &&
+    value.length <= most &&
     value.every((number) => typeof number === 'number' && number >= low && number <= high)
   );
 }

@@ -1,5 +1,6 @@
 import { createMesh } from '../mesh/Mesh.js';
 import { amplitudeFromLossDb } from '../units/decibel.js';
+import { splitterCount } from './cellSplitters.js';
 import type { CellStyle, Chip, ChipLoss, PhaseRange } from './Chip.js';
 import { NO_ERRORS } from './Chip.js';
 import { chipFault } from './chipFault.js';
@@ -15,9 +16,11 @@ import { shifterCount } from './shifters.js';
 export function resolveChip(file: ChipFile): Chip {
   const { modes, layout = 'rectangular', mirror = 'none', couplingRatio = 0.5 } = file;
   const mesh = createMesh(layout, modes, mirror);
-  const couplingRatios = new Float64Array(2 * mesh.cells).fill(couplingRatio);
+  const style: CellStyle = { ...REFERENCE_STYLE, ...file.cellStyle };
+  const { splitters } = style;
+  const couplingRatios = new Float64Array(splitterCount({ style, mesh })).fill(couplingRatio);
   const seen = new Set<number>();
-  file.measuredCells?.forEach(({ cell, couplingRatio: pair }, k) => {
+  file.measuredCells?.forEach(({ cell, couplingRatio: ratios, lossDb }, k) => {
     const field = `measuredCells[${k}].cell`;
     if (cell > mesh.cells) {
       throw chipFault(
@@ -27,14 +30,15 @@ export function resolveChip(file: ChipFile): Chip {
       );
     }
     requireNew(seen, cell, field, 'cell');
-    couplingRatios.set(pair, 2 * (cell - 1));
+    requireOnePerSplitter(ratios, splitters, `measuredCells[${k}].couplingRatio`);
+    if (lossDb) requireOnePerSplitter(lossDb, splitters, `measuredCells[${k}].lossDb`);
+    couplingRatios.set(ratios, splitters * (cell - 1));
   });
   if (file.portNames && file.portNames.length !== modes) {
     throw wrongLength('portNames', file.portNames.length, modes);
   }
   const range = file.shifterLimits?.rangeRad ?? null;
   if (range) requireRising(range, 'shifterLimits.rangeRad');
-  const style: CellStyle = { ...REFERENCE_STYLE, ...file.cellStyle };
   const chip: Chip = {
     name: file.name ?? `${layout} ${modes}`,
     note: file.note ?? '',
@@ -43,7 +47,7 @@ export function resolveChip(file: ChipFile): Chip {
     portShifters: file.portShifters ?? true,
     couplingRatios,
     loss: resolveLoss(file, modes),
-    cellLoss: resolveCellLoss(file, mesh.cells),
+    cellLoss: resolveCellLoss(file, mesh.cells, splitters),
     shifterRange: range,
     shifterRanges: new Map(),
     shifterNames: new Map(),
@@ -68,11 +72,15 @@ function resolveLoss({ lossDb = {} }: ChipFile, modes: number): ChipLoss {
   };
 }
 
-function resolveCellLoss({ lossDb, measuredCells = [] }: ChipFile, cells: number): Float64Array | null {
+function resolveCellLoss(
+  { lossDb, measuredCells = [] }: ChipFile,
+  cells: number,
+  splitters: number,
+): Float64Array | null {
   if (measuredCells.every((cell) => cell.lossDb === undefined)) return null;
-  const cellLoss = new Float64Array(cells).fill(amplitudeFromLossDb(2 * (lossDb?.splitter ?? 0)));
+  const cellLoss = new Float64Array(cells).fill(amplitudeFromLossDb(splitters * (lossDb?.splitter ?? 0)));
   for (const { cell, lossDb: own } of measuredCells) {
-    if (own) cellLoss[cell - 1] = amplitudeFromLossDb(own[0] + own[1]);
+    if (own) cellLoss[cell - 1] = amplitudeFromLossDb(own.reduce((sum, each) => sum + each));
   }
   return cellLoss;
 }
@@ -129,6 +137,16 @@ function requireNew(seen: Set<number>, number: number, field: string, noun: stri
     throw chipFault(field, `${noun} ${number} is listed twice`, `Keep one entry for each ${noun}.`);
   }
   seen.add(number);
+}
+
+function requireOnePerSplitter(list: readonly number[], splitters: number, field: string): void {
+  if (list.length !== splitters) {
+    throw chipFault(
+      field,
+      `there are ${list.length} entries for a cell of ${splitters} splitters`,
+      `Give one entry for each of its ${splitters} splitters, as the light meets them; how many a cell has is said by cellStyle.splitters.`,
+    );
+  }
 }
 
 function requireRising([low, high]: PhaseRange, field: string): void {

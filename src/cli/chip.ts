@@ -1,10 +1,12 @@
 import type { Command } from 'commander';
 import { Option } from 'commander';
-import { EXTERNAL_GUIDES, INTERNAL_ARMS, SPLITTER_FORMS } from '../chip/Chip.js';
+import { ratiosOfCell } from '../chip/cellSplitters.js';
+import { EXTERNAL_GUIDES, INTERNAL_ARMS, SPLITTER_COUNTS, SPLITTER_FORMS } from '../chip/Chip.js';
 import type { Chip, ExternalGuide, InternalArm, SplitterForm } from '../chip/Chip.js';
 import type { ChipFile } from '../chip/chipSchema.js';
 import type { ReadChip } from '../chip/readChip.js';
-import { cellReach } from '../chip/reach.js';
+import type { MissedStates } from '../chip/reach.js';
+import { missedStates } from '../chip/reach.js';
 import { shifterCount } from '../chip/shifters.js';
 import { InputError } from '../errors/InputError.js';
 import { printableText } from '../figure/printableText.js';
@@ -28,6 +30,7 @@ interface MakingOptions {
   readonly internal?: InternalArm;
   readonly external?: ExternalGuide;
   readonly splitterForm?: SplitterForm;
+  readonly splitters?: string;
   readonly portShifters: boolean;
   readonly couplingRatio?: number;
   readonly name?: string;
@@ -61,6 +64,11 @@ export function addChipCommand(parent: Command): void {
     .addOption(
       new Option('--splitter-form <form>', 'form of the splitters (default: symmetric)').choices(
         SPLITTER_FORMS,
+      ),
+    )
+    .addOption(
+      new Option('--splitters <number>', 'splitters of a cell (default: 2)').choices(
+        SPLITTER_COUNTS.map(String),
       ),
     )
     .option('--no-port-shifters', 'the chip has no phase shifters at its ports')
@@ -111,8 +119,9 @@ function refuseBoth(path: string | undefined, options: ChipCommandOptions): void
       'For example: phasewright chip --modes 8 --layout triangular',
     );
   }
-  const { modes, layout, mirror, internal, external, splitterForm, couplingRatio, name } = options;
-  const making = { modes, layout, mirror, internal, external, splitterForm, couplingRatio, name };
+  const { modes, layout, mirror, internal, external, splitterForm, splitters, couplingRatio, name } = options;
+  const style = { internal, external, splitterForm, splitters };
+  const making = { modes, layout, mirror, ...style, couplingRatio, name };
   const given = Object.values(making).some((value) => value !== undefined) || !options.portShifters;
   if (path !== undefined && given) {
     throw new InputError(
@@ -126,7 +135,8 @@ function refuseBoth(path: string | undefined, options: ChipCommandOptions): void
 async function makeChip(options: MakingOptions): Promise<ReadChip> {
   const { modes, layout, mirror, internal, external, splitterForm, portShifters, couplingRatio, name } =
     options;
-  const style = { internal, external, splitterForm };
+  const splitters = options.splitters === undefined ? undefined : Number(options.splitters);
+  const style = { internal, external, splitterForm, splitters };
   const document = {
     format: 1,
     name: name ?? `${layout ?? 'rectangular'} ${modes}`,
@@ -162,8 +172,8 @@ function fullChipBlock(chip: Chip): Record<string, unknown> {
       input: facet(loss.input),
       output: facet(loss.output),
     },
-    cellsMissingCross: reachCount(chip, ({ low }) => low > 1e-12),
-    cellsMissingBar: reachCount(chip, ({ high }) => high < 1 - 1e-12),
+    cellsMissingCross: countMissing(chip, 'cross'),
+    cellsMissingBar: countMissing(chip, 'bar'),
   };
 }
 
@@ -179,13 +189,10 @@ function range(values: Float64Array): { least: number; greatest: number } {
   };
 }
 
-function reachCount(
-  { mesh, couplingRatios }: Chip,
-  test: (reach: ReturnType<typeof cellReach>) => boolean,
-): number {
+function countMissing({ mesh, style, couplingRatios }: Chip, state: keyof MissedStates): number {
   let count = 0;
   for (let cell = 0; cell < mesh.cells; cell++) {
-    if (test(cellReach(couplingRatios[2 * cell]!, couplingRatios[2 * cell + 1]!))) count++;
+    if (missedStates(ratiosOfCell(style, couplingRatios, cell))[state]) count++;
   }
   return count;
 }
@@ -195,15 +202,15 @@ function describeChip(chip: Chip): string {
   const lines = [
     `${printableText(chip.name)}: ${mesh.layout} mesh${mesh.mirror === 'none' ? '' : ` (mirror ${mesh.mirror})`}, ${counted(mesh.modes, 'port')}, ` +
       `${counted(mesh.cells, 'cell')} in ${counted(mesh.columns, 'column')}, ${counted(shifterCount(chip), 'shifter')}`,
-    `cells: internal phase ${style.internal}, external phase ${style.external}, ${style.splitterForm} splitters`,
+    `cells: internal phase ${style.internal}, external phase ${style.external}, ${style.splitters} ${style.splitterForm} splitters`,
     `port shifters: ${chip.portShifters ? 'yes' : 'no'}`,
   ];
   if (mesh.cells > 0) {
     const { least, greatest } = range(couplingRatios);
     lines.push(
       `coupling ratios ${least === greatest ? String(least) : `${shortNumber(least)} to ${shortNumber(greatest)}`}; ` +
-        `${reachCount(chip, ({ low }) => low > 1e-12)} cells cannot reach the full cross state, ` +
-        `${reachCount(chip, ({ high }) => high < 1 - 1e-12)} not the full bar state`,
+        `${countMissing(chip, 'cross')} cells cannot reach the full cross state, ` +
+        `${countMissing(chip, 'bar')} not the full bar state`,
     );
   }
   const facets = [loss.input, loss.output].map((amplitudes) => {

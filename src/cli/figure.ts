@@ -12,6 +12,7 @@ import { loadTable } from './loadTable.js';
 import { tellOutOfRange } from './messages.js';
 import { defaultTableFolder } from './names.js';
 import { cellMargins } from '../program/cellMargins.js';
+import { programChip } from '../program/programChip.js';
 import { chipBlock, outOfRangeBlock, reportHead } from './reportParts.js';
 import type { MeshShade } from './shadeOption.js';
 import { addShadeOption, marginsForShade } from './shadeOption.js';
@@ -81,7 +82,9 @@ async function runFigure(path: string, options: FigureOptions): Promise<void> {
   const svg = drawMeshFigure(chip, table.settings, {
     title: title ?? chip.name,
     captionLines: captionLines(chip, table.target?.source ?? null, table.merit),
-    ...(shade === 'reach' ? marginsForShade(shade, cellMargins(chip, table.target!.matrix)) : {}),
+    ...(shade === 'reach'
+      ? marginsForShade(shade, cellMargins(chip, programChip(chip, table.target!.matrix).program))
+      : {}),
     ...(width === undefined ? {} : { width }),
     ...(numbers === undefined ? {} : { numbers }),
     ...(cellNumbers === undefined ? {} : { cellNumbers }),

@@ -83,6 +83,7 @@ export async function replayTrial(
 function chipFileOf(base: ChipFile, { chip }: SampledChip, plan: TrialPlan, number: number): ChipFile {
   const { process, shifterLimits, shifterOverrides = [], ...rest } = base;
   const { couplingRatios, cellLoss, mesh } = chip;
+  const { splitters } = chip.style;
   const hasLosses = plan.errors.lossSigmaDb > 0 || plan.chip.cellLoss !== null;
   const names = shifterOverrides.flatMap(({ shifter, name }) =>
     name === undefined ? [] : [{ shifter, name }],
@@ -92,12 +93,12 @@ function chipFileOf(base: ChipFile, { chip }: SampledChip, plan: TrialPlan, numb
     ...(names.length > 0 ? { shifterOverrides: names } : {}),
     name: `${base.name ?? `${mesh.layout} ${mesh.modes}`}, trial ${number}`.slice(0, 200),
     measuredCells: Array.from({ length: mesh.cells }, (_, cell) => {
-      // What counts is the loss of both splitters together, and that is all that is kept of it.
-      const eachDb = hasLosses ? Math.max(0, -decibelFromPowerRatio(cellLoss![cell]! ** 2) / 2) : 0;
+      // What counts is the loss of all splitters together, and that is all that is kept of it.
+      const eachDb = hasLosses ? Math.max(0, -decibelFromPowerRatio(cellLoss![cell]! ** 2) / splitters) : 0;
       return {
         cell: cell + 1,
-        couplingRatio: [couplingRatios[2 * cell]!, couplingRatios[2 * cell + 1]!] as [number, number],
-        ...(hasLosses ? { lossDb: [eachDb, eachDb] as [number, number] } : {}),
+        couplingRatio: Array.from(couplingRatios.subarray(splitters * cell, splitters * (cell + 1))),
+        ...(hasLosses ? { lossDb: new Array<number>(splitters).fill(eachDb) } : {}),
       };
     }),
   };

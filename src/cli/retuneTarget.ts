@@ -113,7 +113,6 @@ export async function retuneTarget(
     ...found,
     achieved,
     merit,
-    margins: cellMargins(chip, target),
     retunings: [
       ...found.lesser.map(([name, settings]) => ({ retune: name, merit: meritOf(settings) })),
       { retune, merit },
@@ -126,7 +125,7 @@ export async function retuneTarget(
 
 interface Programs extends Pick<
   RetunedTarget,
-  'settings' | 'outOfReach' | 'outOfRange' | 'refinement' | 'refined'
+  'settings' | 'outOfReach' | 'outOfRange' | 'margins' | 'refinement' | 'refined'
 > {
   readonly lesser: readonly (readonly [DirectRetuning, Settings])[];
 }
@@ -143,7 +142,8 @@ async function programsOf(
   const none = cell.uncorrected ?? cell.program;
   // What the target asks of the cells one by one, whatever is then made of it.
   const { outOfReach } = cell.program;
-  const direct = { refinement: null, refined: null, outOfReach };
+  const margins = cellMargins(chip, cell.program);
+  const direct = { refinement: null, refined: null, outOfReach, margins };
   if (retune === 'none') {
     return { ...direct, settings: none.settings, outOfRange: none.outOfRange, lesser: [] };
   }
@@ -167,7 +167,7 @@ async function programsOf(
     ...(options.refineIterations === undefined ? {} : { mostIterations: options.refineIterations }),
   });
   const settings = calmer(chip, target, refinement.settings, refined);
-  return { settings, outOfRange: [], outOfReach, lesser, refinement, refined };
+  return { settings, outOfRange: [], outOfReach, margins, lesser, refinement, refined };
 }
 
 /** Figures that differ by no more are the same to rounding. */

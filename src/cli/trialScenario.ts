@@ -9,7 +9,12 @@ import { simulate } from '../simulate/simulate.js';
 import { programChip } from '../program/programChip.js';
 import { figuresOfMerit } from '../merit/merit.js';
 import type { ErrorSource } from '../tolerance/errorSources.js';
-import { ERROR_SOURCES, requireConsistent, withSource } from '../tolerance/errorSources.js';
+import {
+  ERROR_SOURCES,
+  requireConsistent,
+  requirePossibleCorrelation,
+  withSource,
+} from '../tolerance/errorSources.js';
 import type { Retuning, TrialPlan } from '../tolerance/TrialPlan.js';
 import { matrixFileKind } from '../target/MatrixFileKind.js';
 import type { ChipOptions, TargetOptions } from './commandOptions.js';
@@ -103,12 +108,16 @@ async function scenarioOf(
   };
 }
 
-/** The plan of trials of a scenario. */
+/**
+ * The plan of trials of a scenario.
+ * @throws InputError for a correlation that the splitters of its cells cannot have
+ */
 export function planOf(
   { readChip, target }: Scenario,
   errors: ProcessErrors,
   settled: { readonly retune: Retuning; readonly seed: number; readonly figures: readonly (keyof Merit)[] },
 ): TrialPlan {
+  requirePossibleCorrelation(errors, readChip.chip.style);
   return { chip: readChip.chip, target: target === null ? 'haar' : target.matrix, errors, ...settled };
 }
 

@@ -74,7 +74,7 @@ export function addYieldCommand(parent: Command, setExitCode: (code: number) => 
     .addHelpText(
       'after',
       `
-Error sources: sigma (spread of the coupling ratios), sigmaAngle (of the splitter angles), bias, biasSigma (die-wide), pairCorrelation (the two
+Error sources: sigma (spread of the coupling ratios), sigmaAngle (of the splitter angles), bias, biasSigma (die-wide), pairCorrelation (any two
 splitters of a cell), correlationLength (in cells), phaseSigma (radians), bits (of the phases), lossSigmaDb. To sweep also: modes,
 couplingRatio (nominal), lossDb (of each splitter).
 

@@ -38,7 +38,7 @@ export const QUANTITY_LABELS: Readonly<Record<Quantity, string>> = {
   sigmaAngle: 'spread of the splitter angle (rad)',
   bias: 'bias of the coupling ratio',
   biasSigma: 'die-wide spread of the coupling ratio',
-  pairCorrelation: 'correlation of the two splitters of a cell',
+  pairCorrelation: 'correlation of any two splitters of a cell',
   correlationLength: 'correlation length (cells)',
   phaseSigma: 'spread of the phases (rad)',
   bits: 'bits of the phases',

@@ -1,4 +1,4 @@
-import type { MeshReach } from '../chip/MeshReach.js';
+import type { BesideFactors, MeshReach } from '../chip/MeshReach.js';
 
 /** The nulling's factors [[c, -conj(s)], [s, c]]; in a result, in the order of the cells of the mesh. */
 export interface Rotations {
@@ -55,7 +55,51 @@ export function setNullingRotation(
     rotations.sineRe[at] = (nulledRe * keptRe + nulledIm * keptIm) * scale;
     rotations.sineIm[at] = (nulledIm * keptRe - nulledRe * keptIm) * scale;
   }
-  holdInReach(rotations, at, reach.leastBar[cell]!, reach.leastCross[cell]!);
+  if (reach.beside) holdBesideInReach(rotations, at, reach, reach.beside, cell);
+  else holdInReach(rotations, at, reach.leastBar[cell]!, reach.leastCross[cell]!);
+}
+
+/**
+ * Moves a rotation W to the nearest one for which W Q (or Q W) is in reach. What of it is a diagonal on the
+ * side where phases are free is left out, so that the result is a rotation again.
+ */
+function holdBesideInReach(
+  rotations: Rotations,
+  at: number,
+  { leastBar, leastCross }: MeshReach,
+  { matrices, onLeft }: BesideFactors,
+  cell: number,
+): void {
+  const [c, sr, si] = [rotations.cosine[at]!, rotations.sineRe[at]!, rotations.sineIm[at]!];
+  const rotation: Entries = [
+    [c, 0],
+    [-sr, si],
+    [sr, si],
+    [c, 0],
+  ];
+  const beside = entriesAt(matrices, 8 * cell);
+  const judged = onLeft ? product(beside, rotation) : product(rotation, beside);
+  const [bar, cross] = [Math.hypot(...judged[0]), Math.hypot(...judged[1])];
+  const [least, leastOther] = [leastBar[cell]!, leastCross[cell]!];
+  if (bar >= least && cross >= leastOther) return;
+  const newBar = bar < least ? least : Math.max(least, Math.sqrt((1 - leastOther) * (1 + leastOther)));
+  const newCross = bar < least ? Math.max(leastOther, Math.sqrt((1 - least) * (1 + least))) : leastOther;
+  const [diagonal, across] = [resized(judged[0], newBar), resized(judged[1], newCross)];
+  // The lower row of a unitary follows from the upper one and the determinant, which stays what it is.
+  const determinant = determinantOf(judged);
+  const held: Entries = [
+    diagonal,
+    across,
+    times(determinant, minusConjugate(across)),
+    times(determinant, conjugate(diagonal)),
+  ];
+  const moved = onLeft ? product(adjoint(beside), held) : product(held, adjoint(beside));
+  const [, , lower, last] = moved;
+  const free = onLeft ? moved[0] : last;
+  const sine = times(lower, conjugate(resized(free, 1)));
+  rotations.cosine[at] = Math.hypot(...last);
+  rotations.sineRe[at] = sine[0];
+  rotations.sineIm[at] = sine[1];
 }
 
 /**
@@ -84,4 +128,43 @@ function holdInReach(
     sineRe[at] = sineSquare > 0 ? sr * scale : leastCross;
     sineIm[at] = sineSquare > 0 ? si * scale : 0;
   }
+}
+
+/** A complex number. */
+type Complex = readonly [re: number, im: number];
+/** Entries 11, 12, 21, 22 of a 2x2 matrix. */
+type Entries = readonly [Complex, Complex, Complex, Complex];
+
+const times = ([a, b]: Complex, [c, d]: Complex): Complex => [a * c - b * d, a * d + b * c];
+const plus = ([a, b]: Complex, [c, d]: Complex): Complex => [a + c, b + d];
+const conjugate = ([a, b]: Complex): Complex => [a, -b];
+const minusConjugate = ([a, b]: Complex): Complex => [-a, b];
+
+/** The number with another modulus; real and positive where it has no argument. */
+function resized(z: Complex, modulus: number): Complex {
+  const length = Math.hypot(...z);
+  return length > 0 ? [(z[0] / length) * modulus, (z[1] / length) * modulus] : [modulus, 0];
+}
+
+function product([a, b, c, d]: Entries, [e, f, g, h]: Entries): Entries {
+  return [
+    plus(times(a, e), times(b, g)),
+    plus(times(a, f), times(b, h)),
+    plus(times(c, e), times(d, g)),
+    plus(times(c, f), times(d, h)),
+  ];
+}
+
+function adjoint([a, b, c, d]: Entries): Entries {
+  return [conjugate(a), conjugate(c), conjugate(b), conjugate(d)];
+}
+
+function determinantOf([a, b, c, d]: Entries): Complex {
+  const [re, im] = times(b, c);
+  return plus(times(a, d), [-re, -im]);
+}
+
+function entriesAt(matrices: Float64Array, at: number): Entries {
+  const entry = (k: number): Complex => [matrices[at + 2 * k]!, matrices[at + 2 * k + 1]!];
+  return [entry(0), entry(1), entry(2), entry(3)];
 }

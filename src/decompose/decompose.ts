@@ -5,6 +5,7 @@ import { coincidentMirror } from '../mesh/Mesh.js';
 import type { Decomposition } from './Decomposition.js';
 import { decomposeWith } from './decomposeWith.js';
 import { nullOnKernels } from './nullOnKernels.js';
+import { nullReadably } from './nullReadably.js';
 
 /**
  * Writes a unitary as a product of one 2x2 factor per cell of the mesh, in the order of the cells, and one
@@ -24,7 +25,8 @@ import { nullOnKernels } from './nullOnKernels.js';
  * cells
  */
 export function decompose(target: ComplexMatrix, mesh: Mesh, reach: MeshReach | null = null): Decomposition {
-  return decomposeWith(nullOnKernels, target, mesh, reach);
+  // The kernels judge a factor by itself.
+  return decomposeWith(reach?.beside ? nullReadably : nullOnKernels, target, mesh, reach);
 }
 
 /**

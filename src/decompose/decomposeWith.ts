@@ -1,4 +1,4 @@
-import type { MeshReach } from '../chip/MeshReach.js';
+import type { BesideFactors, MeshReach } from '../chip/MeshReach.js';
 import { fullReach } from '../chip/MeshReach.js';
 import type { ComplexMatrix } from '../matrix/ComplexMatrix.js';
 import type { Mesh } from '../mesh/Mesh.js';
@@ -29,7 +29,7 @@ export function decomposeWith(
   if (target.rows !== modes || target.columns !== modes) {
     throw new RangeError(`the mesh has ${modes} ports, the target is ${target.rows} x ${target.columns}`);
   }
-  if (reach !== null && (reach.leastBar.length !== cells || reach.leastCross.length !== cells)) {
+  if (reach !== null && !isForCells(reach, cells)) {
     throw new RangeError(`the mesh has ${cells} cells, the reach is that of ${reach.leastBar.length}`);
   }
   const mirrored: Mirrored = {
@@ -38,7 +38,7 @@ export function decomposeWith(
   };
   const negligible = NEGLIGIBLE * modes * Number.EPSILON;
   const { places, diagonalBefore } = placesOf(mesh, mirrored);
-  const plainReach = places && reach ? takeFromPlaces(reach, places) : reach;
+  const plainReach = places && reach ? takeFromPlaces(reach, places, mirrored) : reach;
   const { rotations, diagonal } = nulling(target, layout, mirrored, negligible * negligible, plainReach);
   const { cosine, sineRe, sineIm } = places ? putAtPlaces(rotations, places, mirrored) : rotations;
   if (mirrored.ports) diagonal.reverse();
@@ -63,6 +63,11 @@ function placesOf(mesh: Mesh, mirrored: Mirrored): Places {
   return found;
 }
 
+function isForCells({ leastBar, leastCross, beside }: MeshReach, cells: number): boolean {
+  const besideFits = beside === undefined || beside.matrices.length === 8 * cells;
+  return leastBar.length === cells && leastCross.length === cells && besideFits;
+}
+
 /** Per cell of the plain mesh, index of the same cell on the mirrored one. */
 function placesOnMesh({ cells, columns, firstCellOfColumn }: Mesh, mirrored: Mirrored): Int32Array {
   const places = new Int32Array(cells);
@@ -79,13 +84,35 @@ function placesOnMesh({ cells, columns, firstCellOfColumn }: Mesh, mirrored: Mir
 }
 
 /** The reach of the mirrored mesh's cells in the order of the plain one; no mirror changes powers. */
-function takeFromPlaces({ leastBar, leastCross }: MeshReach, places: Int32Array): MeshReach {
+function takeFromPlaces(
+  { leastBar, leastCross, beside }: MeshReach,
+  places: Int32Array,
+  mirrored: Mirrored,
+): MeshReach {
   const plain = fullReach(places.length);
   for (let cell = 0; cell < places.length; cell++) {
     plain.leastBar[cell] = leastBar[places[cell]!]!;
     plain.leastCross[cell] = leastCross[places[cell]!]!;
   }
-  return plain;
+  return beside ? { ...plain, beside: takeBeside(beside, places, mirrored) } : plain;
+}
+
+/** X Q X for a mesh that is upside down, Q^T on the other side for one in reverse order. */
+function takeBeside(
+  { matrices, onLeft }: BesideFactors,
+  places: Int32Array,
+  { ports, columns }: Mirrored,
+): BesideFactors {
+  const plain = new Float64Array(matrices.length);
+  for (let cell = 0; cell < places.length; cell++) {
+    for (let entry = 0; entry < 4; entry++) {
+      const turned = ports ? 3 - entry : entry;
+      const from = columns && (turned === 1 || turned === 2) ? 3 - turned : turned;
+      plain[8 * cell + 2 * entry] = matrices[8 * places[cell]! + 2 * from]!;
+      plain[8 * cell + 2 * entry + 1] = matrices[8 * places[cell]! + 2 * from + 1]!;
+    }
+  }
+  return { matrices: plain, onLeft: onLeft !== columns };
 }
 
 /** Carries the factors of the plain mesh to the cells of the mirrored one. */

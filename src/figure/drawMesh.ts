@@ -91,10 +91,13 @@ function dotPath(x: number, y: number, radius: number): string {
 function describeCell({ chip, settings }: MeshPen, cell: number): string {
   const port = chip.mesh.upperPortIndex[cell]!;
   const phase = (value: number): string => `${value.toFixed(4)} rad (${phaseLabel(value)})`;
-  const ratio = (index: number): string => String(Number(chip.couplingRatios[index]!.toFixed(4)));
+  const { splitters } = chip.style;
+  const shown = Array.from(chip.couplingRatios.subarray(splitters * cell, splitters * (cell + 1)), (ratio) =>
+    String(Number(ratio.toFixed(4))),
+  );
   return (
     `cell ${cell + 1}, column ${chip.mesh.columnIndex[cell]! + 1}, ports ${portWithName(chip, port)} and ` +
     `${portWithName(chip, port + 1)}; external phase ${phase(settings.external[cell]!)}, internal phase ` +
-    `${phase(settings.internal[cell]!)}; coupling ratios ${ratio(2 * cell)} and ${ratio(2 * cell + 1)}`
+    `${phase(settings.internal[cell]!)}; coupling ratios ${shown.slice(0, -1).join(', ')} and ${shown.at(-1)}`
   );
 }

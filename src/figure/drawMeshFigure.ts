@@ -59,7 +59,7 @@ export interface MeshFigureOptions {
 
 /**
  * The mesh of a chip with the phases of all its shifters, as the text of an SVG document for print: guides
- * from left to right, cells with two splitters, shifters where they stand on the chip. Sizes are millimetres,
+ * from left to right, cells with their splitters, shifters where they stand on the chip. Sizes are millimetres,
  * no text is smaller than 6 pt. Each cell is a group `cell-K`, each shifter a group `shifter-K`, both counted
  * from 1 and with a title that a viewer shows. The same arguments give the same bytes. Cost: about 0.2 ms a
  * cell.
@@ -156,10 +156,10 @@ function footroom(layout: MeshFigureLayout): number {
   return lines === 0 ? layout.block / 2 + 0.8 : numberBaseline(layout, false, lines - 1) + 1.2;
 }
 
-/** The widest cell number must fit between the two splitters. */
+/** The widest cell number must fit between the two splitters of the arms. */
 function hasRoomForCellNumbers(chip: Chip, layout: MeshFigureLayout): boolean {
-  const { splitters, bend, coupling } = layout.cell;
-  const between = splitters[1] - splitters[0] - coupling;
+  const { arm, bend } = layout.cell;
+  const between = arm + 2 * bend;
   const tall = layout.pitch - 2 * layout.block >= SMALL_TEXT;
   return tall && guardedTextWidth(String(chip.mesh.cells), SMALL_TEXT) + 0.4 <= between - bend * 0.6;
 }
@@ -198,6 +198,6 @@ function describeFigure({ name, mesh, style, portShifters }: Chip): string {
   return (
     `${mesh.layout} mesh${mirror} of the chip ${name}: ${mesh.modes} ports, ${mesh.cells} cells in ${mesh.columns} columns, ` +
     `${portShifters ? 'with' : 'without'} port shifters; light travels from left to right. Cells: external phase ` +
-    `${style.external}, internal phase ${style.internal}, ${style.splitterForm} splitters. Phases in multiples of pi.`
+    `${style.external}, internal phase ${style.internal}, ${style.splitters} ${style.splitterForm} splitters. Phases in multiples of pi.`
   );
 }

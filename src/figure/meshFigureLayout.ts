@@ -92,8 +92,10 @@ export interface CellShape {
   /** Centres of the two shifters. */
   readonly external: number;
   readonly internal: number;
-  /** Starts of the two splitters (where the guides begin to bend). */
-  readonly splitters: readonly [first: number, second: number];
+  /** Starts of the splitters (where the guides begin to bend), as the light meets them. */
+  readonly splitters: readonly number[];
+  /** Length of the straight arms. */
+  readonly arm: number;
   readonly bend: number;
   readonly coupling: number;
   readonly spacing: number;
@@ -215,7 +217,7 @@ function layoutOfWidth(chip: Chip, wishes: LayoutWishes, numbers: boolean, width
     block: numbers ? block : Math.min(block, 0.45 * pitch),
     lineWidth,
     hands: block >= LEAST_BLOCK_WITH_HAND,
-    cell: cellShape(inputs, columnWidth, block, lineWidth, numbersInOneLine && numbers),
+    cell: cellShape(chip.style, columnWidth, block, lineWidth, numbersInOneLine && numbers),
   };
 }
 
@@ -260,26 +262,35 @@ export function numberBaseline(layout: MeshFigureLayout, above: boolean, line: n
 }
 
 /**
- * Parts of a cell with the external shifter before the splitters, or the mirror image with it behind them.
+ * Parts of a cell with the external shifter before the splitters of the arms, and a third splitter before
+ * that; or the mirror image with it behind them.
  */
 function cellShape(
-  externalBehind: boolean,
+  style: CellStyle,
   column: number,
   block: number,
   lineWidth: number,
   roomy: boolean,
 ): CellShape {
-  const external = roomy ? 0.34 * column : Math.max(block + 0.1 * column, 0.3 * column);
+  const count = style.splitters;
+  // Three splitters leave the external shifter no more room than it needs.
+  const external = Math.max(block + 0.1 * column, (count === 3 ? 0.22 : roomy ? 0.34 : 0.3) * column);
   const rest = column - external - 0.04 * column;
   const arm = Math.max(0.24 * rest, Math.min(block * 1.15, 0.3 * rest));
   const coupling = 0.08 * rest;
-  const bend = (rest - arm - 2 * coupling) / 4;
+  const bend = (rest - arm - count * coupling) / (2 * count);
   const splitter = 2 * bend + coupling;
-  const start = externalBehind ? column - external - rest : external;
+  const outer = count === 3 ? splitter : 0;
+  const first = outer + external;
+  const second = first + splitter + arm;
+  const starts = count === 3 ? [0, first, second] : [first, second];
+  const mirrored = externalAtOutput(style);
+  const placed = (x: number): number => (mirrored ? column - x : x);
   return {
-    external: externalBehind ? column - external / 2 : external / 2,
-    internal: start + rest / 2,
-    splitters: [start, start + splitter + arm],
+    external: placed(outer + external / 2),
+    internal: placed(first + splitter + arm / 2),
+    splitters: mirrored ? starts.map((start) => column - start - splitter).reverse() : starts,
+    arm,
     bend,
     coupling,
     spacing: Math.max(2.1 * lineWidth, Math.min(0.7, 0.1 * column)),

@@ -60,6 +60,7 @@ export interface Kernels {
     coefficients: number,
     place: number,
     realSplitters: number,
+    splitters: number,
   ): void;
   propagatePanel(
     modes: number,

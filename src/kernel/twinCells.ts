@@ -4,6 +4,8 @@ import { LANES } from './twinMemory.js';
 
 /** A complex number: re, im. */
 type Complex = readonly [re: number, im: number];
+/** T11, T12, T21, T22. */
+type Ways = readonly [Complex, Complex, Complex, Complex];
 
 const product = ([a, b]: Complex, [c, d]: Complex): Complex => [a * c - b * d, a * d + b * c];
 const square = ([a, b]: Complex): number => a * a + b * b;
@@ -23,7 +25,7 @@ function splitArms(
   [ur, ui]: Complex,
   [lr, li]: Complex,
   realSplitters: boolean,
-): readonly [Complex, Complex, Complex, Complex] {
+): Ways {
   const cc = cosSecond * cosFirst;
   const ss = sinSecond * sinFirst;
   const cs = cosSecond * sinFirst;
@@ -42,6 +44,38 @@ function splitArms(
     [-(sc * ui + cs * li), sc * ur + cs * lr],
     [cc * lr - ss * ur, cc * li - ss * ui],
   ];
+}
+
+/** The ways through a cell with its external phase and its third splitter. */
+function throughOuter(
+  [t11, t12, t21, t22]: Ways,
+  phase: Complex,
+  ratio: number,
+  place: number,
+  realSplitters: boolean,
+): Ways {
+  const [c, s] = [Math.sqrt(1 - ratio), Math.sqrt(ratio)];
+  const mixed = ([xr, xi]: Complex, [yr, yi]: Complex): [Complex, Complex] =>
+    realSplitters
+      ? [
+          [c * xr + s * yr, c * xi + s * yi],
+          [s * xr - c * yr, s * xi - c * yi],
+        ]
+      : [
+          [c * xr - s * yi, c * xi + s * yr],
+          [c * yr - s * xi, c * yi + s * xr],
+        ];
+  const turned = (way: Complex, places: readonly number[]): Complex =>
+    places.includes(place) ? product(way, phase) : way;
+  const [u11, u12, u21, u22] = [
+    turned(t11, [0, 2]),
+    turned(t12, [1, 2]),
+    turned(t21, [0, 3]),
+    turned(t22, [1, 3]),
+  ];
+  if (place < 2) return [...mixed(u11, u12), ...mixed(u21, u22)];
+  const [[v11, v21], [v12, v22]] = [mixed(u11, u21), mixed(u12, u22)];
+  return [v11, v12, v21, v22];
 }
 
 /** Cells whose ways the compiled kernel finds before it goes on, and the doubles of one. */
@@ -70,8 +104,15 @@ export function twinCells(memory: () => TwinMemory): Pick<Kernels, 'composeCells
     coefficients,
     place,
     realSplitters,
+    splitters,
   ) => {
     const { doubles, integers, words } = memory();
+    const hasOuter = splitters === 3;
+    const atOutput = place >= 2;
+    const firstPlace = hasOuter && !atOutput ? LANES : 0;
+    const outerPlace = atOutput ? 2 * LANES : 0;
+    // With a third splitter the external phase is in the ways through the cell.
+    const onGuide = hasOuter ? -1 : place;
     doubles.copyWithin(factors / 8, input / 8, input / 8 + 4 * modes);
     const complexAt = (at: number): Complex => [doubles[at]!, doubles[at + LANES]!];
     const writeAt = (at: number, [re, im]: Complex): void => {
@@ -80,10 +121,12 @@ export function twinCells(memory: () => TwinMemory): Pick<Kernels, 'composeCells
     };
     for (let cell = 0; cell < cells; cell++) {
       for (let lane = 0; lane < LANES; lane++) {
-        const [first, second] = complexAt(ratios / 8 + 4 * cell + lane);
+        const ofCell = ratios / 8 + LANES * splitters * cell + lane;
+        const [first, second] = complexAt(ofCell + firstPlace);
         const amplitude = doubles[gain / 8 + LANES * cell + lane]!;
         const arm = arms / 8 + 8 * cell + lane;
-        const [t11, t12, t21, t22] = splitArms(
+        const phase = complexAt(external / 8 + 4 * cell + lane);
+        const aroundArms = splitArms(
           [
             Math.sqrt(1 - first),
             Math.sqrt(first),
@@ -94,13 +137,15 @@ export function twinCells(memory: () => TwinMemory): Pick<Kernels, 'composeCells
           complexAt(arm + 4),
           realSplitters !== 0,
         );
+        const [t11, t12, t21, t22] = hasOuter
+          ? throughOuter(aroundArms, phase, doubles[ofCell + outerPlace]!, place, realSplitters !== 0)
+          : aroundArms;
         // What the compiled kernel keeps of the cells of a block.
         const kept = ways / 8 + WAY * (cell % BLOCK) + lane;
         [t11, t12, t21, t22].forEach((way, k) => writeAt(kept + 2 * LANES * k, way));
         const port = factors / 8 + 4 * integers[upperPort / 4 + cell]! + lane;
-        const phase = complexAt(external / 8 + 4 * cell + lane);
-        const f1 = place === 0 ? product(complexAt(port), phase) : complexAt(port);
-        const f2 = place === 1 ? product(complexAt(port + 4), phase) : complexAt(port + 4);
+        const f1 = onGuide === 0 ? product(complexAt(port), phase) : complexAt(port);
+        const f2 = onGuide === 1 ? product(complexAt(port + 4), phase) : complexAt(port + 4);
 
         // The larger entry of each row is made the row's factor.
         const exchanged = square(t12) > square(t11);
@@ -112,8 +157,8 @@ export function twinCells(memory: () => TwinMemory): Pick<Kernels, 'composeCells
         writeAt(at, quotient(h1, g1));
         writeAt(at + 4, quotient(h2, g2));
         words[at + 8] = exchanged ? ALL_BITS : 0n;
-        writeAt(port, place === 2 ? product(g1, phase) : g1);
-        writeAt(port + 4, place === 3 ? product(g2, phase) : g2);
+        writeAt(port, onGuide === 2 ? product(g1, phase) : g1);
+        writeAt(port + 4, onGuide === 3 ? product(g2, phase) : g2);
       }
     }
   };

@@ -1,4 +1,6 @@
-import type { Chip, PhaseRange } from '../chip/Chip.js';
+import { ratiosOfCell } from '../chip/cellSplitters.js';
+import { applyOuterSplitterInPlace } from '../chip/cellTransfer.js';
+import type { CellStyle, Chip, PhaseRange } from '../chip/Chip.js';
 import { externalAtOutput } from '../chip/Chip.js';
 import { cellReach, cosineOfSum, sineOfDifference } from '../chip/reach.js';
 import type { Settings } from '../chip/Settings.js';
@@ -13,9 +15,9 @@ import { wrapTurn } from '../units/angle.js';
 export interface OutOfReach {
   /** Index (from 0) of the cell. */
   readonly cellIndex: number;
-  /** Bar power wanted. */
+  /** Bar power wanted; of a cell with a third splitter, that wanted of the two around the arms. */
   readonly wanted: number;
-  /** Least and greatest bar power that the cell can attain with its splitters. */
+  /** Least and greatest bar power that these two splitters can attain. */
   readonly low: number;
   readonly high: number;
 }
@@ -33,6 +35,8 @@ export interface Program {
   readonly settings: Settings;
   readonly outOfReach: readonly OutOfReach[];
   readonly outOfRange: readonly OutOfRange[];
+  /** Bar power wanted of each cell, in cell order, as in {@link OutOfReach}. */
+  readonly wantedBar: Float64Array;
 }
 
 /**
@@ -44,14 +48,20 @@ const ROUNDING = 16;
  * Finds the phases of a chip from the factors of a target: one sweep through the mesh, with the light for
  * cells that have the external phase at the input, against it for the others, carrying a diagonal of phases
  * from cell to cell (conventions, section 5). What is left at the end are the phases of the port shifters.
- * Losses are ignored. Cost O(N^2).
- * @param couplingRatios the ratios to reckon with, two per cell; by default the chip's own
+ * A third splitter S(c) of a cell is fixed, and so belongs to what is wanted of the rest of the cell: the
+ * solver is asked for W diag(e^{i d}) S(c)^dag, and the reach is judged on that (Hamerly, Bandyopadhyay,
+ * Englund, Nat. Commun. 13, 6831 (2022)). Losses are ignored. Cost O(N^2).
+ * @param couplingRatios the ratios to reckon with, as many per cell as it has splitters; by default the
+ * chip's own
+ * @param carriedIn written where given: the carried phases that each cell meets, 4 numbers a cell, the upper
+ * port's re and im first
  * @throws RangeError when the decomposition stands on another mesh than the chip's
  */
 export function carryingSweep(
   chip: Chip,
   decomposition: Decomposition,
   couplingRatios: Float64Array = chip.couplingRatios,
+  carriedIn: Float64Array | null = null,
 ): Program {
   const { mesh, style } = chip;
   const { modes, cells, upperPortIndex } = mesh;
@@ -60,6 +70,7 @@ export function carryingSweep(
   const solve = createCellSolver(style, tolerance);
   const againstLight = externalAtOutput(style);
   const settings = zeroSettings(chip);
+  const wantedBar = new Float64Array(cells);
   const outOfReach: OutOfReach[] = [];
   const outOfRange: OutOfRange[] = [];
   const carried = createCarriedPhases(decomposition, againstLight);
@@ -77,9 +88,12 @@ export function carryingSweep(
     const shifters = shifterIndicesOfCell(chip, cell);
     carried.meetDiagonal(upper, cell);
     carried.meetDiagonal(upper + 1, cell);
+    carriedIn?.set(carried.phases.subarray(2 * upper, 2 * upper + 4), 4 * cell);
     writeWanted(request.wanted, decomposition, cell, carried.phases, upper, againstLight);
-    request.firstRatio = couplingRatios[2 * cell]!;
-    request.secondRatio = couplingRatios[2 * cell + 1]!;
+    const { first, second, outer } = ratiosOfCell(style, couplingRatios, cell);
+    if (outer !== null) undoOuterSplitter(request.wanted, style, outer, tolerance);
+    request.firstRatio = first;
+    request.secondRatio = second;
     if (chip.shifterRanges.size > 0) {
       request.internalRange = rangeOf(chip, shifters.internal);
       request.externalRange = rangeOf(chip, shifters.external);
@@ -88,7 +102,8 @@ export function carryingSweep(
     settings.internal[cell] = solution.internal;
     settings.external[cell] = solution.external;
     carried.phases.set(solution.carried, 2 * upper);
-    noteReach(outOfReach, request, decomposition, cell, tolerance);
+    wantedBar[cell] = request.wanted[0]! ** 2 + request.wanted[1]! ** 2;
+    noteReach(outOfReach, request, cell, tolerance);
     noteRange(outOfRange, solution, shifters, tolerance);
   }
   for (let port = 0; port < modes; port++) {
@@ -97,7 +112,7 @@ export function carryingSweep(
   }
   outOfReach.sort((a, b) => a.cellIndex - b.cellIndex);
   outOfRange.sort((a, b) => a.shifterIndex - b.shifterIndex);
-  return { settings, outOfReach, outOfRange };
+  return { settings, outOfReach, outOfRange, wantedBar };
 }
 
 /**
@@ -157,15 +172,25 @@ function writeWanted(
   }
 }
 
+/**
+ * Takes the third splitter out of what is wanted. Bar and cross states of what is left come about by
+ * cancellation: entries of rounding noise are set to 0, or phases would be made of it.
+ */
+function undoOuterSplitter(wanted: Float64Array, style: CellStyle, ratio: number, tolerance: number): void {
+  applyOuterSplitterInPlace(wanted, style, ratio, true);
+  for (let k = 0; k < 8; k += 2) {
+    if (Math.hypot(wanted[k]!, wanted[k + 1]!) <= tolerance) wanted.fill(0, k, k + 2);
+  }
+}
+
 function noteReach(
   outOfReach: OutOfReach[],
-  { firstRatio, secondRatio }: CellRequest,
-  { cosine, sineRe, sineIm }: Decomposition,
+  { wanted, firstRatio, secondRatio }: CellRequest,
   cell: number,
   tolerance: number,
 ): void {
-  const bar = cosine[cell]!;
-  const cross = Math.hypot(sineRe[cell]!, sineIm[cell]!);
+  const bar = Math.hypot(wanted[0]!, wanted[1]!);
+  const cross = Math.hypot(wanted[2]!, wanted[3]!);
   const barMissed = cosineOfSum(firstRatio, secondRatio) - bar > tolerance;
   const crossMissed = sineOfDifference(firstRatio, secondRatio) - cross > tolerance;
   if (barMissed || crossMissed) {

@@ -1,7 +1,7 @@
+import { ratiosOfCell } from '../chip/cellSplitters.js';
 import type { Chip } from '../chip/Chip.js';
 import { cellReach } from '../chip/reach.js';
-import { decompose } from '../decompose/decompose.js';
-import type { ComplexMatrix } from '../matrix/ComplexMatrix.js';
+import type { Program } from './carryingSweep.js';
 
 /** What a target asks of a cell, against what the cell can do. */
 export interface CellMargin {
@@ -17,19 +17,15 @@ export interface CellMargin {
 }
 
 /**
- * The bar power that a target asks of each cell when nothing is passed on, against the cell's reach, in cell
- * order (Bandyopadhyay, Hamerly, Englund, Optica 8, 1247 (2021)). A mesh does a target in one way only, up to
- * phases, so that these are what any exact program needs.
- * @throws RangeError when target and chip differ in size
+ * The bar power that a program wants of each cell against the cell's reach, in cell order (Bandyopadhyay,
+ * Hamerly, Englund, Optica 8, 1247 (2021)); of a cell with three splitters, that of the two around the arms.
+ * For the program that corrects cell by cell this is what any exact program needs, since a mesh of cells with
+ * two splitters does a target in one way only, up to phases.
  */
-export function cellMargins(chip: Chip, target: ComplexMatrix): CellMargin[] {
-  const { cosine } = decompose(target, chip.mesh);
-  return Array.from(cosine, (bar, cellIndex) => {
-    const wanted = bar * bar;
-    const { low, high } = cellReach(
-      chip.couplingRatios[2 * cellIndex]!,
-      chip.couplingRatios[2 * cellIndex + 1]!,
-    );
+export function cellMargins(chip: Chip, { wantedBar }: Program): CellMargin[] {
+  return Array.from(wantedBar, (wanted, cellIndex) => {
+    const { first, second } = ratiosOfCell(chip.style, chip.couplingRatios, cellIndex);
+    const { low, high } = cellReach(first, second);
     return { cellIndex, wanted, low, high, margin: Math.min(wanted - low, high - wanted) };
   });
 }

@@ -10,8 +10,9 @@ import { carryingSweep } from './carryingSweep.js';
  * that every cell of it can do, in one way only up to phases, so that programming it again leads there. A search
  * may end at a phase just short of a whole turn, which drives a heater hard for nothing.
  *
- * The light is the same to rounding where the shifters have no loss and none of them is short of range, and
- * where there are port shifters to take up what is left; elsewhere compare before use.
+ * The light is the same to rounding where cells have two splitters, the shifters have no loss and none of them is
+ * short of range, and where there are port shifters to take up what is left; elsewhere compare before use. (Cells
+ * with three splitters do a target in several ways, not all of which are in reach.)
  */
 export function principalSettings(chip: Chip, settings: Settings): Settings {
   const ones = new Float64Array(chip.mesh.modes).fill(1);

@@ -1,4 +1,10 @@
-import { applyExternalInPlace, writeArms, writeSplitArms } from '../chip/cellTransfer.js';
+import { ratiosOfCell, splitterAmplitude } from '../chip/cellSplitters.js';
+import {
+  applyExternalInPlace,
+  applyOuterSplitterInPlace,
+  writeArms,
+  writeSplitArms,
+} from '../chip/cellTransfer.js';
 import type { Chip } from '../chip/Chip.js';
 import { externalAtOutput } from '../chip/Chip.js';
 import type { Settings } from '../chip/Settings.js';
@@ -13,7 +19,7 @@ import { zeroMatrix } from '../matrix/ComplexMatrix.js';
  * @throws RangeError when the settings are not of the chip's shape
  */
 export function simulate(chip: Chip, settings: Settings): ComplexMatrix {
-  const { mesh, style, couplingRatios, loss, cellLoss } = chip;
+  const { mesh, style, couplingRatios, loss } = chip;
   const { modes, cells, columns, upperPortIndex } = mesh;
   requireShape(chip, settings);
   const result = zeroMatrix(modes, modes);
@@ -24,19 +30,13 @@ export function simulate(chip: Chip, settings: Settings): ComplexMatrix {
   }
   const arms = new Float64Array(4);
   const transfer = new Float64Array(8);
-  const twoSplitters = loss.splitter * loss.splitter;
   // The inputs whose light can be in a guide by now, as a closed interval per port.
   const firstInput = Int32Array.from({ length: modes }, (_, port) => port);
   const lastInput = firstInput.slice();
   for (let cell = 0; cell < cells; cell++) {
     writeArms(arms, style.internal, settings.internal[cell]!, loss.shifter);
-    writeSplitArms(
-      transfer,
-      style.splitterForm,
-      couplingRatios[2 * cell]!,
-      couplingRatios[2 * cell + 1]!,
-      arms,
-    );
+    const { first: before, second: behind, outer } = ratiosOfCell(style, couplingRatios, cell);
+    writeSplitArms(transfer, style.splitterForm, before, behind, arms);
     const external = settings.external[cell]!;
     applyExternalInPlace(
       transfer,
@@ -44,7 +44,8 @@ export function simulate(chip: Chip, settings: Settings): ComplexMatrix {
       loss.shifter * Math.cos(external),
       loss.shifter * Math.sin(external),
     );
-    const splitters = cellLoss ? cellLoss[cell]! : twoSplitters;
+    if (outer !== null) applyOuterSplitterInPlace(transfer, style, outer);
+    const splitters = splitterAmplitude(chip, cell);
     for (let k = 0; k < 8; k++) transfer[k]! *= splitters;
     const upper = upperPortIndex[cell]!;
     const first = Math.min(firstInput[upper]!, firstInput[upper + 1]!);

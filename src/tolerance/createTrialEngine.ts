@@ -1,3 +1,4 @@
+import { splitterCount } from '../chip/cellSplitters.js';
 import type { Chip, ExternalGuide, InternalArm, PhaseRange } from '../chip/Chip.js';
 import { EXTERNAL_GUIDES, externalAtOutput, INTERNAL_ARMS } from '../chip/Chip.js';
 import type { Settings } from '../chip/Settings.js';
@@ -66,9 +67,12 @@ export function createTrialEngine(plan: TrialPlan, instance: KernelInstance = lo
     arm: INTERNAL_ARMS.indexOf(chip.style.internal satisfies InternalArm),
     onLower: chip.style.external.startsWith('lower') ? 1 : 0,
     realSplitters: chip.style.splitterForm === 'real' ? 1 : 0,
+    splitters: chip.style.splitters,
   };
   const quantise = errors.bits > 0 ? createQuantiser(chip, errors.bits) : (settings: Settings) => settings;
-  const solvedByKernel = retune === 'cell' && errors.bits === 0 && rangesNeverBind(chip);
+  // The solving kernel knows cells of two splitters; others are solved by the readable sweep.
+  const plainCells = chip.style.splitters === 2 && rangesNeverBind(chip);
+  const solvedByKernel = retune === 'cell' && errors.bits === 0 && plainCells;
   const free = freePorts(chip);
   const fast = figures.every(
     (key) => FAST_FIGURES.has(key) && (key !== 'portPhaseFreeFidelity' || free === 'output'),
@@ -148,7 +152,7 @@ export function createTrialEngine(plan: TrialPlan, instance: KernelInstance = lo
   }
 
   function ratiosOfLane(lane: Lane): Float64Array {
-    return Float64Array.from({ length: 2 * cells }, (_, k) => views.ratios[2 * k + lane]!);
+    return Float64Array.from({ length: splitterCount(chip) }, (_, k) => views.ratios[2 * k + lane]!);
   }
 
   function sampleLane(lane: Lane): SampledChip {
@@ -216,6 +220,7 @@ export function createTrialEngine(plan: TrialPlan, instance: KernelInstance = lo
             memory.coefficients,
             style.place,
             style.realSplitters,
+            style.splitters,
           );
         }
         for (const lane of ALL_LANES) {

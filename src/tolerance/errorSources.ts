@@ -1,4 +1,4 @@
-import type { ProcessErrors } from '../chip/Chip.js';
+import type { CellStyle, ProcessErrors } from '../chip/Chip.js';
 import { InputError } from '../errors/InputError.js';
 import { nearestName } from '../errors/nearestName.js';
 
@@ -107,6 +107,24 @@ export function requireConsistent(errors: ProcessErrors): void {
       'process/correlation',
       'there is nothing to correlate: sigma and sigmaAngle are 0',
       'Give a local spread, sigma or sigmaAngle, or leave out pairCorrelation and correlationLength.',
+    );
+  }
+}
+
+/**
+ * Refuses a correlation that the splitters of a cell cannot have: of three, no two of which differ from each
+ * other in law, the correlation of any two is at least -1/2.
+ * @throws InputError `process/correlation`
+ */
+export function requirePossibleCorrelation(
+  { pairCorrelation }: Pick<ProcessErrors, 'pairCorrelation'>,
+  { splitters }: Pick<CellStyle, 'splitters'>,
+): void {
+  if (splitters === 3 && !(pairCorrelation >= -1 / 2)) {
+    throw new InputError(
+      'process/correlation',
+      `pairCorrelation is ${pairCorrelation}, and cells of three splitters allow -0.5 or more`,
+      'Three errors cannot all be opposite to each other: give a number from -0.5 to 1.',
     );
   }
 }

@@ -1,4 +1,4 @@
-import type { Chip, ErrorDistribution, ProcessErrors } from '../chip/Chip.js';
+import type { Chip, ErrorDistribution, ProcessErrors, SplitterCount } from '../chip/Chip.js';
 import type { Layout } from '../mesh/Mesh.js';
 import type { TrialPlan } from './TrialPlan.js';
 
@@ -21,8 +21,9 @@ const SMALL_ERRORS = 0.3;
  * Without retuning E[1-F] = L (1 - c L), L = (2/N) sum of the variances of all splitter angles, for any
  * target on either layout (conventions section 7); c is the Haar mean, so that for one given target a part of
  * c L^2 is uncertain. An error e of the ratio k is one of e / (2 sqrt(k (1 - k))) of the angle, and, since
- * that is no straight line, a little more. With cells retuned, for splitters of nominally 1/2, the mean
- * square of the matrix error is s^4 (2/3 (N^2 - 1) + 4 (N - 1)/N) (check-values section 2).
+ * that is no straight line, a little more. The Haar mean of c is known for cells of two splitters; for three
+ * all of c L^2 is uncertain. With cells retuned, for splitters of nominally 1/2, the mean square of the matrix
+ * error is that of `correctedShare`.
  * @param infidelityWithoutErrors 1 - F of the chip itself; null where it is not one number
  */
 export function infidelityTheory(
@@ -37,13 +38,14 @@ export function infidelityTheory(
   if (others || correlated || errors.lossSigmaDb > 0 || !(errors.sigma > 0 || errors.sigmaAngle > 0))
     return null;
   const { modes, layout } = chip.mesh;
+  const { splitters } = chip.style;
   const leading = leadingInfidelity(chip, errors);
   if (leading === null || modes < 2) return null;
   if (retune === 'cell') {
     const nominal = chip.couplingRatios.every((ratio) => ratio === 0.5);
     if (target !== 'haar' || !nominal) return null;
-    const variance = leading / (2 * (modes - 1));
-    const corrected = variance ** 2 * ((2 / 3) * (modes ** 2 - 1) + (4 * (modes - 1)) / modes);
+    const variance = leading / (splitters * (modes - 1));
+    const corrected = variance ** 2 * correctedShare(modes, splitters);
     // The distribution has a heavy tail and the source allows 15 %.
     const uncertainty = 0.15 * corrected;
     return { meanInfidelity: total(infidelityWithoutErrors, corrected), uncertainty, holds: corrected < 1 };
@@ -53,11 +55,23 @@ export function infidelityTheory(
   const added = leading - second + bent.infidelity;
   const uncertainty =
     leading ** 3 +
-    (target === 'haar' ? 0.1 : 1) * second +
+    (target === 'haar' && splitters === 2 ? 0.1 : 1) * second +
     2 * infidelityWithoutErrors * leading +
     bent.uncertainty;
   const holds = added > 0 && added < 1 && uncertainty <= SMALL_ERRORS * added;
   return { meanInfidelity: total(infidelityWithoutErrors, added), uncertainty, holds };
+}
+
+/**
+ * What the correction cell by cell leaves of a Haar target, in units of s^4: for two splitters 2/3 (N^2 - 1) + 4 (N
+ * - 1)/N, which grows with the mesh; for three (8/N) sum over k of (N - k) k 2^(1 - k), which does not: at
+ * most 32 (check-values, section 2; Hamerly, Bandyopadhyay, Englund, Nat. Commun. 13, 6831 (2022)).
+ */
+function correctedShare(modes: number, splitters: SplitterCount): number {
+  if (splitters === 2) return (2 / 3) * (modes ** 2 - 1) + (4 * (modes - 1)) / modes;
+  let sum = 0;
+  for (let k = 1; k < modes; k++) sum += (modes - k) * k * 2 ** (1 - k);
+  return (8 / modes) * sum;
 }
 
 function total(without: number, added: number): number {
@@ -141,7 +155,8 @@ const CHIP_SCATTER = 2.2;
 /**
  * The closed-form estimate of the largest spread of a source for which the share `yieldWanted` of chips keeps
  * the fidelity: the mean infidelity of a chip, with its scatter from chip to chip taken as normal, stays
- * below 1 - limit. Null for other sources, retuned chips or other figures.
+ * below 1 - limit. Null for other sources, retuned chips, other figures, or cells of three splitters, whose
+ * scatter is not known.
  * @param quantile the normal quantile of the yield wanted
  * @param infidelityWithoutErrors 1 - F of the chip itself; null where it is not one number
  */
@@ -153,7 +168,7 @@ export function toleranceTheory(
   infidelityWithoutErrors: number | null,
 ): number | null {
   const { chip, errors, retune } = plan;
-  if (infidelityWithoutErrors === null) return null;
+  if (infidelityWithoutErrors === null || chip.style.splitters !== 2) return null;
   if (retune !== 'none' || (source !== 'sigma' && source !== 'sigmaAngle') || chip.mesh.modes < 2)
     return null;
   const unit = leadingInfidelity(chip, { ...errors, sigma: 0, sigmaAngle: 0, [source]: 1 });
@@ -170,7 +185,7 @@ const FLAWLESS = 1e-9;
 /**
  * The same for the number of ports N, not rounded: L grows as N - 1, and the scatter falls as 1/N, so that u (N -
  * 1) (1 + z 2.2/N) = 1 - limit, u the mean infidelity by the port and z the quantile. Null for chips that are
- * not flawless themselves, or not alike in all splitters.
+ * not flawless themselves, not alike in all splitters, or with three of them in a cell.
  * @param plan of chips with any number of ports from 2 on
  */
 export function portsTheory(
@@ -182,6 +197,7 @@ export function portsTheory(
   const { chip, retune } = plan;
   if (!(infidelityWithoutErrors !== null && infidelityWithoutErrors < FLAWLESS) || retune !== 'none')
     return null;
+  if (chip.style.splitters !== 2) return null;
   const leading = leadingInfidelity(chip, plan.errors);
   const alike = chip.couplingRatios.every((ratio) => ratio === chip.couplingRatios[0]);
   if (leading === null || !alike || infidelityTheory(plan, 0) === null) return null;

@@ -1,3 +1,4 @@
+import { splitterCount } from '../chip/cellSplitters.js';
 import type { Chip } from '../chip/Chip.js';
 import type { KernelInstance } from '../kernel/loadKernels.js';
 import { BLOCK_SIZE } from '../kernel/loadKernels.js';
@@ -42,6 +43,7 @@ export interface TrialMemory {
 export function reserveTrialMemory(instance: KernelInstance, chip: Chip, correlated: boolean): TrialMemory {
   const { modes, cells, columns, upperPortIndex, columnIndex } = chip.mesh;
   const panels = Math.ceil(modes / PANEL);
+  const splitters = splitterCount(chip);
   const reserve = (doubles: number): number => instance.reserve(doubles);
   const reserveBytes = (bytes: number): number => instance.reserveBytes(bytes);
   const targetSize = 2 * PANEL * modes * panels;
@@ -49,14 +51,14 @@ export function reserveTrialMemory(instance: KernelInstance, chip: Chip, correla
   const memory: TrialMemory = {
     upperPort: reserveBytes(4 * cells),
     places: reserveBytes(4 * cells),
-    nominal: reserve(2 * cells),
+    nominal: reserve(splitters),
     state: reserve(4),
     layers: reserve(ZIGGURAT_SIZE),
-    numbers: reserve(2 * Math.max(2 * cells, modes, 2)),
+    numbers: reserve(2 * Math.max(splitters, modes, 2)),
     grid: reserve(correlated ? 2 * columns * modes : 0),
     shift: reserve(2),
     clamped: reserve(2),
-    ratios: reserve(4 * cells),
+    ratios: reserve(2 * splitters),
     wanted: reserve(8 * cells),
     diagonal: reserve(4 * modes),
     diagonalAt: reserveBytes(4 * modes),
@@ -78,7 +80,7 @@ export function reserveTrialMemory(instance: KernelInstance, chip: Chip, correla
   instance
     .integers(memory.places, cells)
     .set(upperPortIndex.map((port, cell) => columnIndex[cell]! * modes + port));
-  instance.doubles(memory.nominal, 2 * cells).set(chip.couplingRatios);
+  instance.doubles(memory.nominal, splitters).set(chip.couplingRatios);
   writeZiggurat(instance.doubles(memory.layers, ZIGGURAT_SIZE));
   instance.integers(memory.ranges, 2 * columns * panels).set(reachedByPanels(chip));
   return memory;

@@ -1,3 +1,4 @@
+import { splitterAmplitude, splitterCount } from '../chip/cellSplitters.js';
 import type { Chip } from '../chip/Chip.js';
 import { externalAtOutput } from '../chip/Chip.js';
 import type { Settings } from '../chip/Settings.js';
@@ -38,6 +39,7 @@ export interface TrialViews {
 /** Takes the views; every array must have been reserved. */
 export function takeViews(instance: KernelInstance, memory: TrialMemory, chip: Chip): TrialViews {
   const { modes, cells } = chip.mesh;
+  const splitters = splitterCount(chip);
   const inputAddress = instance.reserve(4 * modes);
   const doubles = (address: number, length: number): Float64Array => instance.doubles(address, length);
   const arms = doubles(memory.arms, 8 * cells);
@@ -45,7 +47,7 @@ export function takeViews(instance: KernelInstance, memory: TrialMemory, chip: C
   const input = doubles(inputAddress, 4 * modes);
   const output = doubles(memory.output, 4 * modes);
   const gain = doubles(memory.gain, 2 * cells);
-  gain.forEach((_, k) => (gain[k] = chip.cellLoss ? chip.cellLoss[k >> 1]! : chip.loss.splitter ** 2));
+  gain.forEach((_, k) => (gain[k] = splitterAmplitude(chip, k >> 1)));
   for (const [ports, atOutput] of [
     [input, true],
     [output, false],
@@ -55,9 +57,9 @@ export function takeViews(instance: KernelInstance, memory: TrialMemory, chip: C
   }
   return {
     shift: doubles(memory.shift, 2),
-    numbers: doubles(memory.numbers, 2 * Math.max(2 * cells, modes, 2)),
+    numbers: doubles(memory.numbers, 2 * Math.max(splitters, modes, 2)),
     clampedCounts: instance.integers(memory.clamped, 4),
-    ratios: doubles(memory.ratios, 4 * cells),
+    ratios: doubles(memory.ratios, 2 * splitters),
     wanted: doubles(memory.wanted, 8 * cells),
     diagonal: doubles(memory.diagonal, 4 * modes),
     diagonalAt: instance.integers(memory.diagonalAt, modes),

@@ -1,8 +1,13 @@
 import { describe, expect, it } from 'vitest';
 import type { CellStyle } from '../../src/chip/Chip.js';
-import { applyExternalInPlace, writeArms, writeSplitArms } from '../../src/chip/cellTransfer.js';
+import {
+  applyExternalInPlace,
+  applyOuterSplitterInPlace,
+  writeArms,
+  writeSplitArms,
+} from '../../src/chip/cellTransfer.js';
 import { REFERENCE_STYLE } from '../../src/chip/idealChip.js';
-import { cellReach } from '../../src/chip/reach.js';
+import { cellReach, missedStates } from '../../src/chip/reach.js';
 import type { ComplexMatrix, Entry } from '../../src/matrix/ComplexMatrix.js';
 import { matrixFromRows } from '../../src/matrix/ComplexMatrix.js';
 import { multiply, turnPhase } from '../../src/matrix/products.js';
@@ -128,6 +133,60 @@ describe('imperfect splitters', () => {
       });
       expect(Math.min(...powers)).toBeCloseTo(low, 14);
       expect(Math.max(...powers)).toBeCloseTo(high, 14);
+    }
+  });
+});
+
+// The whole cell by its own matrices: bar amplitudes over theta and phi, tried on a grid.
+describe('a cell of three splitters', () => {
+  it.each([
+    [0.07, -0.023, 0.1],
+    [0.2, 0.2, 0.05],
+    [0.2, 0.2, -0.5],
+    [0.3, -0.3, 0.02],
+    [0.3, -0.3, 0.7],
+  ])('misses the states that no phases give it, errors %f, %f, %f', (alpha, beta, gamma) => {
+    const [first, second, outer] = [alpha, beta, gamma].map(
+      (error) => Math.sin(Math.PI / 4 + error) ** 2,
+    ) as [number, number, number];
+    for (const splitterForm of ['symmetric', 'real'] as const) {
+      for (const external of ['upper-input', 'lower-output'] as const) {
+        const style: CellStyle = { internal: 'upper', external, splitterForm, splitters: 3 };
+        let [leastBar, leastCross] = [1, 1];
+        for (let k = 0; k <= 200; k++) {
+          for (let j = 0; j < 200; j++) {
+            const arms = new Float64Array(4);
+            const transfer = new Float64Array(8);
+            writeArms(arms, style.internal, (k / 200) * Math.PI, 1);
+            writeSplitArms(transfer, splitterForm, first, second, arms);
+            const phi = (j / 100) * Math.PI;
+            applyExternalInPlace(transfer, external, Math.cos(phi), Math.sin(phi));
+            applyOuterSplitterInPlace(transfer, style, outer);
+            leastBar = Math.min(leastBar, Math.hypot(transfer[0]!, transfer[1]!));
+            leastCross = Math.min(leastCross, Math.hypot(transfer[2]!, transfer[3]!));
+          }
+        }
+        // A state in reach is met on the grid to about a step; the others miss by more than three.
+        const missed = missedStates({ first, second, outer });
+        expect([leastBar > 0.03, leastCross > 0.03]).toEqual([missed.cross, missed.bar]);
+      }
+    }
+  });
+
+  it('has its third splitter taken out again', () => {
+    const style = (splitterForm: 'real' | 'symmetric', external: CellStyle['external']): CellStyle => ({
+      ...REFERENCE_STYLE,
+      ...{ splitterForm, external, splitters: 3 },
+    });
+    for (const form of ['real', 'symmetric'] as const) {
+      for (const external of ['upper-input', 'upper-output'] as const) {
+        const matrix = Float64Array.from({ length: 10 }, (_, k) => Math.sin(k + 1));
+        const before = matrix.slice();
+        applyOuterSplitterInPlace(matrix, style(form, external), 0.37, false, 2);
+        expect(matrix[2]).not.toBeCloseTo(before[2]!, 3);
+        applyOuterSplitterInPlace(matrix, style(form, external), 0.37, true, 2);
+        matrix.forEach((value, k) => expect(value).toBeCloseTo(before[k]!, 15));
+      }
     }
   });
 });

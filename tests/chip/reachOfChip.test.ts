@@ -54,7 +54,12 @@ describe('the reach of a chip', () => {
       const steps = 400;
       const arms = new Float64Array(4);
       const transfer = new Float64Array(8);
-      const couplingRatios = Float64Array.from(RATIOS.flat());
+      // A third splitter stands beyond the external phase and plays no part.
+      const atOutput = style.external.endsWith('output');
+      const ofCell = RATIOS.map((pair) =>
+        style.splitters === 2 ? pair : atOutput ? [...pair, 0.37] : [0.37, ...pair],
+      );
+      const couplingRatios = Float64Array.from(ofCell.flat());
       for (const [k, shifterRange] of ranges.entries()) {
         const base: Chip = { ...idealChip(4, { style }), couplingRatios, shifterRange };
         const own = ranges[(k + 1) % ranges.length]!;

@@ -53,6 +53,23 @@ describe('defaults', () => {
     expect(Array.from(chip.couplingRatios)).toEqual([0.49, 0.49, 0.4, 0.6, 0.49, 0.49]);
   });
 
+  it('takes three ratios and losses where cells have three splitters', () => {
+    const { chip } = readChip(
+      encode({
+        modes: 3,
+        cellStyle: { splitters: 3 },
+        couplingRatio: 0.49,
+        lossDb: { splitter: 1 },
+        measuredCells: [{ cell: 2, couplingRatio: [0.4, 0.5, 0.6], lossDb: [1, 2, 3.5] }],
+      }),
+    );
+    const nominal = [0.49, 0.49, 0.49];
+    expect(Array.from(chip.couplingRatios)).toEqual([...nominal, 0.4, 0.5, 0.6, ...nominal]);
+    // 3 dB of three splitters, 6.5 dB of those measured.
+    const powers = Array.from(chip.cellLoss!, (amplitude) => -20 * Math.log10(amplitude));
+    [3, 6.5, 3].forEach((lossDb, cell) => expect(powers[cell]).toBeCloseTo(lossDb, 13));
+  });
+
   it('accepts a byte order mark', () => {
     const text = `\ufeff${JSON.stringify({ modes: 2 })}`;
     expect(readChip(new TextEncoder().encode(text)).chip.mesh.modes).toBe(2);
@@ -89,6 +106,42 @@ describe('faults name the field and the way to mend it', () => {
       { modes: 4, measuredCells: [{ cell: 1, couplingRatios: [0.5, 0.5] }] },
       'measuredCells[0].couplingRatios: unknown key',
       'Did you mean couplingRatio?',
+    ],
+    [{ modes: 4, cellStyle: { splitters: 4 } }, 'cellStyle.splitters: 4 is not', '3'],
+    [{ modes: 4, cellStyle: { splitters: '3' } }, 'cellStyle.splitters: "3" is not', '3'],
+    [
+      { modes: 4, cellStyle: { splitters: 3 }, measuredCells: [{ cell: 2, couplingRatio: [0.5, 0.4] }] },
+      'measuredCells[0].couplingRatio: there are 2 entries for a cell of 3 splitters',
+      'one entry for each of its 3 splitters',
+    ],
+    [
+      { modes: 4, measuredCells: [{ cell: 2, couplingRatio: [0.5, 0.4, 0.5] }] },
+      'measuredCells[0].couplingRatio: there are 3 entries for a cell of 2 splitters',
+      'cellStyle.splitters',
+    ],
+    [
+      { modes: 4, measuredCells: [{ cell: 2, couplingRatio: [0.5, 0.4], lossDb: [1, 1, 1] }] },
+      'measuredCells[0].lossDb: there are 3 entries for a cell of 2 splitters',
+      'one entry for each of its 2 splitters',
+    ],
+    [
+      {
+        modes: 4,
+        cellStyle: { splitters: 3 },
+        measuredCells: [{ cell: 2, couplingRatio: [0.5, 0.4, 0.5], lossDb: [1, 1] }],
+      },
+      'measuredCells[0].lossDb: there are 2 entries for a cell of 3 splitters',
+      'one entry',
+    ],
+    [
+      { modes: 4, measuredCells: [{ cell: 2, couplingRatio: [0.5, 0.4, 0.5, 0.5] }] },
+      'measuredCells[0].couplingRatio:',
+      '3',
+    ],
+    [
+      { modes: 4, measuredCells: [{ cell: 2, couplingRatio: [0.5] }] },
+      'measuredCells[0].couplingRatio:',
+      '2',
     ],
     [{ modes: 4, lossDb: { splitter: -1 } }, 'lossDb.splitter: -1', '0 or more'],
     [

@@ -83,6 +83,8 @@ describe.concurrent('chip', () => {
         'lower-output',
         '--splitter-form',
         'real',
+        '--splitters',
+        '3',
         '--no-port-shifters',
         '--coupling-ratio',
         '0.48',
@@ -102,7 +104,7 @@ describe.concurrent('chip', () => {
       layout: 'triangular',
       mirror: 'ports',
       portShifters: false,
-      cellStyle: { internal: 'differential', external: 'lower-output', splitterForm: 'real' },
+      cellStyle: { internal: 'differential', external: 'lower-output', splitterForm: 'real', splitters: 3 },
       couplingRatio: 0.48,
     });
     const { folder } = made;
@@ -116,6 +118,18 @@ describe.concurrent('chip', () => {
       folder,
     });
     expect(programmed.code).toBe(0);
+  });
+
+  it('says which states cells of three splitters miss', async () => {
+    const cells = [
+      // All in reach; the two around the arms cannot pass half of the light straight on (0.9 and 0.1).
+      { cell: 1, couplingRatio: [0.45, 0.45, 0.45] },
+      { cell: 2, couplingRatio: [0.5, 0.99, 0.99] },
+    ];
+    const chip = { modes: 3, cellStyle: { splitters: 3 }, measuredCells: cells };
+    const run = await runCommand(['chip', 'c.chip.json'], { files: { 'c.chip.json': JSON.stringify(chip) } });
+    expect(run.stdout).toContain('3 symmetric splitters');
+    expect(run.stdout).toMatch(/1 cells? cannot reach the full cross state, 1 not the full bar state/);
   });
 
   it('says what a chip file describes', async () => {

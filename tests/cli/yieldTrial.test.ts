@@ -22,6 +22,17 @@ describe.concurrent('yield --trial', () => {
       ['--retune', 'cell'],
     ],
     [
+      'cells of three splitters with losses of their own',
+      {
+        modes: 4,
+        cellStyle: { internal: 'lower', external: 'lower-output', splitters: 3 },
+        measuredCells: [{ cell: 3, couplingRatio: [0.45, 0.51, 0.48], lossDb: [0.1, 0.2, 0.3] }],
+        lossDb: { splitter: 0.05, shifter: 0.1 },
+        process: { sigma: 0.02, pairCorrelation: -0.3, phaseSigma: 0.01, lossSigmaDb: 0.05 },
+      },
+      ['--retune', 'cell'],
+    ],
+    [
       'phases that errors carry out of the limits of their shifters',
       {
         modes: 4,

@@ -1,5 +1,5 @@
 import { describe, expect, it } from 'vitest';
-import type { MeshReach } from '../../src/chip/MeshReach.js';
+import type { BesideFactors, MeshReach } from '../../src/chip/MeshReach.js';
 import { fullReach } from '../../src/chip/MeshReach.js';
 import type { Decomposition } from '../../src/decompose/Decomposition.js';
 import { reconstruct } from '../../src/decompose/Decomposition.js';
@@ -9,9 +9,10 @@ import type { Nulling } from '../../src/decompose/Nulling.js';
 import { nullOnKernels } from '../../src/decompose/nullOnKernels.js';
 import { nullReadably } from '../../src/decompose/nullReadably.js';
 import type { ComplexMatrix } from '../../src/matrix/ComplexMatrix.js';
+import { matrixFromRows } from '../../src/matrix/ComplexMatrix.js';
 import { haarUnitary } from '../../src/matrix/haar.js';
 import { unitarityDefect } from '../../src/matrix/norms.js';
-import { innerProduct } from '../../src/matrix/products.js';
+import { innerProduct, multiply } from '../../src/matrix/products.js';
 import { createMesh, LAYOUTS, MIRRORS } from '../../src/mesh/Mesh.js';
 import { randomStream } from '../../src/random/RandomStream.js';
 import { summarise } from '../../src/statistics/summary.js';
@@ -113,6 +114,101 @@ it.each(LAYOUTS)('both nullings have the same result to the last bit with a reac
       ).toBe(true);
     }
   }
+});
+
+/** Q of every cell, Haar-random. */
+function randomBeside(cells: number, onLeft: boolean): BesideFactors {
+  const matrices = new Float64Array(8 * cells);
+  for (let cell = 0; cell < cells; cell++) {
+    const { re, im } = haarUnitary(2, 400 + cell);
+    for (let entry = 0; entry < 4; entry++) matrices.set([re[entry]!, im[entry]!], 8 * cell + 2 * entry);
+  }
+  return { matrices, onLeft };
+}
+
+/** |M11| and |M12| of M = W Q, or Q W. */
+function judgedAmplitudes(
+  { cosine, sineRe, sineIm }: Decomposition,
+  cell: number,
+  { onLeft }: BesideFactors,
+): [bar: number, cross: number] {
+  const [c, sr, si] = [cosine[cell]!, sineRe[cell]!, sineIm[cell]!];
+  const factor = matrixFromRows([
+    [c, [-sr, si]],
+    [[sr, si], c],
+  ]);
+  const beside = haarUnitary(2, 400 + cell);
+  const { re, im } = onLeft ? multiply(beside, factor) : multiply(factor, beside);
+  return [Math.hypot(re[0]!, im[0]!), Math.hypot(re[1]!, im[1]!)];
+}
+
+describe('a nulling with a reach that is judged beside the factors', () => {
+  it('leaves unit factors, all of them in reach, on all meshes', () => {
+    for (const layout of LAYOUTS) {
+      for (const mirror of MIRRORS) {
+        for (const onLeft of [true, false]) {
+          const mesh = createMesh(layout, 7, mirror);
+          const beside = randomBeside(mesh.cells, onLeft);
+          const reach = { ...hardReach(mesh.cells, 3), beside };
+          for (const [name, target] of unitaryMatrices(7)) {
+            for (const factors of [
+              decompose(target, mesh, reach),
+              decomposeFromFarSide(target, mesh, reach),
+            ]) {
+              for (let cell = 0; cell < mesh.cells; cell++) {
+                const [bar, cross] = judgedAmplitudes(factors, cell, beside);
+                expect(bar - reach.leastBar[cell]!, name).toBeGreaterThan(-1e-14);
+                expect(cross - reach.leastCross[cell]!, name).toBeGreaterThan(-1e-14);
+                expect(Math.hypot(bar, cross)).toBeCloseTo(1, 13);
+              }
+            }
+          }
+        }
+      }
+    }
+  });
+
+  it('does as without one where every factor is in reach', () => {
+    for (const layout of LAYOUTS) {
+      for (const mirror of MIRRORS) {
+        for (const onLeft of [true, false]) {
+          const mesh = createMesh(layout, 6, mirror);
+          const target = haarUnitary(6, 9);
+          const free = decompose(target, mesh);
+          const beside = randomBeside(mesh.cells, onLeft);
+          const reach = { ...fullReach(mesh.cells), beside };
+          for (let cell = 0; cell < mesh.cells; cell++) {
+            const [bar, cross] = judgedAmplitudes(free, cell, beside);
+            reach.leastBar[cell] = bar * (1 - 1e-12);
+            reach.leastCross[cell] = cross * (1 - 1e-12);
+          }
+          expect(numbers(decompose(target, mesh, reach))).toEqual(numbers(free));
+        }
+      }
+    }
+  });
+
+  // Of all 2x2 unitaries M with |M11| = b', those with the arguments of the wanted one are the nearest: F = (b b' +
+  // x x')^2, x and x' the cross amplitudes. Phases on the free side are taken up by the diagonal.
+  it('takes the nearest factor, two ports', () => {
+    const mesh = createMesh('rectangular', 2);
+    const beside = randomBeside(1, false);
+    for (let seed = 0; seed < 20; seed++) {
+      const target = haarUnitary(2, seed);
+      const [bar, cross] = judgedAmplitudes(decompose(target, mesh), 0, beside);
+      for (const least of [0.3, 0.9]) {
+        const held = Math.max(bar, least);
+        const reach = { leastBar: Float64Array.of(least), leastCross: new Float64Array(1), beside };
+        const expected = (bar * held + cross * Math.sqrt(1 - held ** 2)) ** 2;
+        expect(fidelity(target, decompose(target, mesh, reach))).toBeCloseTo(expected, 13);
+      }
+    }
+  });
+
+  it('refuses matrices for another number of cells', () => {
+    const reach = { ...fullReach(6), beside: randomBeside(5, true) };
+    expect(() => decompose(dft(4), createMesh('rectangular', 4), reach)).toThrow(RangeError);
+  });
 });
 
 describe('a nulling with a reach', () => {

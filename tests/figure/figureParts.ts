@@ -1,14 +1,16 @@
 import type { CellStyle, Chip } from '../../src/chip/Chip.js';
-import { EXTERNAL_GUIDES, INTERNAL_ARMS, SPLITTER_FORMS } from '../../src/chip/Chip.js';
+import { EXTERNAL_GUIDES, INTERNAL_ARMS, SPLITTER_COUNTS, SPLITTER_FORMS } from '../../src/chip/Chip.js';
 import type { Settings } from '../../src/chip/Settings.js';
 import { dejaVuWidth } from './dejaVuWidths.js';
 import type { XmlElement } from './readXml.js';
 import { allElements, inherited } from './readXml.js';
 
-/** All 24 cell styles. */
-export const STYLES: readonly CellStyle[] = SPLITTER_FORMS.flatMap((splitterForm) =>
-  EXTERNAL_GUIDES.flatMap((external) =>
-    INTERNAL_ARMS.map((internal) => ({ internal, external, splitterForm })),
+/** All 48 cell styles. */
+export const STYLES: readonly CellStyle[] = SPLITTER_COUNTS.flatMap((splitters) =>
+  SPLITTER_FORMS.flatMap((splitterForm) =>
+    EXTERNAL_GUIDES.flatMap((external) =>
+      INTERNAL_ARMS.map((internal) => ({ internal, external, splitterForm, splitters })),
+    ),
   ),
 );
 

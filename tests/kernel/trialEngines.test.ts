@@ -38,7 +38,7 @@ function lossyChip(chip: Chip): Chip {
     Float64Array.from({ length: modes }, (_, k) => 0.8 + 0.1 * Math.sin(offset + k));
   return {
     ...chip,
-    couplingRatios: Float64Array.from({ length: 2 * cells }, (_, k) => 0.5 + 0.05 * Math.sin(7 * k)),
+    couplingRatios: chip.couplingRatios.map((_, k) => 0.5 + 0.05 * Math.sin(7 * k)),
     loss: { splitter: 0.99, shifter: 0.985, column: 0.97, input: ports(1), output: ports(2) },
     cellLoss: Float64Array.from({ length: cells }, (_, k) => 0.95 + 0.04 * Math.sin(3 * k)),
   };

@@ -110,12 +110,17 @@ const RUNS: Readonly<Partial<Record<keyof Kernels, Run>>> = {
     );
     const arrays = [8, 4, 2].map((length, k) => filled(instance, length * size, 13 + k));
     const [arms, external, gain] = arrays as [number, number, number];
-    const ratios = ratiosOf(instance, 4 * size, 12);
+    const ratios = ratiosOf(instance, 6 * size, 12);
     const coefficients = instance.reserve(10 * size);
     const input = filled(instance, 40, 16);
     const factors = instance.reserve(40);
     for (const place of [0, 1, 2, 3]) {
-      for (const real of [0, 1]) {
+      for (const [real, splitters] of [
+        [0, 2],
+        [1, 2],
+        [0, 3],
+        [1, 3],
+      ] as const) {
         instance.kernels.composeCells(
           size,
           upper,
@@ -130,6 +135,7 @@ const RUNS: Readonly<Partial<Record<keyof Kernels, Run>>> = {
           coefficients,
           place,
           real,
+          splitters,
         );
         // The next cells take up what these left, brought back to where it neither vanishes nor overflows.
         const [view, left] = [instance.doubles(input, 40), instance.doubles(factors, 40)];

@@ -3,6 +3,7 @@ import { writeArms, writeSplitArms } from '../../src/chip/cellTransfer.js';
 import type { Chip, PhaseRange } from '../../src/chip/Chip.js';
 import { idealChip } from '../../src/chip/idealChip.js';
 import type { Settings } from '../../src/chip/Settings.js';
+import { zeroSettings } from '../../src/chip/shifters.js';
 import type { ComplexMatrix } from '../../src/matrix/ComplexMatrix.js';
 import { identityMatrix, matrixFromRows } from '../../src/matrix/ComplexMatrix.js';
 import { haarUnitary } from '../../src/matrix/haar.js';
@@ -24,7 +25,7 @@ import {
   unitaryMatrices,
   withNoise,
 } from '../support/matrices.js';
-import { ALL_STYLES, styleName } from '../support/styles.js';
+import { ALL_STYLES, styleName, THREE_SPLITTER_STYLES, TWO_SPLITTER_STYLES } from '../support/styles.js';
 
 const { PI } = Math;
 
@@ -187,33 +188,6 @@ describe.each(ALL_STYLES.map((style) => [styleName(style), style] as const))('ce
     for (const phase of [...external, ...port!]) expect(phase >= 0 && phase < 2 * PI).toBe(true);
   });
 
-  it('have the same bar power in every style, target by target', () => {
-    const barPowers = (of: typeof style): number[] => {
-      const { internal } = programmed(idealChip(5, { style: of, layout: 'triangular' }), haarUnitary(5, 77));
-      const arms = new Float64Array(4);
-      const transfer = new Float64Array(8);
-      return Array.from(internal, (theta) => {
-        writeArms(arms, of.internal, theta, 1);
-        writeSplitArms(transfer, of.splitterForm, 0.5, 0.5, arms);
-        return transfer[0]! ** 2 + transfer[1]! ** 2;
-      });
-    };
-    const reference = barPowers(ALL_STYLES[0]!);
-    barPowers(style).forEach((power, k) => expect(power).toBeCloseTo(reference[k]!, 12));
-  });
-
-  it('set bar and cross with phase 0 where zero is meant', () => {
-    const bar = style.splitterForm === 'real' ? 0 : PI;
-    for (const layout of LAYOUTS) {
-      const identity = programmed(idealChip(6, { style, layout }), withNoise(identityMatrix(6)));
-      expect(Array.from(identity.internal)).toEqual(Array.from(identity.internal, () => bar));
-      expect(Array.from(identity.external)).toEqual(Array.from(identity.external, () => 0));
-      const reversed = programmed(idealChip(6, { style, layout }), withNoise(reversal(6)));
-      expect(Array.from(reversed.internal)).toEqual(Array.from(reversed.internal, () => PI - bar));
-      expect(Array.from(reversed.external)).toEqual(Array.from(reversed.external, () => 0));
-    }
-  });
-
   // Bandyopadhyay, Hamerly, Englund, Optica 8, 1247 (2021): exact whenever no cell is out of reach.
   it('correct measured splitters exactly while every cell is in reach', () => {
     let exact = 0;
@@ -280,6 +254,80 @@ describe.each(ALL_STYLES.map((style) => [styleName(style), style] as const))('ce
   });
 });
 
+// With a third splitter what is wanted of the other two depends on the phases that are carried.
+describe.each(TWO_SPLITTER_STYLES.map((style) => [styleName(style), style] as const))(
+  'cells of two splitters: %s',
+  (_name, style) => {
+    it('have the same bar power in every style, target by target', () => {
+      const barPowers = (of: typeof style): number[] => {
+        const { internal } = programmed(
+          idealChip(5, { style: of, layout: 'triangular' }),
+          haarUnitary(5, 77),
+        );
+        const arms = new Float64Array(4);
+        const transfer = new Float64Array(8);
+        return Array.from(internal, (theta) => {
+          writeArms(arms, of.internal, theta, 1);
+          writeSplitArms(transfer, of.splitterForm, 0.5, 0.5, arms);
+          return transfer[0]! ** 2 + transfer[1]! ** 2;
+        });
+      };
+      const reference = barPowers(ALL_STYLES[0]!);
+      barPowers(style).forEach((power, k) => expect(power).toBeCloseTo(reference[k]!, 12));
+    });
+
+    it('set bar and cross with phase 0 where zero is meant', () => {
+      const bar = style.splitterForm === 'real' ? 0 : PI;
+      for (const layout of LAYOUTS) {
+        const identity = programmed(idealChip(6, { style, layout }), withNoise(identityMatrix(6)));
+        expect(Array.from(identity.internal)).toEqual(Array.from(identity.internal, () => bar));
+        expect(Array.from(identity.external)).toEqual(Array.from(identity.external, () => 0));
+        const reversed = programmed(idealChip(6, { style, layout }), withNoise(reversal(6)));
+        expect(Array.from(reversed.internal)).toEqual(Array.from(reversed.internal, () => PI - bar));
+        expect(Array.from(reversed.external)).toEqual(Array.from(reversed.external, () => 0));
+      }
+    });
+  },
+);
+
+describe.each(THREE_SPLITTER_STYLES.map((style) => [styleName(style), style] as const))(
+  'cells of three splitters: %s',
+  (_name, style) => {
+    // Such a target asks for a full bar or cross state of the two splitters around the arms, which comes about by
+    // cancellation only: T(theta, 0) S(c), with the phases of ports before and behind.
+    it('set bar and cross of the two around the arms with phase 0 where zero is meant', () => {
+      const chip = idealChip(2, { style });
+      for (const internal of [0, PI]) {
+        for (const port of [0, 0.3]) {
+          const settings = zeroSettings(chip);
+          settings.internal[0] = internal;
+          settings.port!.set([port, port + 1]);
+          const found = programmed(chip, withNoise(simulate(chip, settings)));
+          expect(found.internal[0]).toBe(internal);
+          expect(found.external[0]).toBe(0);
+        }
+      }
+    });
+
+    // Hamerly, Bandyopadhyay, Englund, Nat. Commun. 13, 6831 (2022): the perfect cross state can be reached, and
+    // so can the bar state; what is out of reach lies on |s| = 1, where equal powers stay and cross.
+    it('do cross and bar states with splitters of any ratio near 1/2', () => {
+      for (let seed = 0; seed < 20; seed++) {
+        const layout = LAYOUTS[seed % 2]!;
+        const ideal = idealChip(7, { style, layout, mirror: MIRRORS[(seed >> 1) % 4]! });
+        const all = { ...ideal, couplingRatios: ideal.couplingRatios.map(() => 0.45) };
+        for (const chip of [scattered(ideal, 0.05, seed), all]) {
+          for (const target of [identityMatrix(7), reversal(7), permutation([1, 2, 3, 4, 5, 6, 0])]) {
+            const { settings, outOfReach } = programChip(chip, target).program;
+            expect(outOfReach).toEqual([]);
+            expect(maxDifference(target, simulate(chip, settings))).toBeLessThan(1e-12);
+          }
+        }
+      }
+    });
+  },
+);
+
 describe('reach', () => {
   const cell = (alpha: number, beta: number): Chip => ({
     ...idealChip(2),
@@ -345,7 +393,9 @@ describe('reach', () => {
       [0, 1],
     ]) {
       for (const style of ALL_STYLES) {
-        const chip = { ...idealChip(2, { style }), couplingRatios: Float64Array.from(ratios) };
+        const atOutput = style.external.endsWith('output');
+        const ofCell = style.splitters === 2 ? ratios : atOutput ? [...ratios, 0.4] : [0.4, ...ratios];
+        const chip = { ...idealChip(2, { style }), couplingRatios: Float64Array.from(ofCell) };
         const target = haarUnitary(2, 5);
         const { settings, outOfReach } = programChip(chip, target).program;
         expect(settings.internal[0]).toBe(0);
@@ -386,7 +436,12 @@ describe('port shifters', () => {
 
 it('programs real, sparse and block-diagonal targets without noise in their phases', () => {
   // A differential pair adds no common phase, so a real matrix needs multiples of pi/2 alone.
-  const style = { internal: 'differential', external: 'upper-input', splitterForm: 'symmetric' } as const;
+  const style = {
+    internal: 'differential',
+    external: 'upper-input',
+    splitterForm: 'symmetric',
+    splitters: 2,
+  } as const;
   const quarter = (phase: number): number => Math.abs(Math.sin(2 * phase));
   for (const layout of LAYOUTS) {
     for (const target of [hadamard(8), blockDiagonal(hadamard(2), hadamard(4)), permutation([2, 0, 3, 1])]) {

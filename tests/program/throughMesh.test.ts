@@ -14,8 +14,8 @@ import type { DirectRetuning } from '../../src/program/retunings.js';
 import { randomStream } from '../../src/random/RandomStream.js';
 import { simulate } from '../../src/simulate/simulate.js';
 import { summarise } from '../../src/statistics/summary.js';
-import { dft, unitaryMatrices } from '../support/matrices.js';
-import { ALL_STYLES } from '../support/styles.js';
+import { dft, reversal, unitaryMatrices } from '../support/matrices.js';
+import { ALL_STYLES, THREE_SPLITTER_STYLES, TWO_SPLITTER_STYLES } from '../support/styles.js';
 
 const DIRECT = ['none', 'cell', 'mesh'] as const satisfies readonly DirectRetuning[];
 
@@ -61,7 +61,7 @@ function compareOver(
 describe('retuning through the mesh', () => {
   // Bandyopadhyay, Hamerly, Englund, Optica 8, 1247 (2021): exact where all cells are in reach.
   it('is exact, and no other than cell by cell, where every cell is in reach', () => {
-    for (const [index, style] of ALL_STYLES.entries()) {
+    for (const [index, style] of TWO_SPLITTER_STYLES.entries()) {
       for (const layout of LAYOUTS) {
         const mirror = MIRRORS[index % MIRRORS.length]!;
         // The Fourier transforms' bar powers are 1/4 to 2/3.
@@ -76,8 +76,29 @@ describe('retuning through the mesh', () => {
     }
   });
 
-  it('asks no cell for what it cannot do', () => {
-    for (const [index, style] of ALL_STYLES.entries()) {
+  // With a third splitter all bar and cross states are in reach: Hamerly, Bandyopadhyay, Englund, Nat. Commun.
+  // 13, 6831 (2022).
+  it('is exact, and no other than cell by cell, for permutations by cells of three splitters', () => {
+    for (const [index, style] of THREE_SPLITTER_STYLES.entries()) {
+      for (const layout of LAYOUTS) {
+        const chip = scattered(
+          idealChip(8, { layout, mirror: MIRRORS[index % MIRRORS.length]!, style }),
+          0.05,
+          index,
+        );
+        for (const target of [identityMatrix(8), reversal(8)]) {
+          const found = programChip(chip, target, 'mesh');
+          expect(found.retuned).toBe('cell');
+          expect(found.program).toEqual(programChip(chip, target, 'cell').program);
+          expect(infidelity(chip, target, 'mesh')).toBeLessThan(1e-13);
+        }
+      }
+    }
+  });
+
+  // A cell of three splitters may be asked for other phases than those for which it was held in reach.
+  it('asks no cell of two splitters for what it cannot do', () => {
+    for (const [index, style] of TWO_SPLITTER_STYLES.entries()) {
       const [layout, mirror] = [LAYOUTS[index % 2]!, MIRRORS[index % 3]!];
       const chip = scattered(idealChip(9, { layout, mirror, style }), 0.1, index);
       for (const [name, target] of unitaryMatrices(9)) {
@@ -105,11 +126,12 @@ describe('retuning through the mesh', () => {
     }
   });
 
-  const REAL: CellStyle = { internal: 'lower', external: 'lower-output', splitterForm: 'real' };
+  const REAL: CellStyle = { internal: 'lower', external: 'lower-output', splitterForm: 'real', splitters: 2 };
   const DIFFERENTIAL: CellStyle = {
     internal: 'differential',
     external: 'upper-output',
     splitterForm: 'symmetric',
+    splitters: 2,
   };
   // From one side the nulling leaves the share (2N + 5)/(3 (N + 1)) of the error cell by cell, bar states
   // aside: 0.78 for N = 8 (tests/decompose/reach.test.ts). The better of two sides was seen to leave 0.60 to
@@ -128,6 +150,26 @@ describe('retuning through the mesh', () => {
       const { byCell, throughMesh, gain, standardError } = compareOver(1000, 8, 0.05, options);
       expect(gain).toBeGreaterThan(5 * standardError);
       expect(throughMesh).toBeLessThan(((2 * 8 + 5) / (3 * 9)) * byCell);
+    },
+  );
+
+  // With three splitters most chips of this size are exact cell by cell; the mean is that of the others. 0.27
+  // to 0.33 of the error was seen to be left by 1,000 chips of 16 ports; a heavy tail.
+  it.each([
+    ['rectangular', 'none', { ...REFERENCE_STYLE, splitters: 3 }],
+    ['triangular', 'columns', { ...REFERENCE_STYLE, splitters: 3 }],
+    ['rectangular', 'ports', { ...REAL, splitters: 3 }],
+    ['triangular', 'none', { ...DIFFERENTIAL, splitters: 3 }],
+  ] as const)(
+    'is better on the mean of 1,000 chips with cells of three splitters: %s, mirror %s',
+    (layout, mirror, style) => {
+      const { byCell, throughMesh, gain, standardError } = compareOver(1000, 16, 0.03, {
+        layout,
+        mirror,
+        style,
+      });
+      expect(gain).toBeGreaterThan(4 * standardError);
+      expect(throughMesh).toBeLessThan(0.5 * byCell);
     },
   );
 
@@ -216,7 +258,7 @@ describe('a shifter that cannot move', () => {
 
   // A dead heater stands at 0, where theta is a square root of what rounding leaves.
   it('is not said to be out of range when the rest of the mesh has taken account of it', () => {
-    for (const [index, style] of ALL_STYLES.entries()) {
+    for (const [index, style] of TWO_SPLITTER_STYLES.entries()) {
       for (const theta of [0, 1.2, Math.PI, 4.5, 2 * Math.PI]) {
         const chip = stuck(scattered(idealChip(6, { style }), 0.03, index), index % 15, theta);
         const { retuned, program } = programChip(chip, haarUnitary(6, index), 'mesh');

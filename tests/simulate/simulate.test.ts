@@ -13,6 +13,7 @@ import { LAYOUTS, MIRRORS } from '../../src/mesh/Mesh.js';
 import { programChip } from '../../src/program/programChip.js';
 import { randomStream } from '../../src/random/RandomStream.js';
 import { simulate } from '../../src/simulate/simulate.js';
+import { innerAndOuter } from '../support/elements.js';
 import { dft, maxDifference } from '../support/matrices.js';
 import { ALL_STYLES } from '../support/styles.js';
 
@@ -64,15 +65,22 @@ function elementByElement(chip: Chip, settings: ReturnType<typeof zeroSettings>)
     const [external, internal] = ['external', 'internal'].map((role) =>
       shifters.find((one) => one.cellIndex === cell && one.role === role)!,
     );
-    if (style.external.endsWith('input')) shifter(external!.portIndex, phaseOf(settings, external!));
-    splitter(upper, chip.couplingRatios[2 * cell]!);
+    const [ratios, outer] = innerAndOuter(chip, cell);
+    if (style.external.endsWith('input')) {
+      if (outer !== undefined) splitter(upper, outer);
+      shifter(external!.portIndex, phaseOf(settings, external!));
+    }
+    splitter(upper, ratios[0]!);
     const theta = phaseOf(settings, internal!);
     if (style.internal === 'differential') {
       shifter(upper, theta / 2);
       shifter(upper + 1, -theta / 2);
     } else shifter(internal!.portIndex, theta);
-    splitter(upper, chip.couplingRatios[2 * cell + 1]!);
-    if (style.external.endsWith('output')) shifter(external!.portIndex, phaseOf(settings, external!));
+    splitter(upper, ratios[1]!);
+    if (style.external.endsWith('output')) {
+      shifter(external!.portIndex, phaseOf(settings, external!));
+      if (outer !== undefined) splitter(upper, outer);
+    }
   }
   for (const one of shifters.filter(({ role }) => role === 'output')) {
     shifter(one.portIndex, phaseOf(settings, one));

@@ -31,10 +31,10 @@ function elementsOf(chip: Chip): Element[] {
     };
     elements.push({ matrix, shifter: { index, factor, port } });
   };
-  /** Two splitters of a cell share its loss evenly; the cell's matrix knows their product only. */
+  /** The splitters of a cell share its loss evenly; the cell's matrix knows their product only. */
   const splitter = (cell: number, ratio: number): void => {
     const upper = upperPortIndex[cell]!;
-    const amplitude = chip.cellLoss ? Math.sqrt(chip.cellLoss[cell]!) : loss.splitter;
+    const amplitude = chip.cellLoss ? chip.cellLoss[cell]! ** (1 / style.splitters) : loss.splitter;
     const matrix = identityMatrix(modes);
     const c = amplitude * Math.sqrt(1 - ratio);
     const s = amplitude * Math.sqrt(ratio);
@@ -57,19 +57,39 @@ function elementsOf(chip: Chip): Element[] {
     const internal = own.find(({ role }) => role === 'internal')!;
     const setExternal = (): void =>
       shifter(external.index, style.external.startsWith('upper') ? upper : upper + 1);
-    if (style.external.endsWith('input')) setExternal();
-    splitter(cell, chip.couplingRatios[2 * cell]!);
+    const [ratios, outer] = innerAndOuter(chip, cell);
+    if (style.external.endsWith('input')) {
+      if (outer !== undefined) splitter(cell, outer);
+      setExternal();
+    }
+    splitter(cell, ratios[0]!);
     if (style.internal === 'differential') {
       shifter(internal.index, upper, 1 / 2);
       shifter(internal.index, upper + 1, -1 / 2);
     } else shifter(internal.index, style.internal === 'upper' ? upper : upper + 1);
-    splitter(cell, chip.couplingRatios[2 * cell + 1]!);
-    if (style.external.endsWith('output')) setExternal();
+    splitter(cell, ratios[1]!);
+    if (style.external.endsWith('output')) {
+      setExternal();
+      if (outer !== undefined) splitter(cell, outer);
+    }
   }
   portShifters('output');
   for (let column = 0; column < columns; column++) diagonal(new Float64Array(modes).fill(loss.column));
   diagonal(loss.output);
   return elements;
+}
+
+/**
+ * The ratios of a cell's two splitters around the arms, and that of its third one, which the light meets first
+ * of all before an external phase at the input, last of all behind one at the output.
+ */
+export function innerAndOuter(
+  { style, couplingRatios }: Chip,
+  cell: number,
+): [inner: readonly number[], outer: number | undefined] {
+  const ofCell = Array.from(couplingRatios.slice(style.splitters * cell, style.splitters * (cell + 1)));
+  if (style.splitters === 2) return [ofCell, undefined];
+  return style.external.endsWith('input') ? [ofCell.slice(1), ofCell[0]] : [ofCell.slice(0, 2), ofCell[2]];
 }
 
 /** V and dV/dp for the phase p of every shifter, by products of N x N matrices, one per element. */

@@ -28,10 +28,9 @@ function lawFor({ internal }: CellStyle): number {
 
 describe('phase errors', () => {
   it('cost (N - 1) s^2 on all N^2 single-arm phases', () => {
-    expect(lawFor({ internal: 'upper', external: 'upper-input', splitterForm: 'real' })).toBeCloseTo(
-      (MODES - 1) * SIGMA ** 2,
-      15,
-    );
+    expect(
+      lawFor({ internal: 'upper', external: 'upper-input', splitterForm: 'real', splitters: 2 }),
+    ).toBeCloseTo((MODES - 1) * SIGMA ** 2, 15);
   });
 
   it.each(ALL_STYLES.map((style, index) => [styleName(style), style, LAYOUTS[index % 2]!] as const))(

@@ -10,6 +10,7 @@ import {
   errorSource,
   hasErrors,
   requireConsistent,
+  requirePossibleCorrelation,
   without,
   withSource,
 } from '../../src/tolerance/errorSources.js';
@@ -138,6 +139,18 @@ describe('error sources', () => {
     expect(aloneWith(all, 'bits')).toEqual({ ...all, sigma: 0, bias: 0 });
     expect(aloneWith(all, 'sigma')).toEqual({ ...all, bits: 0, bias: 0 });
     expect(without(all, 'sigma')).toEqual({ ...all, sigma: 0 });
+  });
+
+  // A matrix of correlations r between three has the eigenvalue 1 + 2 r.
+  it('refuse correlations that three splitters cannot have', () => {
+    for (const [pairCorrelation, splitters, code] of [
+      [-1, 2, 'none'],
+      [-0.5, 3, 'none'],
+      [-0.51, 3, 'process/correlation'],
+      [NaN, 3, 'process/correlation'],
+    ] as const) {
+      expect(codeOf(() => requirePossibleCorrelation({ pairCorrelation }, { splitters }))).toBe(code);
+    }
   });
 
   it('refuse correlations of uniform numbers, and of none', () => {

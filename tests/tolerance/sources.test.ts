@@ -1,6 +1,7 @@
 import { describe, expect, it } from 'vitest';
 import { layersIn } from '../support/ziggurat.js';
 import type { ProcessErrors } from '../../src/chip/Chip.js';
+import { REFERENCE_STYLE } from '../../src/chip/idealChip.js';
 import { loadKernels } from '../../src/kernel/loadKernels.js';
 import { haarUnitary } from '../../src/matrix/haar.js';
 import { innerProduct } from '../../src/matrix/products.js';
@@ -120,10 +121,17 @@ describe('the ratios of splitters', () => {
 
   // Two splitters of a cell: pairCorrelation. Splitters of two cells: exp(-d/L), a column being one cell wide
   // and two ports one cell high.
-  it.each(LAYOUTS)('are correlated along the mesh and within cells, %s', (layout) => {
-    const [length, pair, sigma, trials] = [2, 0.5, 0.01, 4000];
+  it.each(
+    LAYOUTS.flatMap((layout) => [
+      [layout, 2, 0.5] as const,
+      [layout, 3, 0.5] as const,
+      // Opposite to each other as far as three can be.
+      [layout, 3, -0.5] as const,
+    ]),
+  )('are correlated along the mesh and within cells, %s, %i splitters, %f', (layout, splitters, pair) => {
+    const [length, sigma, trials] = [2, 0.01, 4000];
     const errors = { sigma, correlationLength: length, pairCorrelation: pair };
-    const plan = planFor(5, errors, {}, { layout });
+    const plan = planFor(5, errors, {}, { layout, style: { ...REFERENCE_STYLE, splitters } });
     const { cells, columnIndex, upperPortIndex } = plan.chip.mesh;
     const deviations = samples(plan, trials).map(({ chip }) =>
       chip.couplingRatios.map((ratio) => (ratio - 0.5) / sigma),
@@ -135,13 +143,12 @@ describe('the ratios of splitters', () => {
         const columns = Math.abs(columnIndex[a]! - columnIndex[b]!);
         const rows = Math.abs(upperPortIndex[a]! - upperPortIndex[b]!) / 2;
         const local = Math.exp(-(columns + rows) / length);
-        for (const [i, j, expected] of [
-          [2 * a, 2 * b, local],
-          [2 * a + 1, 2 * b + 1, local],
-          [2 * a, 2 * b + 1, pair * local],
-        ] as const) {
-          const standardError = Math.sqrt((1 + expected ** 2) / trials);
-          expect(Math.abs(correlation(i, j) - expected), `${i}, ${j}`).toBeLessThan(4 * standardError);
+        for (let k = 0; k < splitters; k++) {
+          for (let l = 0; l < splitters; l++) {
+            const [i, j, expected] = [splitters * a + k, splitters * b + l, k === l ? local : pair * local];
+            const standardError = Math.sqrt((1 + expected ** 2) / trials);
+            expect(Math.abs(correlation(i, j) - expected), `${i}, ${j}`).toBeLessThan(4.5 * standardError);
+          }
         }
       }
     }

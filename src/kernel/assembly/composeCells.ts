@@ -7,6 +7,8 @@ import {
 const UPPER_INPUT = 0;
 const LOWER_INPUT = 1;
 const UPPER_OUTPUT = 2;
+/** The external phase is in the ways through the cell already. */
+const NOWHERE = -1;
 
 /** Bytes of a cell's coefficients: u re, im, v re, im, exchange; 16 bytes each, a lane a trial. */
 export const CELL = 80;
@@ -28,28 +30,44 @@ const WAYS = 128;
  * with the factors f1' = T11 f1, f2' = T22 f2 (or T12 f2, T21 f1). No factor is ever less than 1/sqrt(2) of
  * the one before without loss, so nothing underflows up to 1024 cells in a row.
  *
- * ratios: 2 x 16 bytes a cell, the coupling ratios. arms: 4 x 16 bytes a cell. external: 2 x 16 bytes a cell.
+ * In a cell of three splitters the external phase stands between two of them: it and the third one are taken
+ * into the ways through the cell.
+ *
+ * ratios: 16 bytes a splitter, the coupling ratios, a cell's `splitters` (2 or 3) as the light meets them. arms: 4 x 16 bytes a cell. external: 2 x 16 bytes a cell.
  * gain: 16 bytes a cell, the amplitude factor of its splitters' losses. input: 2 x 16 bytes a port, the fields'
  * factors at the inputs; factors: written, those at the outputs. ways: room for BLOCK cells. place: 0 upper
  * input, 1 lower input, 2 upper output, 3 lower output.
  */
 export function composeCells(
   cells: i32, upperPort: usize, ratios: usize, arms: usize, external: usize, gain: usize, modes: i32, input: usize,
-  factors: usize, ways: usize, coefficients: usize, place: i32, realSplitters: i32,
+  factors: usize, ways: usize, coefficients: usize, place: i32, realSplitters: i32, splitters: i32,
 ): void {
   memory.copy(factors, input, usize(modes) * 32);
+  const ofCell = usize(splitters) * 16;
+  const hasOuter = splitters == 3;
+  const atOutput = place >= UPPER_OUTPUT;
+  const first: usize = hasOuter && !atOutput ? 16 : 0;
+  const outer: usize = atOutput ? 32 : 0;
+  const placeOnGuide = hasOuter ? NOWHERE : place;
   for (let start = 0; start < cells; start += BLOCK) {
     const end = min(start + BLOCK, cells);
     for (let cell = start; cell < end; cell++) {
       findWays(
-        ways + usize(cell - start) * WAYS, ratios + usize(cell) * 32, arms + usize(cell) * 64,
+        ways + usize(cell - start) * WAYS, ratios + usize(cell) * ofCell + first, arms + usize(cell) * 64,
         gain + usize(cell) * 16, realSplitters,
       );
+    }
+    if (hasOuter) {
+      for (let cell = start; cell < end; cell++) {
+        const at = ways + usize(cell - start) * WAYS;
+        passExternal(at, external + usize(cell) * 32, place);
+        passOuterSplitter(at, ratios + usize(cell) * ofCell + outer, atOutput, realSplitters);
+      }
     }
     for (let cell = start; cell < end; cell++) {
       composeCell(
         ways + usize(cell - start) * WAYS, factors + usize(load<i32>(upperPort + usize(cell) * 4)) * 32,
-        external + usize(cell) * 32, coefficients + usize(cell) * CELL, place,
+        external + usize(cell) * 32, coefficients + usize(cell) * CELL, placeOnGuide,
       );
     }
   }
@@ -105,6 +123,43 @@ export function composeCells(
   const y = v128.load(at, 16);
   v128.store(at, productRe(x, y, er, ei));
   v128.store(at, productIm(x, y, er, ei), 16);
+}
+
+/** Multiplies the external phase into the two ways through the cell that pass it. */
+function passExternal(ways: usize, external: usize, place: i32): void {
+  const er = v128.load(external);
+  const ei = v128.load(external, 16);
+  const first: usize = place == UPPER_INPUT || place == UPPER_OUTPUT ? 0 : place == LOWER_INPUT ? 32 : 64;
+  turn(ways + first, er, ei);
+  turn(ways + first + (place < UPPER_OUTPUT ? 64 : 32), er, ei);
+}
+
+/** Multiplies the third splitter into the ways through the cell: from the right, or from the left at the output. */
+function passOuterSplitter(ways: usize, ratio: usize, atOutput: bool, realSplitters: i32): void {
+  const c = root(subtract(both(1.0), v128.load(ratio)));
+  const s = root(v128.load(ratio));
+  // The splitter is symmetric: it mixes the entries of a row or of a column in the same manner.
+  const across: usize = atOutput ? 64 : 32;
+  const along: usize = atOutput ? 32 : 64;
+  for (let k = 0; k < 2; k++) {
+    const one = ways + usize(k) * along;
+    const other = one + across;
+    const xr = v128.load(one);
+    const xi = v128.load(one, 16);
+    const yr = v128.load(other);
+    const yi = v128.load(other, 16);
+    if (realSplitters) {
+      v128.store(one, add(multiply(c, xr), multiply(s, yr)));
+      v128.store(one, add(multiply(c, xi), multiply(s, yi)), 16);
+      v128.store(other, subtract(multiply(s, xr), multiply(c, yr)));
+      v128.store(other, subtract(multiply(s, xi), multiply(c, yi)), 16);
+    } else {
+      v128.store(one, subtract(multiply(c, xr), multiply(s, yi)));
+      v128.store(one, add(multiply(c, xi), multiply(s, yr)), 16);
+      v128.store(other, subtract(multiply(c, yr), multiply(s, xi)));
+      v128.store(other, add(multiply(c, yi), multiply(s, xr)), 16);
+    }
+  }
 }
 
 /**
