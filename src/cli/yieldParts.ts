@@ -3,6 +3,7 @@ import { isUpperLimit } from '../merit/merit.js';
 import { clopperPearson } from '../statistics/binomialInterval.js';
 import type { Threshold } from '../tolerance/thresholds.js';
 import { countPassed } from '../tolerance/thresholds.js';
+import { USUAL_ITERATIONS } from '../tolerance/TrialPlan.js';
 import type { ChipOptions, OutputOptions, TargetOptions } from './commandOptions.js';
 import { settledTargetOptions } from './commandOptions.js';
 import { shortNumber } from './messages.js';
@@ -23,8 +24,10 @@ export interface YieldOptions extends OutputOptions, ChipOptions, TargetOptions,
 
 /** The options that change the result, besides errors and thresholds. */
 export function settledOptions(options: YieldOptions): Record<string, unknown> {
-  const { trials, confidence, retune, seed, within } = options;
-  return { trials, confidence, retune, seed, within, ...settledTargetOptions(options) };
+  const { trials, confidence, retune, seed, within, refineIterations, refineSeconds } = options;
+  const refine =
+    retune === 'refine' ? { refineIterations: refineIterations ?? USUAL_ITERATIONS, refineSeconds } : {};
+  return { trials, confidence, retune, ...refine, seed, within, ...settledTargetOptions(options) };
 }
 
 /** The default folder of a run that samples chips. */
