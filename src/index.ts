@@ -129,8 +129,11 @@ export type { CumulativeCurveOptions } from './figure/drawCumulativeCurve.js';
 export { drawCumulativeCurve } from './figure/drawCumulativeCurve.js';
 export type { SweepCurveOptions, SweepPoint } from './figure/drawSweepCurve.js';
 export { drawSweepCurve } from './figure/drawSweepCurve.js';
-export type { BudgetOptions, BudgetRow, MeanEstimate } from './figure/drawBudget.js';
+export type { MeanEstimate } from './figure/meanSigns.js';
+export type { BudgetOptions, BudgetRow } from './figure/drawBudget.js';
 export { drawBudget } from './figure/drawBudget.js';
+export type { ComparisonGroup, ComparisonOptions, ComparisonRow } from './figure/drawComparison.js';
+export { drawComparison } from './figure/drawComparison.js';
 
 // Faults in the input
 export type { Place } from './errors/InputError.js';

@@ -38,6 +38,7 @@ import { infidelityWithoutErrors, loadScenario, planOf } from './trialScenario.j
 import type { YieldOptions } from './yieldParts.js';
 import {
   percent,
+  requireLight,
   scenarioBlocks,
   settledOptions,
   thresholdWords,
@@ -235,17 +236,6 @@ function tellClamped(console: Console, clamped: number): void {
     clamped === 1
       ? 'a coupling ratio was clamped to [0, 1]'
       : `${clamped} coupling ratios were clamped to [0, 1]`,
-  );
-}
-
-/** A chip through which no light comes has no figures of merit that could be summed up. */
-function requireLight(column: Float64Array, key: keyof Merit): void {
-  const dark = column.findIndex((value) => !Number.isFinite(value));
-  if (dark < 0) return;
-  throw new InputError(
-    'yield/dark',
-    `trial ${dark + 1} has no ${MERIT_NAMES[key]}: no light comes through the chip`,
-    'Look at the losses of the chip, or judge other figures.',
   );
 }
 

@@ -3,7 +3,7 @@ import { InputError } from '../errors/InputError.js';
 import { runIdentity } from '../files/contentHash.js';
 import { summarise } from '../statistics/summary.js';
 import { aloneWith, CORRELATIONS, COSTLY_SOURCES, without } from '../tolerance/errorSources.js';
-import type { MeanEstimate } from '../figure/drawBudget.js';
+import type { MeanEstimate } from '../figure/meanSigns.js';
 import type { Merit } from '../merit/merit.js';
 import type { Threshold } from '../tolerance/thresholds.js';
 import { columnOf, countPassed } from '../tolerance/thresholds.js';

@@ -1,3 +1,4 @@
+import { InputError } from '../errors/InputError.js';
 import type { Merit } from '../merit/merit.js';
 import { isUpperLimit } from '../merit/merit.js';
 import { clopperPearson } from '../statistics/binomialInterval.js';
@@ -63,6 +64,17 @@ export function scenarioBlocks({ source, target, readChip: { chip } }: Scenario)
     },
     chip: chipBlock(chip),
   };
+}
+
+/** A chip through which no light comes has no figures of merit that could be summed up. */
+export function requireLight(column: Float64Array, key: keyof Merit): void {
+  const dark = column.findIndex((value) => !Number.isFinite(value));
+  if (dark < 0) return;
+  throw new InputError(
+    'yield/dark',
+    `trial ${dark + 1} has no ${MERIT_NAMES[key]}: no light comes through the chip`,
+    'Look at the losses of the chip, or judge other figures.',
+  );
 }
 
 /** A threshold as people write it. */
