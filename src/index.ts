@@ -92,7 +92,8 @@ export type { ErrorDistribution, ProcessErrors } from './chip/Chip.js';
 export { NO_ERRORS } from './chip/Chip.js';
 export type { ErrorSource } from './tolerance/errorSources.js';
 export { ERROR_SOURCES, withSource } from './tolerance/errorSources.js';
-export type { Retuning as TrialRetuning, TrialPlan } from './tolerance/TrialPlan.js';
+export type { TrialPlan, TrialRefinement } from './tolerance/TrialPlan.js';
+export { USUAL_ITERATIONS } from './tolerance/TrialPlan.js';
 export type { SampledChip, TrialEngine } from './tolerance/createTrialEngine.js';
 export { createTrialEngine } from './tolerance/createTrialEngine.js';
 export type { RunTrialsOptions, TrialResults } from './tolerance/runTrials.js';
@@ -135,8 +136,11 @@ export type { CumulativeCurveOptions } from './figure/drawCumulativeCurve.js';
 export { drawCumulativeCurve } from './figure/drawCumulativeCurve.js';
 export type { SweepCurveOptions, SweepPoint } from './figure/drawSweepCurve.js';
 export { drawSweepCurve } from './figure/drawSweepCurve.js';
-export type { BudgetOptions, BudgetRow, MeanEstimate } from './figure/drawBudget.js';
+export type { MeanEstimate } from './figure/meanSigns.js';
+export type { BudgetOptions, BudgetRow } from './figure/drawBudget.js';
 export { drawBudget } from './figure/drawBudget.js';
+export type { ComparisonGroup, ComparisonOptions, ComparisonRow } from './figure/drawComparison.js';
+export { drawComparison } from './figure/drawComparison.js';
 
 // Faults in the input
 export type { Place } from './errors/InputError.js';

@@ -4,6 +4,7 @@ import { nearestName } from '../errors/nearestName.js';
 import { printableText } from '../figure/printableText.js';
 import { packageVersion } from '../files/version.js';
 import { addChipCommand } from './chip.js';
+import { addCompareCommand } from './compare.js';
 import { errorColours, withoutControls } from './console.js';
 import { addFigureCommand } from './figure.js';
 import { addPhasesCommand } from './phases.js';
@@ -57,6 +58,7 @@ Exit codes: 0 done, 1 a --require was not met, 2 input or usage at fault, 3 inte
   addVerifyCommand(program, setExitCode);
   addYieldCommand(program, setExitCode);
   addToleranceCommand(program, setExitCode);
+  addCompareCommand(program, setExitCode);
   addTargetCommand(program, setExitCode);
   addChipCommand(program);
   addFigureCommand(program);

@@ -17,7 +17,6 @@ import type { Scenario } from './trialScenario.js';
 export interface KeptFolder {
   readonly console: Console;
   readonly options: {
-    readonly trials: number;
     readonly resume?: boolean;
     readonly force?: boolean;
     readonly json?: boolean;
@@ -35,7 +34,11 @@ export interface KeptFolder {
 
 /** A run of the trials of given plans. */
 export interface KeptRun extends Omit<KeptFolder, 'command' | 'columns' | 'options'> {
+  /** `yield` when absent. */
+  readonly command?: string;
   readonly options: KeptFolder['options'] & { readonly workers?: number };
+  /** Trials of each plan. */
+  readonly trials: readonly number[];
   readonly plans: readonly TrialPlan[];
   /** Judged after each chunk; true ends the run. */
   readonly enough?: (results: PlanResults) => boolean;
@@ -118,14 +121,14 @@ export async function runKept(
   run: KeptRun,
   report: (outcome: PlanOutcome) => Promise<void>,
 ): Promise<number> {
-  const { console, options, plans, enough } = run;
+  const { console, options, plans, trials, enough } = run;
   const workers = sensibleWorkers(options.workers);
-  const kept = { ...run, command: 'yield', columns: plans[0]!.figures.length };
+  const kept = { command: 'yield', ...run, columns: plans[0]!.figures.length };
   return keepingChunks(kept, async (store) => {
     const { value: outcome, interrupted } = await withInterrupt((signal) =>
       runPlans({
         plans,
-        trials: options.trials,
+        trials,
         workers,
         signal,
         store,
@@ -133,10 +136,10 @@ export async function runKept(
         ...(enough === undefined ? {} : { enough }),
       }),
     );
-    const done = outcome?.results.reduce((sum, { trials }) => sum + trials, 0) ?? 0;
+    const done = outcome?.results.reduce((sum, results) => sum + results.trials, 0) ?? 0;
     if (outcome !== undefined && done > 0 && (run.reportsParts || !interrupted)) await report(outcome);
     if (!interrupted) return true;
-    const all = options.trials * plans.length;
+    const all = trials.reduce((sum, each) => sum + each, 0);
     console.warning(
       done === 0
         ? 'interrupted before the first chunk of trials was done'

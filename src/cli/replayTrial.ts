@@ -45,7 +45,7 @@ export async function replayTrial(
     version: packageVersion(),
     target: { source: scenario.source, matrix: target },
     chip: file,
-    options: { trial: number, seed: plan.seed, retune: plan.retune },
+    options: { trial: number, seed: plan.seed, retune: plan.retune, refine: plan.refine },
     hashes: { target: matrixHash(target), chip: chipHash(readChip), phases: contentHash(csv) },
   });
   const identity = { ...settledOptions(options), errors: plan.errors, thresholds, trial: number };
@@ -62,6 +62,7 @@ export async function replayTrial(
       chip: chipBlock(chip),
       errors: plan.errors,
       retune: plan.retune,
+      ...(plan.refine === undefined ? {} : { refine: plan.refine }),
       seed: plan.seed,
       trial: number,
       merit,
@@ -73,6 +74,9 @@ export async function replayTrial(
       console.result(`\n${judged.every(({ met }) => met) ? 'keeps' : 'does not keep'} the thresholds`);
     },
   });
+  if (plan.refine?.mostSeconds !== undefined) {
+    console.warning('with --refine-seconds, these phases may differ from those of the trial in a longer run');
+  }
   return 0;
 }
 

@@ -16,12 +16,14 @@ export interface PlanResults {
   readonly rows: Float64Array;
   readonly trials: number;
   readonly clamped: number;
+  /** Trials whose refinement was ended by the clock. */
+  readonly outOfTime: number;
 }
 
 export interface PlanRun {
   readonly plans: readonly TrialPlan[];
   /** Trials of each plan. */
-  readonly trials: number;
+  readonly trials: readonly number[];
   readonly workers: number;
   readonly signal?: AbortSignal;
   /** Where finished chunks are kept, if they are. */
@@ -58,15 +60,20 @@ export async function runPlans(run: PlanRun): Promise<PlanOutcome> {
   const jobs = jobsOf(plans, trials, place?.chunksBefore ?? 0);
   const label = place === undefined ? [] : [place.value];
   const columns = plans[0]!.figures.length;
-  const rows = plans.map(() => new Float64Array(trials * columns));
+  const rows = plans.map((_, plan) => new Float64Array(trials[plan]! * columns));
   const done = plans.map(() => 0);
   const clamped = plans.map(() => 0);
+  const outOfTime = plans.map(() => 0);
   const resultsOf = (plan: number): PlanResults => ({
     rows: rows[plan]!.subarray(0, done[plan]! * columns),
     trials: done[plan]!,
     clamped: clamped[plan]!,
+    outOfTime: outOfTime[plan]!,
   });
-  const progress = createProgress(run.console, trials * plans.length);
+  const progress = createProgress(
+    run.console,
+    trials.reduce((sum, each) => sum + each, 0),
+  );
   const started = performance.now();
   let fresh = 0;
   const chunks = {
@@ -81,10 +88,11 @@ export async function runPlans(run: PlanRun): Promise<PlanOutcome> {
       rows[plan]!.set(chunk.rows, first * columns);
       done[plan] = first + count;
       clamped[plan]! += chunk.clamped;
+      outOfTime[plan]! += chunk.outOfTime;
       const known = store?.has(number) === true;
       if (!known) {
         fresh += count;
-        const counters = [chunk.clamped, ...label];
+        const counters = [chunk.clamped, ...label, chunk.outOfTime];
         await store?.save({ number, firstTrial: first + 1, rows: chunk.rows, counters });
       }
       progress.advance(count, known);
@@ -103,8 +111,10 @@ export async function runPlans(run: PlanRun): Promise<PlanOutcome> {
 
 /** @throws InputError `run/changed` for a chunk of another value, as another version of the search left it */
 function keptChunk({ number, rows, counters }: Chunk, value: number | undefined): TrialChunk {
-  const [clamped, of] = counters;
-  if (of === value) return { rows, clamped: clamped! };
+  const clamped = counters[0]!;
+  if (value === undefined) return { rows, clamped, outOfTime: counters[1] ?? 0 };
+  const of = counters[1];
+  if (of === value) return { rows, clamped, outOfTime: counters[2] ?? 0 };
   throw new InputError(
     'run/changed',
     `chunk ${number} of what is kept is of the value ${of}, where this run tries ${value}`,
@@ -115,12 +125,13 @@ function keptChunk({ number, rows, counters }: Chunk, value: number | undefined)
 /** All judged figures are held in memory until they are written, in all about 60 bytes each: two gigabytes are enough. */
 const MOST_VALUES = 2 ** 25;
 
-function requireRoom(plans: readonly TrialPlan[], trials: number): void {
-  const values = plans.length * trials * plans[0]!.figures.length;
+function requireRoom(plans: readonly TrialPlan[], trials: readonly number[]): void {
+  const most = Math.max(...trials);
+  const values = plans.length * most * plans[0]!.figures.length;
   if (values <= MOST_VALUES) return;
   throw new InputError(
     'run/size',
-    `${plans.length === 1 ? '' : `${plans.length} times `}${trials} trials are more than memory holds`,
+    `${plans.length === 1 ? '' : `${plans.length} times `}${most} trials are more than memory holds`,
     'Give fewer --trials, points or thresholds.',
   );
 }
@@ -130,13 +141,14 @@ type ChunkHandling = Required<Pick<PoolRun<TrialJob, TrialChunk>, 'known' | 'onR
 /** To start workers takes as long as so many chunks, which a search would pay at each of its values. */
 const FEW_CHUNKS = 4;
 
-/** Runs jobs, on workers if there are more than a few. */
+/** Runs jobs, on workers if there are more than a few, or any that take long. */
 async function endOf(
   { plans, workers, signal }: PlanRun,
   jobs: readonly TrialJob[],
   chunks: ChunkHandling,
 ): Promise<PoolOutcome['ended']> {
-  if (jobs.length <= FEW_CHUNKS) return endOfFew(plans, jobs, chunks, signal);
+  const takesLong = plans.some(({ retune }) => retune === 'refine');
+  if (jobs.length <= FEW_CHUNKS && !takesLong) return endOfFew(plans, jobs, chunks, signal);
   const outcome = await runChunks<TrialJob, TrialChunk>({
     workers,
     entry: new URL('./trialWorker.js', import.meta.url),
@@ -167,13 +179,14 @@ async function endOfFew(
   return 'all';
 }
 
-function jobsOf(plans: readonly TrialPlan[], trials: number, before: number): TrialJob[] {
+function jobsOf(plans: readonly TrialPlan[], trials: readonly number[], before: number): TrialJob[] {
   const jobs: TrialJob[] = [];
   plans.forEach((plan, index) => {
     const size = chunkTrials(plan);
-    for (let first = 0; first < trials; first += size) {
+    const all = trials[index]!;
+    for (let first = 0; first < all; first += size) {
       const number = before + jobs.length + 1;
-      jobs.push({ plan: index, number, first, count: Math.min(size, trials - first) });
+      jobs.push({ plan: index, number, first, count: Math.min(size, all - first) });
     }
   });
   return jobs;

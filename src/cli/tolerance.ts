@@ -15,7 +15,7 @@ import type { ToleranceEstimate, TriedValue, YieldCount } from '../tolerance/fin
 import { bracketSoFar } from '../tolerance/findTolerance.js';
 import { portsTheory, toleranceTheory } from '../tolerance/smallErrorTheory.js';
 import type { Threshold } from '../tolerance/thresholds.js';
-import { countPassed, judgedFigures } from '../tolerance/thresholds.js';
+import { countPassed } from '../tolerance/thresholds.js';
 import type { TrialPlan } from '../tolerance/TrialPlan.js';
 import type { ChipOptions, OutputOptions, TargetOptions } from './commandOptions.js';
 import { addChipOptions, addOutputOptions, addTargetOptions } from './commandOptions.js';
@@ -46,6 +46,8 @@ import {
   tellMissingPortShifters,
   thresholdsOf,
 } from './trialOptions.js';
+import type { TimedTrials } from './trialRefinement.js';
+import { refineBlock, settledPlan, tellOutOfTime } from './trialRefinement.js';
 import type { Quantity, Scenario } from './trialScenario.js';
 import { infidelityWithoutErrors, loadScenario, planAt, QUANTITIES } from './trialScenario.js';
 import { QUANTITY_LABELS } from './yieldSweep.js';
@@ -103,6 +105,9 @@ interface Inquiry {
   readonly source: Quantity;
   readonly search: QuantitySearch;
   readonly planFor: (value: number) => Promise<TrialPlan>;
+  readonly refine: TrialPlan['refine'];
+  /** What the trials of each value gave, as they come. */
+  readonly results: TimedTrials[];
   readonly folder: string;
   readonly runId: string;
 }
@@ -116,10 +121,10 @@ async function runTolerance(argument: string, options: ToleranceOptions): Promis
   const { chip } = scenario.readChip;
   const thresholds = thresholdsOf(options, chip);
   tellMissingPortShifters(console, chip, thresholds);
-  const figures = judgedFigures(thresholds);
   const given = processOf(chip.process, options, source);
   const errors = ERROR_SOURCES.some((name) => name === source) ? { ...given, [source]: 0 } : given;
-  const settled = { retune: options.retune, seed: options.seed, figures };
+  const settled = settledPlan(options, chip, thresholds);
+  const { figures } = settled;
   const search = searchOf(source, chip.mesh);
   const planFor = (value: number): Promise<TrialPlan> => planAt(scenario, errors, settled, source, value);
   // What cannot be is refused before anything is kept.
@@ -145,7 +150,9 @@ async function runTolerance(argument: string, options: ToleranceOptions): Promis
     columns: figures.length,
     description: describedRun(scenario, identity),
   };
-  const inquiry = { console, options, scenario, thresholds, errors, source, search, planFor, folder, runId };
+  const results: TimedTrials[] = [];
+  const asked = { console, options, scenario, thresholds, errors, source, search, planFor, folder, runId };
+  const inquiry = { ...asked, refine: settled.refine, results };
   return keepingChunks(kept, async (store) => {
     const tried: TriedValue[] = [];
     let chunksBefore = 0;
@@ -154,8 +161,9 @@ async function runTolerance(argument: string, options: ToleranceOptions): Promis
         const plans = [await planFor(value)];
         const place = { chunksBefore, value };
         const { trials } = options;
-        const outcome = await runPlans({ plans, trials, workers, signal, store, place, console });
+        const outcome = await runPlans({ plans, trials: [trials], workers, signal, store, place, console });
         chunksBefore += outcome.chunks;
+        results.push({ trials: outcome.results[0]!.trials, outOfTime: outcome.results[0]!.outOfTime });
         const passed = countPassed(outcome.results[0]!.rows, figures, thresholds);
         if (!outcome.interrupted) tried.push({ value, passed, trials });
         signal.throwIfAborted();
@@ -240,6 +248,7 @@ async function reportTolerance(inquiry: Inquiry, found: ToleranceEstimate): Prom
       ...scenarioBlocks(scenario),
       errors,
       retune: options.retune,
+      ...refineBlock(inquiry.refine, inquiry.results),
       thresholds,
       tolerance: {
         source,
@@ -260,6 +269,7 @@ async function reportTolerance(inquiry: Inquiry, found: ToleranceEstimate): Prom
     },
     show: () => showTolerance(inquiry, found, theory),
   });
+  tellOutOfTime(console, inquiry.refine, inquiry.results);
   if (outcome === 'holds nowhere') console.warning(nowhereWords(source, search));
 }
 

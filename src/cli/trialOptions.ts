@@ -14,42 +14,72 @@ import {
   withSource,
 } from '../tolerance/errorSources.js';
 import type { Threshold } from '../tolerance/thresholds.js';
+import { positiveNumberFor } from './commandOptions.js';
 import type { Console } from './console.js';
-import type { Retuning } from '../tolerance/TrialPlan.js';
-import { RETUNINGS } from '../tolerance/TrialPlan.js';
+import { USUAL_ITERATIONS } from '../tolerance/TrialPlan.js';
+import type { Retuning } from '../program/retunings.js';
+import { RETUNINGS } from '../program/retunings.js';
 
-/** Options of the commands that sample chips. */
-export interface TrialOptions {
-  readonly trials: number;
-  readonly threshold: readonly Threshold[];
+/** Options of the commands that sample chips in one way or several. */
+export interface SamplingOptions {
+  readonly threshold?: readonly Threshold[];
   readonly confidence: number;
-  readonly retune: Retuning;
+  readonly refineIterations?: number;
+  readonly refineSeconds?: number;
   readonly sigma?: number;
   readonly error?: readonly (readonly [ErrorSource, number])[];
   readonly seed: number;
   readonly workers?: number;
 }
 
+/** Options of the commands that sample chips. */
+export interface TrialOptions extends SamplingOptions {
+  readonly trials: number;
+  readonly retune: Retuning;
+}
+
 /** The seed when none is given: any fixed number would do. */
 const USUAL_SEED = 2026;
 const MOST_TRIALS = 100_000_000;
 
+const MOST_ITERATIONS = 1_000_000;
+
 export function addTrialOptions(command: Command, usualTrials: number): Command {
+  command
+    .option('--trials <number>', 'chips to sample', trialsNumber, usualTrials)
+    .addOption(
+      new Option(
+        '--retune <how>',
+        'none: one program for all chips; cell: each corrected cell by cell with its own ratios; mesh: what a cell ' +
+          'cannot do is made good by later ones; refine: from there on all phases at once',
+      )
+        .choices(RETUNINGS)
+        .default('none'),
+    );
+  return addSamplingOptions(command);
+}
+
+/** A number of trials, for commander. @throws InputError `usage/number` */
+export const trialsNumber = wholeNumberFor('--trials', 1, MOST_TRIALS);
+
+/** All options of sampling but how often and with which retuning. */
+export function addSamplingOptions(command: Command): Command {
   return command
-    .option('--trials <number>', 'chips to sample', wholeNumberFor('--trials', 1, MOST_TRIALS), usualTrials)
     .option(
       '--threshold <figure=limit>',
       'what makes a chip good; several must all hold (default: fidelity=0.99, portPhaseFreeFidelity=0.99 without port shifters)',
       parseThreshold,
     )
     .option('--confidence <share>', 'confidence of all intervals', parseShare('--confidence'), 0.95)
-    .addOption(
-      new Option(
-        '--retune <how>',
-        'none: one program for all chips; cell: each corrected with its own ratios',
-      )
-        .choices(RETUNINGS)
-        .default('none'),
+    .option(
+      '--refine-iterations <number>',
+      `iterations of refine for each chip (default: ${USUAL_ITERATIONS})`,
+      wholeNumberFor('--refine-iterations', 1, MOST_ITERATIONS),
+    )
+    .option(
+      '--refine-seconds <number>',
+      'time of refine for each chip besides; where it runs out, results depend on the machine',
+      positiveNumberFor('--refine-seconds'),
     )
     .option('--sigma <spread>', 'independent normal error of every coupling ratio', realNumber('--sigma'))
     .option(
@@ -97,7 +127,7 @@ export function tellMissingPortShifters(
  */
 export function processOf(
   inFile: ProcessErrors,
-  { sigma, error = [] }: Pick<TrialOptions, 'sigma' | 'error'>,
+  { sigma, error = [] }: Pick<SamplingOptions, 'sigma' | 'error'>,
   swept?: string,
 ): ProcessErrors {
   const given =

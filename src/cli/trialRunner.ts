@@ -16,6 +16,8 @@ export interface TrialJob {
 export interface TrialChunk {
   readonly rows: Float64Array;
   readonly clamped: number;
+  /** Trials whose refinement was ended by the clock. */
+  readonly outOfTime: number;
 }
 
 /** What runs the trials of plans, which come one after another: an engine is kept until the next one begins. */
@@ -26,6 +28,6 @@ export function trialRunner(plans: readonly TrialPlan[]): (job: TrialJob) => Tri
     if (current?.index !== index) current = { index, engine: createTrialEngine(plan) };
     const rows = new Float64Array(count * plan.figures.length);
     const clamped = current.engine.run(first, count, rows);
-    return { rows, clamped };
+    return { rows, clamped, outOfTime: current.engine.outOfTime() };
   };
 }

@@ -4,7 +4,6 @@ import type { ReadChip } from '../chip/readChip.js';
 import { InputError } from '../errors/InputError.js';
 import type { ComplexMatrix } from '../matrix/ComplexMatrix.js';
 import { haarUnitary } from '../matrix/haar.js';
-import type { Merit } from '../merit/merit.js';
 import { simulate } from '../simulate/simulate.js';
 import { programChip } from '../program/programChip.js';
 import { figuresOfMerit } from '../merit/merit.js';
@@ -15,7 +14,7 @@ import {
   requirePossibleCorrelation,
   withSource,
 } from '../tolerance/errorSources.js';
-import type { Retuning, TrialPlan } from '../tolerance/TrialPlan.js';
+import type { TrialPlan } from '../tolerance/TrialPlan.js';
 import { matrixFileKind } from '../target/MatrixFileKind.js';
 import type { ChipOptions, TargetOptions } from './commandOptions.js';
 import { chipHash, idealChipFor, loadNamedChip } from './loadChip.js';
@@ -115,7 +114,7 @@ async function scenarioOf(
 export function planOf(
   { readChip, target }: Scenario,
   errors: ProcessErrors,
-  settled: { readonly retune: Retuning; readonly seed: number; readonly figures: readonly (keyof Merit)[] },
+  settled: Pick<TrialPlan, 'retune' | 'refine' | 'seed' | 'figures'>,
 ): TrialPlan {
   requirePossibleCorrelation(errors, readChip.chip.style);
   return { chip: readChip.chip, target: target === null ? 'haar' : target.matrix, errors, ...settled };

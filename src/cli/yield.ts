@@ -10,7 +10,7 @@ import type { Summary } from '../statistics/summary.js';
 import { summarise } from '../statistics/summary.js';
 import { infidelityTheory } from '../tolerance/smallErrorTheory.js';
 import type { Threshold } from '../tolerance/thresholds.js';
-import { columnOf, countPassed, judgedFigures } from '../tolerance/thresholds.js';
+import { columnOf, countPassed } from '../tolerance/thresholds.js';
 import type { TrialPlan } from '../tolerance/TrialPlan.js';
 import { addChipOptions, addOutputOptions, addTargetOptions } from './commandOptions.js';
 import type { Console } from './console.js';
@@ -32,11 +32,13 @@ import {
   thresholdsOf,
   wholeNumberFor,
 } from './trialOptions.js';
+import { refineBlock, settledPlan, tellOutOfTime } from './trialRefinement.js';
 import type { Scenario } from './trialScenario.js';
 import { infidelityWithoutErrors, loadScenario, planOf } from './trialScenario.js';
 import type { YieldOptions } from './yieldParts.js';
 import {
   percent,
+  requireLight,
   scenarioBlocks,
   settledOptions,
   thresholdWords,
@@ -82,6 +84,7 @@ Examples:
   phasewright yield "haar(8)" --sigma 0.02
   phasewright yield target.npy --chip my.chip.json --threshold fidelity=0.98 --threshold powerDistance=0.05
   phasewright yield "haar(8)" --sweep sigma=0.005:0.05:10 --retune cell
+  phasewright yield "haar(8)" --sigma 0.03 --retune refine --threshold fidelity=0.9999 --trials 1000
   phasewright yield "dft(8)" --sigma 0.01 --error phaseSigma=0.02 --error bits=8 --budget`,
     )
     .action(async (argument: string, options: YieldOptions) => {
@@ -96,8 +99,8 @@ async function runYield(argument: string, options: YieldOptions): Promise<number
   if (options.budget === true) return runBudget(scenario, options);
   const errors = processOf(scenario.readChip.chip.process, options);
   const thresholds = thresholdsOf(options, scenario.readChip.chip);
-  const figures = judgedFigures(thresholds);
-  const plan = planOf(scenario, errors, { retune: options.retune, seed: options.seed, figures });
+  const plan = planOf(scenario, errors, settledPlan(options, scenario.readChip.chip, thresholds));
+  const { figures } = plan;
   if (options.trial !== undefined) return replayTrial(scenario, plan, options.trial, options);
 
   const console = createConsole(options);
@@ -123,6 +126,7 @@ async function runYield(argument: string, options: YieldOptions): Promise<number
     files,
     description: describedRun(scenario, identity),
     plans: [plan],
+    trials: [options.trials],
     enough,
   };
   return runKept({ ...kept, reportsParts: true }, (outcome) =>
@@ -200,6 +204,7 @@ async function reportYield(run: YieldRun): Promise<void> {
       ...scenarioBlocks(scenario),
       errors: plan.errors,
       retune: plan.retune,
+      ...refineBlock(plan.refine, [results]),
       yield: { thresholds, ...share },
       ...Object.fromEntries(figures.map((key, k) => [key, summaries[k]])),
       theory: { meanInfidelity: theory?.holds === true ? theory.meanInfidelity : null },
@@ -216,6 +221,7 @@ async function reportYield(run: YieldRun): Promise<void> {
     },
   });
   tellClamped(console, results.clamped);
+  tellOutOfTime(console, plan.refine, [results]);
   const { within } = options;
   if (within !== undefined && !outcome.interrupted && !(share.high - share.low <= within)) {
     console.warning(
@@ -230,17 +236,6 @@ function tellClamped(console: Console, clamped: number): void {
     clamped === 1
       ? 'a coupling ratio was clamped to [0, 1]'
       : `${clamped} coupling ratios were clamped to [0, 1]`,
-  );
-}
-
-/** A chip through which no light comes has no figures of merit that could be summed up. */
-function requireLight(column: Float64Array, key: keyof Merit): void {
-  const dark = column.findIndex((value) => !Number.isFinite(value));
-  if (dark < 0) return;
-  throw new InputError(
-    'yield/dark',
-    `trial ${dark + 1} has no ${MERIT_NAMES[key]}: no light comes through the chip`,
-    'Look at the losses of the chip, or judge other figures.',
   );
 }
 

@@ -3,10 +3,10 @@ import { InputError } from '../errors/InputError.js';
 import { runIdentity } from '../files/contentHash.js';
 import { summarise } from '../statistics/summary.js';
 import { aloneWith, CORRELATIONS, COSTLY_SOURCES, without } from '../tolerance/errorSources.js';
-import type { MeanEstimate } from '../figure/drawBudget.js';
+import type { MeanEstimate } from '../figure/meanSigns.js';
 import type { Merit } from '../merit/merit.js';
 import type { Threshold } from '../tolerance/thresholds.js';
-import { columnOf, countPassed, judgedFigures } from '../tolerance/thresholds.js';
+import { columnOf, countPassed } from '../tolerance/thresholds.js';
 import { createConsole } from './console.js';
 import { shownSource } from './figureText.js';
 import { finish } from './finish.js';
@@ -16,6 +16,7 @@ import { reportHead } from './reportParts.js';
 import type { PlanResults } from './runPlans.js';
 import { textTable } from './textTable.js';
 import { processOf, thresholdsOf } from './trialOptions.js';
+import { refineBlock, settledPlan, tellOutOfTime } from './trialRefinement.js';
 import type { Scenario } from './trialScenario.js';
 import { planOf } from './trialScenario.js';
 import type { YieldOptions } from './yieldParts.js';
@@ -29,8 +30,8 @@ export async function runBudget(scenario: Scenario, options: YieldOptions): Prom
   const console = createConsole(options);
   const errors = processOf(scenario.readChip.chip.process, options);
   const thresholds = thresholdsOf(options, scenario.readChip.chip);
-  const figures = judgedFigures(thresholds);
-  const settled = { retune: options.retune, seed: options.seed, figures };
+  const settled = settledPlan(options, scenario.readChip.chip, thresholds);
+  const { figures } = settled;
   const sources = COSTLY_SOURCES.filter((source) => errors[source] !== 0);
   const correlations = CORRELATIONS.filter((source) => errors[source] !== 0);
   if (sources.length + correlations.length < 2) {
@@ -57,6 +58,7 @@ export async function runBudget(scenario: Scenario, options: YieldOptions): Prom
     files: ['budget.csv', 'budget.svg'],
     description: describedRun(scenario, identity),
     plans,
+    trials: plans.map(() => options.trials),
   };
   return runKept({ ...kept, reportsParts: false }, async (outcome) => {
     const costOf = (results: PlanResults): BudgetCost => {
@@ -115,6 +117,7 @@ export async function runBudget(scenario: Scenario, options: YieldOptions): Prom
         ...scenarioBlocks(scenario),
         errors,
         retune: options.retune,
+        ...refineBlock(settled.refine, outcome.results),
         thresholds,
         ...costs,
         seed: options.seed,
@@ -128,6 +131,7 @@ export async function runBudget(scenario: Scenario, options: YieldOptions): Prom
         console.result(budgetTable(costs));
       },
     });
+    tellOutOfTime(console, settled.refine, outcome.results);
   });
 }
 

@@ -1,8 +1,10 @@
+import { InputError } from '../errors/InputError.js';
 import type { Merit } from '../merit/merit.js';
 import { isUpperLimit } from '../merit/merit.js';
 import { clopperPearson } from '../statistics/binomialInterval.js';
 import type { Threshold } from '../tolerance/thresholds.js';
 import { countPassed } from '../tolerance/thresholds.js';
+import { USUAL_ITERATIONS } from '../tolerance/TrialPlan.js';
 import type { ChipOptions, OutputOptions, TargetOptions } from './commandOptions.js';
 import { settledTargetOptions } from './commandOptions.js';
 import { shortNumber } from './messages.js';
@@ -23,8 +25,10 @@ export interface YieldOptions extends OutputOptions, ChipOptions, TargetOptions,
 
 /** The options that change the result, besides errors and thresholds. */
 export function settledOptions(options: YieldOptions): Record<string, unknown> {
-  const { trials, confidence, retune, seed, within } = options;
-  return { trials, confidence, retune, seed, within, ...settledTargetOptions(options) };
+  const { trials, confidence, retune, seed, within, refineIterations, refineSeconds } = options;
+  const refine =
+    retune === 'refine' ? { refineIterations: refineIterations ?? USUAL_ITERATIONS, refineSeconds } : {};
+  return { trials, confidence, retune, ...refine, seed, within, ...settledTargetOptions(options) };
 }
 
 /** The default folder of a run that samples chips. */
@@ -60,6 +64,17 @@ export function scenarioBlocks({ source, target, readChip: { chip } }: Scenario)
     },
     chip: chipBlock(chip),
   };
+}
+
+/** A chip through which no light comes has no figures of merit that could be summed up. */
+export function requireLight(column: Float64Array, key: keyof Merit): void {
+  const dark = column.findIndex((value) => !Number.isFinite(value));
+  if (dark < 0) return;
+  throw new InputError(
+    'yield/dark',
+    `trial ${dark + 1} has no ${MERIT_NAMES[key]}: no light comes through the chip`,
+    'Look at the losses of the chip, or judge other figures.',
+  );
 }
 
 /** A threshold as people write it. */

@@ -3,7 +3,7 @@ import { InputError } from '../errors/InputError.js';
 import { nearestName } from '../errors/nearestName.js';
 import { runIdentity } from '../files/contentHash.js';
 import { summarise } from '../statistics/summary.js';
-import { columnOf, judgedFigures } from '../tolerance/thresholds.js';
+import { columnOf } from '../tolerance/thresholds.js';
 import type { TrialPlan } from '../tolerance/TrialPlan.js';
 import { createConsole } from './console.js';
 import { shownSource } from './figureText.js';
@@ -12,6 +12,7 @@ import { describedRun, runKept } from './keptRun.js';
 import { reportHead } from './reportParts.js';
 import { textTable } from './textTable.js';
 import { processOf, tellMissingPortShifters, thresholdsOf } from './trialOptions.js';
+import { refineBlock, settledPlan, tellOutOfTime } from './trialRefinement.js';
 import type { Quantity } from './trialScenario.js';
 import { loadScenario, planAt, QUANTITIES } from './trialScenario.js';
 import type { YieldOptions } from './yieldParts.js';
@@ -55,9 +56,9 @@ export async function runSweep(argument: string, options: YieldOptions): Promise
   const scenario = await loadScenario(argument, options, quantity === 'modes' ? values[0] : undefined);
   const thresholds = thresholdsOf(options, scenario.readChip.chip);
   tellMissingPortShifters(console, scenario.readChip.chip, thresholds);
-  const figures = judgedFigures(thresholds);
   const errors = processOf(scenario.readChip.chip.process, options, quantity);
-  const settled = { retune: options.retune, seed: options.seed, figures };
+  const settled = settledPlan(options, scenario.readChip.chip, thresholds);
+  const { figures } = settled;
   const plans: TrialPlan[] = [];
   for (const value of values) plans.push(await planAt(scenario, errors, settled, quantity, value));
   const folder = options.out ?? `${yieldFolder(scenario)}-sweep-${quantity}`;
@@ -71,6 +72,7 @@ export async function runSweep(argument: string, options: YieldOptions): Promise
     files: ['sweep.csv', 'sweep.svg'],
     description: describedRun(scenario, identity),
     plans,
+    trials: plans.map(() => options.trials),
   };
   return runKept({ ...kept, reportsParts: true }, async (outcome) => {
     const points = outcome.results
@@ -135,6 +137,7 @@ export async function runSweep(argument: string, options: YieldOptions): Promise
         ...scenarioBlocks(scenario),
         errors,
         retune: options.retune,
+        ...refineBlock(settled.refine, outcome.results),
         thresholds,
         quantity,
         sweep: points,
@@ -161,6 +164,7 @@ export async function runSweep(argument: string, options: YieldOptions): Promise
         );
       },
     });
+    tellOutOfTime(console, settled.refine, outcome.results);
   });
 }
 

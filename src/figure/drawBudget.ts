@@ -10,19 +10,12 @@ import type { PlotArea } from './plotFrame.js';
 import { drawXAxis, horizontalRoom } from './plotFrame.js';
 import type { KeyEntry } from './plotKey.js';
 import { drawKey } from './plotKey.js';
-import { FAIL_COLOUR, HAIRLINE, INK, MUTED, PASS_COLOUR } from './plotStyle.js';
+import type { MeanEstimate } from './meanSigns.js';
+import { BAR, drawDot, drawWhisker, requireMean } from './meanSigns.js';
+import { FAIL_COLOUR, HAIRLINE, INK, PASS_COLOUR } from './plotStyle.js';
 import { printableText } from './printableText.js';
 import type { SvgPart } from './SvgPage.js';
-import { rounded } from './SvgPage.js';
 import { cutText, guardedTextWidth, wrapText } from './textWidth.js';
-
-/** A mean over trials; `standardError` null for a single trial, which has no whisker. */
-export interface MeanEstimate {
-  readonly mean: number;
-  readonly standardError: number | null;
-  /** Share of good chips in [0, 1], in brackets behind the mean. */
-  readonly share?: number;
-}
 
 /** What one source of error costs. */
 export interface BudgetRow {
@@ -43,13 +36,11 @@ export interface BudgetOptions extends CurveFigureOptions {
   readonly log?: boolean;
 }
 
-const BAR = 1.5;
 const BAR_PITCH = 1.25 * SMALL_TEXT;
 const ROW_GAP = 1.5;
 const LABEL_GAP = 1;
 /** From the end of a whisker or the edge of a dot. */
 const VALUE_GAP = 0.8;
-const WHISKER = 0.9;
 const LABEL_SHARE = 0.36;
 const MOST_LABEL_LINES = 2;
 const LOG_FROM_RATIO = 30;
@@ -109,14 +100,7 @@ function requireRows(rows: readonly BudgetRow[], together: MeanEstimate): void {
   const estimates = rows.flatMap(({ alone, without }) =>
     alone === undefined ? [without] : [alone, without],
   );
-  for (const { mean, standardError } of [together, ...estimates]) {
-    if (!(
-      Number.isFinite(mean) &&
-      (standardError === null || (standardError >= 0 && standardError < Infinity))
-    )) {
-      throw new RangeError(`not a mean with its standard error: ${mean}, ${standardError}`);
-    }
-  }
+  for (const estimate of [together, ...estimates]) requireMean(estimate);
 }
 
 function blocksOf(rows: readonly BudgetRow[], together: MeanEstimate): Block[] {
@@ -269,33 +253,5 @@ function drawSolidBar(part: SvgPart, zero: number, end: number, y: number, fill:
     fill,
     'stroke': INK,
     'stroke-width': HAIRLINE,
-  });
-}
-
-function drawDot(part: SvgPart, left: number, place: number, y: number, fill: string): void {
-  part.add('path', {
-    'd': `M${rounded(left)} ${rounded(y)}H${rounded(place)}`,
-    'stroke': MUTED,
-    'stroke-width': HAIRLINE,
-  });
-  part.add('circle', {
-    'class': 'bar',
-    'cx': place,
-    'cy': y,
-    'r': BAR / 2,
-    fill,
-    'stroke': INK,
-    'stroke-width': HAIRLINE,
-  });
-}
-
-function drawWhisker(part: SvgPart, from: number, to: number, y: number): void {
-  const [low, high, top] = [from, to, y - WHISKER / 2].map(rounded);
-  part.add('path', {
-    'class': 'whisker',
-    'd': `M${low} ${rounded(y)}H${high}M${low} ${top}v${WHISKER}M${high} ${top}v${WHISKER}`,
-    'fill': 'none',
-    'stroke': INK,
-    'stroke-width': 0.2,
   });
 }

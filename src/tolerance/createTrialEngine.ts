@@ -15,6 +15,7 @@ import { randomStream } from '../random/RandomStream.js';
 import { STREAMS } from '../random/streams.js';
 import { simulate } from '../simulate/simulate.js';
 import { createErrorDraw } from './createErrorDraw.js';
+import { createTrialRetuner } from './createTrialRetuner.js';
 import { FAST_FIGURES, fastFigure } from './fastFigures.js';
 import { createQuantiser } from './quantise.js';
 import { reserveTrialMemory, writeTarget } from './trialMemory.js';
@@ -45,6 +46,8 @@ export interface TrialEngine {
    * @returns how many coupling ratios were clamped to [0, 1]
    */
   run(first: number, count: number, rows: Float64Array): number;
+  /** How many trials of the last run had their refinement ended by the clock. */
+  readonly outOfTime: () => number;
   /** The chip of one trial (index from 0), in full. */
   sample(trial: number): SampledChip;
 }
@@ -77,11 +80,13 @@ export function createTrialEngine(plan: TrialPlan, instance: KernelInstance = lo
   const fast = figures.every(
     (key) => FAST_FIGURES.has(key) && (key !== 'portPhaseFreeFidelity' || free === 'output'),
   );
+  const retuner = retune === 'mesh' || retune === 'refine' ? createTrialRetuner(plan) : null;
   const shifterAmplitudes = portAmplitudes(chip, atOutput);
   const targets: ComplexMatrix[] = [];
   const factors: Decomposition[] = [];
   /** Arms, external and port factors of phases that were programmed once; errors are put onto copies. */
   let programmedOnce: readonly Float64Array[] | null = null;
+  let outOfTime = 0;
 
   for (const lane of ALL_LANES) if (plan.target !== 'haar') setTarget(lane, plan.target);
   if (plan.target !== 'haar' && retune === 'none') {
@@ -102,15 +107,23 @@ export function createTrialEngine(plan: TrialPlan, instance: KernelInstance = lo
     writeSettings(views, chip, lane, quantise(settings));
   }
 
-  /** Puts phases into both lanes: those programmed once, or new ones for these splitters or targets. */
-  function setPhases(): void {
+  /** The same by the retunings that look at the whole mesh. */
+  function retuneLane(lane: Lane, retuned: NonNullable<typeof retuner>): void {
+    const found = retuned(sampledChip(lane), targets[lane]!, factors[lane]!);
+    if (found.outOfTime) outOfTime++;
+    writeSettings(views, chip, lane, quantise(found.settings));
+  }
+
+  /** Puts phases into the lanes: those programmed once, or new ones for these splitters or targets. */
+  function setPhases(lanes: readonly Lane[]): void {
     if (programmedOnce) {
       if (errors.phaseSigma > 0) views.phases.forEach((view, k) => view.set(programmedOnce[k]!));
     } else if (solvedByKernel) {
       solveByKernel();
     } else {
-      for (const lane of ALL_LANES) {
-        programLane(lane, retune === 'none' ? chip.couplingRatios : ratiosOfLane(lane));
+      for (const lane of lanes) {
+        if (retuner) retuneLane(lane, retuner);
+        else programLane(lane, retune === 'none' ? chip.couplingRatios : ratiosOfLane(lane));
       }
     }
   }
@@ -139,15 +152,18 @@ export function createTrialEngine(plan: TrialPlan, instance: KernelInstance = lo
     for (let k = 0; k < ports.length; k++) ports[k] = shifterAmplitudes[k >> 2]! * views.carried[k]!;
   }
 
-  /** Prepares two trials up to the coefficients of their cells. */
-  function prepare(first: number): void {
+  /**
+   * Prepares two trials up to the coefficients of their cells.
+   * @param lanes those whose phases are wanted; to find the others' may be left out
+   */
+  function prepare(first: number, lanes: readonly Lane[]): void {
     if (plan.target === 'haar') {
       for (const lane of ALL_LANES) {
         setTarget(lane, haarFromStream(modes, randomStream(plan.seed, STREAMS.trialTarget, first + lane)));
       }
     }
     draw.drawRatios(first);
-    setPhases();
+    setPhases(lanes);
     draw.addPhaseErrors(first);
   }
 
@@ -155,13 +171,17 @@ export function createTrialEngine(plan: TrialPlan, instance: KernelInstance = lo
     return Float64Array.from({ length: splitterCount(chip) }, (_, k) => views.ratios[2 * k + lane]!);
   }
 
-  function sampleLane(lane: Lane): SampledChip {
+  function sampledChip(lane: Lane): Chip {
     const cellLoss =
       errors.lossSigmaDb > 0
         ? Float64Array.from({ length: cells }, (_, k) => views.gain[2 * k + lane]!)
         : chip.cellLoss;
+    return { ...chip, couplingRatios: ratiosOfLane(lane), cellLoss };
+  }
+
+  function sampleLane(lane: Lane): SampledChip {
     return {
-      chip: { ...chip, couplingRatios: ratiosOfLane(lane), cellLoss },
+      chip: sampledChip(lane),
       settings: readSettings(views, chip, lane),
       target: targets[lane]!,
     };
@@ -199,11 +219,12 @@ export function createTrialEngine(plan: TrialPlan, instance: KernelInstance = lo
   return {
     run: (first, count, rows) => {
       views.clampedCounts.fill(0);
+      outOfTime = 0;
       for (let done = 0; done < count; done += 2) {
         // Both lanes are always at work; what the second one does behind the last trial is dropped, clamped
         // ratios included.
         const clampedBefore = views.clampedCounts[2]!;
-        prepare(first + done);
+        prepare(first + done, done + 1 === count ? [0] : ALL_LANES);
         if (done + 1 === count) views.clampedCounts[2] = clampedBefore;
         if (fast) {
           kernels.composeCells(
@@ -229,8 +250,9 @@ export function createTrialEngine(plan: TrialPlan, instance: KernelInstance = lo
       }
       return views.clampedCounts[0]! + views.clampedCounts[2]!;
     },
+    outOfTime: () => outOfTime,
     sample: (trial) => {
-      prepare(trial);
+      prepare(trial, [0]);
       return sampleLane(0);
     },
   };

@@ -8,6 +8,8 @@ export interface TrialResults {
   readonly rows: Float64Array;
   /** Coupling ratios that were clamped to [0, 1]. */
   readonly clamped: number;
+  /** Trials whose refinement was ended by the clock. */
+  readonly outOfTime: number;
 }
 
 /** How trials are run. */
@@ -19,7 +21,7 @@ export interface RunTrialsOptions {
 
 /**
  * Runs the first `trials` trials of a plan in this thread. The rows are the same bits as with any number of
- * workers.
+ * workers, unless a refinement runs into a limit of time.
  * @throws the signal's reason when it is aborted
  */
 export async function runTrials(
@@ -32,13 +34,15 @@ export async function runTrials(
   const rows = new Float64Array(trials * columns);
   const size = chunkTrials(plan);
   let clamped = 0;
+  let outOfTime = 0;
   for (let first = 0; first < trials; first += size) {
     signal?.throwIfAborted();
     const count = Math.min(size, trials - first);
     clamped += engine.run(first, count, rows.subarray(first * columns, (first + count) * columns));
+    outOfTime += engine.outOfTime();
     onProgress?.(first + count);
     // Lets timers and signals in.
     await new Promise((resolve) => setTimeout(resolve, 0));
   }
-  return { rows, clamped };
+  return { rows, clamped, outOfTime };
 }

@@ -33,6 +33,7 @@ export function infidelityTheory(
   const { chip, errors, retune, target } = plan;
   // Without port shifters the fidelity is a matter of chance.
   if (infidelityWithoutErrors === null || !chip.portShifters) return null;
+  if (retune === 'mesh' || retune === 'refine') return null;
   const others = errors.bias !== 0 || errors.biasSigma > 0 || errors.phaseSigma > 0 || errors.bits > 0;
   const correlated = errors.pairCorrelation !== 0 || errors.correlationLength > 0;
   if (others || correlated || errors.lossSigmaDb > 0 || !(errors.sigma > 0 || errors.sigmaAngle > 0))

@@ -8,7 +8,8 @@ import { idealChip } from '../../src/chip/idealChip.js';
 import { runPlans } from '../../src/cli/runPlans.js';
 import { haarUnitary } from '../../src/matrix/haar.js';
 import { createTrialEngine } from '../../src/tolerance/createTrialEngine.js';
-import type { Retuning, TrialPlan } from '../../src/tolerance/TrialPlan.js';
+import type { Retuning } from '../../src/program/retunings.js';
+import type { TrialPlan } from '../../src/tolerance/TrialPlan.js';
 import type { Yardstick } from './measuring.js';
 import { machineLine, medianOf, processorMicroseconds, startYardstick } from './measuring.js';
 
@@ -133,7 +134,7 @@ async function runWorkers(plan: TrialPlan, trials: number, workers: number): Pro
     marks.push({ at: performance.now(), used: processorMicroseconds(), trials: results.trials });
     return false;
   };
-  await runPlans({ plans: [plan], trials, workers, enough });
+  await runPlans({ plans: [plan], trials: [trials], workers, enough });
   const from = marks[marks.length >> 2]!;
   const to = marks.at(-1)!;
   const done = to.trials - from.trials;

@@ -2,6 +2,8 @@ import { describe, expect, it } from 'vitest';
 import { InputError } from '../../src/errors/InputError.js';
 import type { BudgetRow } from '../../src/figure/drawBudget.js';
 import { drawBudget } from '../../src/figure/drawBudget.js';
+import type { ComparisonGroup } from '../../src/figure/drawComparison.js';
+import { drawComparison } from '../../src/figure/drawComparison.js';
 import type { CumulativeCurveOptions } from '../../src/figure/drawCumulativeCurve.js';
 import { drawCumulativeCurve } from '../../src/figure/drawCumulativeCurve.js';
 import { drawHistogram } from '../../src/figure/drawHistogram.js';
@@ -114,6 +116,31 @@ const CORRELATED_ROWS: readonly BudgetRow[] = [
   })),
 ];
 
+const compared = (label: string, mean: number, passed: number): ComparisonGroup['rows'][number] => ({
+  label,
+  error: estimate(mean),
+  passed,
+  trials: 1000,
+});
+const GROUPS: readonly ComparisonGroup[] = [
+  {
+    label: 'rectangular, 2 splitters a cell',
+    facts: '8 columns, 56 splitters, 64 shifters, 0.84 dB of loss',
+    rows: [compared('none', 0.0125, 247), compared('cell', 4.8e-5, 999), compared('refine', 1.2e-5, 1000)],
+  },
+  { label: 'triangular', rows: [compared('none', 0.013, 0), compared(LONG, 3e-9, 1000)] },
+  {
+    label: LONG,
+    facts: LONG,
+    rows: [
+      compared('perfect', -1e-16, 1000),
+      { label: 'one chip', error: { mean: 1e-4, standardError: null }, passed: 1, trials: 1 },
+      // Its interval goes below 0, where a logarithmic axis has no place.
+      { label: 'few chips', error: { mean: 1e-5, standardError: 2e-5 }, passed: 1, trials: 2 },
+    ],
+  },
+];
+
 /** No text leaves the page, overlaps another or is smaller than 6 pt. */
 function expectLegible(svg: string, what: string): XmlElement {
   const root = readXml(svg);
@@ -213,6 +240,44 @@ describe('curve figures are legible', () => {
         }
       }
     }
+  });
+});
+
+describe('a comparison', () => {
+  it('is legible, whatever its width', () => {
+    for (const groups of [GROUPS, GROUPS.slice(0, 1), GROUPS.slice(1, 2), GROUPS.slice(2)]) {
+      for (const width of [30, 40, 60, 'one-column', 'two-column'] as const) {
+        const options = { width, title: LONG, captionLines: [LONG], shareLabel: LONG, notes: [LONG] };
+        expectLegible(drawComparison(groups, options), `${groups.length} ${width}`);
+      }
+    }
+    const perfect = [{ label: 'ideal', rows: [compared('cell', 0, 1000)] }];
+    const root = expectLegible(drawComparison(perfect), 'perfect');
+    expect(ofClass(root, 'bar')).toHaveLength(0);
+    expect(textsOf(root, 'row-1')).toEqual(['cell', '100 %', '< 10⁻¹²']);
+  });
+
+  it('has dots where the means are, whiskers over their intervals, and the shares in figures', () => {
+    const root = readXml(drawComparison(GROUPS.slice(0, 1), { confidence: 0.95, width: 'two-column' }));
+    const toValue = horizontalScale(root, true);
+    GROUPS[0]!.rows.forEach(({ label, error, passed }, k) => {
+      const row = byId(root, `row-${k + 1}`);
+      const [dot] = ofClass(row, 'bar');
+      expect(toValue(numberOf(dot!, 'cx')) / error.mean).toBeCloseTo(1, 3);
+      const [, from, to] = /^M(\S+) \S+H(\S+?)M/.exec(ofClass(row, 'whisker')[0]!.attributes.get('d')!)!;
+      // 1.959964 standard errors on either side (normal quantile at 0.975).
+      expect(toValue(Number(from)) / (error.mean - 1.959964 * error.standardError!)).toBeCloseTo(1, 3);
+      expect(toValue(Number(to)) / (error.mean + 1.959964 * error.standardError!)).toBeCloseTo(1, 3);
+      const texts = named(row, 'text').map(({ text }) => text);
+      expect(texts.slice(0, 2)).toEqual([label, `${passed / 10} %`]);
+    });
+  });
+
+  it('refuses nothing, and numbers that are none', () => {
+    expect(() => drawComparison([])).toThrow(RangeError);
+    expect(() => drawComparison([{ label: 'a', rows: [compared('b', NaN, 1)] }])).toThrow(RangeError);
+    expect(() => drawComparison(GROUPS, { confidence: 1 })).toThrow(RangeError);
+    expect(() => drawComparison(GROUPS, { width: 20 })).toThrow(InputError);
   });
 });
 
