@@ -8,7 +8,8 @@
  *   (Bandyopadhyay, Hamerly, Englund, Optica 8, 1247 (2021)).
  * - `mesh`: what a cell cannot do is passed on in the nulling, and later cells make good what they can of it
  *   (after Hamerly, Bandyopadhyay, Englund, Phys. Rev. Applied 18, 024018 (2022), from memory).
- * - `refine`: from there on all phases together are moved to where a figure of merit has its best value nearby.
+ * - `refine`: from there on all phases together are moved to where a figure of merit has its best value
+ *   nearby.
  */
 export const RETUNINGS = ['none', 'cell', 'mesh', 'refine'] as const;
 /** A way to find the phases of a chip. */

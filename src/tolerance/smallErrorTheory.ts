@@ -169,9 +169,9 @@ export function toleranceTheory(
 const FLAWLESS = 1e-9;
 
 /**
- * The same for the number of ports N, not rounded: L grows as N - 1, and the scatter falls as 1/N, so that u (N -
- * 1) (1 + z 2.2/N) = 1 - limit, u the mean infidelity by the port and z the quantile. Null for chips that are
- * not flawless themselves, or not alike in all splitters.
+ * The same for the number of ports N, not rounded: L grows as N - 1, and the scatter falls as 1/N, so that u
+ * (N - 1) (1 + z 2.2/N) = 1 - limit, u the mean infidelity by the port and z the quantile. Null for chips
+ * that are not flawless themselves, or not alike in all splitters.
  * @param plan of chips with any number of ports from 2 on
  */
 export function portsTheory(
