@@ -240,8 +240,8 @@ function usualTrials(plan: TrialPlan): number {
 const OWN_FIELDS = ['measuredCells', 'shifterOverrides'] as const satisfies readonly (keyof ChipFile)[];
 
 /**
- * The chip in every layout and with every kind of cell. What the file says of single cells and shifters holds for no
- * chip but its own, and is left out of all unless only that one is wanted.
+ * The chip in every layout and with every kind of cell. What the file says of single cells and shifters holds
+ * for no chip but its own, and is left out of all unless only that one is wanted.
  */
 async function chipsToCompare(
   { readChip: { file, chip: own } }: Scenario,
@@ -272,8 +272,8 @@ interface Found {
 }
 
 /**
- * What a retuning wins over another one on the same chips: as these have the same errors, that is known better than
- * either.
+ * What a retuning wins over another one on the same chips: as these have the same errors, that is known
+ * better than either.
  */
 function gainOver(before: Found | undefined, { entry, results }: Found, columns: number): Pick<Row, 'gain'> {
   if (before?.entry.chip !== entry.chip) return {};
@@ -492,7 +492,7 @@ function compareTable(rows: readonly Row[], shown: ShownError): string {
         standardError === null ? '' : standardError.toExponential(1),
         percent(row.yield),
         ...[row.trials, row.columns, row.splitterCount, row.shifterCount].map(String),
-        shortNumber(Math.max(0, -row.transmissionDb)),
+        shownLoss(row.transmissionDb),
       ];
     }),
   );

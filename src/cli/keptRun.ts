@@ -74,8 +74,9 @@ function shortHash(hash = ''): string {
 }
 
 /**
- * Opens the store of a run, lets it work, and closes the store: the chunks go when the results are written, and
- * stay for a resume otherwise. A run that is resumed although its results are there has nothing left to do.
+ * Opens the store of a run, lets it work, and closes the store: the chunks go when the results are written,
+ * and stay for a resume otherwise. A run that is resumed although its results are there has nothing left to
+ * do.
  * @param work true when the results are written, false after an interrupt
  * @returns the exit code: 0, or 130 after an interrupt
  * @throws InputError when other results or another run's chunks are in the way, and what `work` throws

@@ -166,7 +166,7 @@ async function programsOf(
     ...(options.refineSeconds === undefined ? {} : { mostSeconds: options.refineSeconds }),
     ...(options.refineIterations === undefined ? {} : { mostIterations: options.refineIterations }),
   });
-  const settings = calmer(chip, target, refinement.settings, refined);
+  const settings = calmer(chip, target, refinement, refined);
   return { settings, outOfRange: [], outOfReach, margins, lesser, refinement, refined };
 }
 
@@ -177,13 +177,17 @@ const SAME_FIGURE = 1e-12;
 function calmer(
   chip: Chip,
   target: ComplexMatrix,
-  settings: Settings,
+  { settings, figureBefore }: RefinedSettings,
   description: CostDescription,
 ): Settings {
   const cost = createCost(target, description);
   const figureOf = (one: Settings): number => cost.figure(takeColumns(simulate(chip, one), cost.inputs));
   const principal = principalSettings(chip, settings);
-  return Math.abs(figureOf(principal) - figureOf(settings)) <= SAME_FIGURE ? principal : settings;
+  const figure = figureOf(principal);
+  const isSame = Math.abs(figure - figureOf(settings)) <= SAME_FIGURE;
+  // What a refinement began with is never given up, not even by a rounding.
+  const isWorse = description.figure === 'powerDistance' ? figure > figureBefore : figure < figureBefore;
+  return isSame && !isWorse ? principal : settings;
 }
 
 /** What is refined: the figure asked for, on the chip's ports that stand for those chosen of the target. */

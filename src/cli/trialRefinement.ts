@@ -11,8 +11,8 @@ import type { PlanResults } from './runPlans.js';
 import type { SamplingOptions, TrialOptions } from './trialOptions.js';
 
 /**
- * How trials are refined: for the first threshold, within the iterations and the time of the options. Empty for other
- * retunings.
+ * How trials are refined: for the first threshold, within the iterations and the time of the options. Empty
+ * for other retunings.
  * @throws InputError `usage/refine` for limits of a refinement where there is none
  */
 export function refinementOf(

@@ -141,8 +141,8 @@ const HAAR_TRIED = 8;
 const FLAWLESS = 1e-9;
 
 /**
- * 1 - F of the chip as it stands, without errors. For Haar-random targets 0 on a chip without flaws, and null on any other one, where it
- * is different from target to target.
+ * 1 - F of the chip as it stands, without errors. For Haar-random targets 0 on a chip without flaws, and null
+ * on any other one, where it is different from target to target.
  */
 export function infidelityWithoutErrors({ readChip: { chip }, target }: Scenario): number | null {
   const infidelity = (matrix: ComplexMatrix): number => {

@@ -62,10 +62,11 @@ const LEAST_AXIS = 22;
 const EMPTY_AXIS = [1e-3, 1] as const;
 
 /**
- * How well chips do in several layouts, with several kinds of cells and ways to set them, as the text of an SVG
- * document: a row each with the mean error on a logarithmic axis, its interval, and the share of good chips. Rows
- * stand in the order given.
- * @throws RangeError for no rows, means that are not finite, or a confidence outside (0, 1); InputError `figure/width`
+ * How well chips do in several layouts, with several kinds of cells and ways to set them, as the text of an
+ * SVG document: a row each with the mean error on a logarithmic axis, its interval, and the share of good
+ * chips. Rows stand in the order given.
+ * @throws RangeError for no rows, means that are not finite, or a confidence outside (0, 1); InputError
+ * `figure/width`
  */
 export function drawComparison(groups: readonly ComparisonGroup[], options: ComparisonOptions = {}): string {
   const { label = 'mean infidelity 1 − F', shareLabel = 'yield', confidence = 0.95, notes = [] } = options;

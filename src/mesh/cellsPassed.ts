@@ -1,8 +1,9 @@
 import type { Mesh } from './Mesh.js';
 
 /**
- * How many cells light can meet on its way through a mesh, over all ways from any input to any output: the fewest and
- * the most. A rectangle of N ports has N at most, a triangle 2N - 3; there some light meets a single cell.
+ * How many cells light can meet on its way through a mesh, over all ways from any input to any output: the
+ * fewest and the most. A rectangle of N ports has N at most, a triangle 2N - 3; there some light meets a
+ * single cell.
  */
 export function cellsPassed({ modes, cells, upperPortIndex }: Mesh): {
   readonly fewest: number;

@@ -10,8 +10,8 @@ export interface TrialRefinement {
   readonly figure: CostFigure;
   readonly mostIterations: number;
   /**
-   * Time for each trial in seconds; no limit when absent. With a limit the results depend on the machine wherever
-   * a trial runs into it.
+   * Time for each trial in seconds; no limit when absent. With a limit the results depend on the machine
+   * wherever a trial runs into it.
    */
   readonly mostSeconds?: number;
 }
@@ -23,11 +23,12 @@ export interface TrialPlan {
   readonly target: ComplexMatrix | 'haar';
   readonly errors: ProcessErrors;
   /**
-   * How each sampled chip is programmed. With `none` once, for the chip file as it stands; else each with its own
-   * ratios and losses, as if they had been measured. Errors and resolution of the phases come on top of that.
+   * How each sampled chip is programmed. With `none` once, for the chip file as it stands; else each with its
+   * own ratios and losses, as if they had been measured. Errors and resolution of the phases come on top of
+   * that.
    */
   readonly retune: Retuning;
-  /** For the retuning `refine`; by default the figure that `refinedFigure` names and {@link USUAL_ITERATIONS}. */
+  /** For `refine`; by default the figure that `refinedFigure` names and {@link USUAL_ITERATIONS}. */
   readonly refine?: TrialRefinement;
   /** Whole number from 0 to 2^53 - 1. */
   readonly seed: number;
@@ -36,7 +37,8 @@ export interface TrialPlan {
 }
 
 /**
- * Iterations of a trial's refinement when nothing else is asked for. With Haar targets and sigma 0.03, 200 leave
- * what any number would at N = 8, a sixth more than 1000 at N = 16, and some 40 % more than 400 at N = 32 (measured).
+ * Iterations of a trial's refinement when nothing else is asked for. With Haar targets and sigma 0.03, 200
+ * leave what any number would at N = 8, a sixth more than 1000 at N = 16, and some 40 % more than 400 at
+ * N = 32 (measured on a few chips).
  */
 export const USUAL_ITERATIONS = 200;

@@ -2,8 +2,8 @@ import type { TrialPlan } from './TrialPlan.js';
 import { USUAL_ITERATIONS } from './TrialPlan.js';
 
 /**
- * Rough cost of a trial in microseconds, for the size of chunks and usual numbers of trials only: two terms, cells
- * and their propagation; of a refinement what all its iterations take.
+ * Rough cost of a trial in microseconds, for the size of chunks and usual numbers of trials only: two terms,
+ * cells and their propagation; of a refinement what all its iterations take.
  */
 export function trialCost({ chip, target, retune, refine }: TrialPlan): number {
   const { modes } = chip.mesh;

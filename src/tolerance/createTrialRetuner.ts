@@ -21,9 +21,9 @@ export interface RetunedTrial {
 }
 
 /**
- * The figure of merit that trials are refined for: what is judged first, where a refinement can be for it, else
- * the fidelity; on chips without port shifters the port-phase-free one in its place, since they cannot set what
- * that leaves out.
+ * The figure of merit that trials are refined for: what is judged first, where a refinement can be for it,
+ * else the fidelity; on chips without port shifters the port-phase-free one in its place, since they cannot
+ * set what that leaves out.
  */
 export function refinedFigure(chip: Chip, judgedFirst: keyof Merit): CostFigure {
   const figure = COST_FIGURES.find((known) => known === judgedFirst) ?? 'fidelity';

@@ -217,7 +217,7 @@ describe.concurrent('compare', () => {
 
 describe('compare, the same bytes', () => {
   const FEW_ROWS = ['--retunes', 'mesh,refine', '--layouts', 'triangular', ...TWO_SPLITTERS];
-  const LONG = ['compare', 'haar(12)', '--sigma', '0.05', '--trials', '48', ...FEW_ROWS, '--out', 'r'];
+  const LONG = ['compare', 'haar(12)', '--sigma', '0.05', '--trials', '160', ...FEW_ROWS, '--out', 'r'];
 
   it('for 1 and 2 workers, and after Ctrl-C, which leaves the rows so far, and a resume', async () => {
     const whole = await Promise.all(
@@ -232,12 +232,12 @@ describe('compare, the same bytes', () => {
     const results = join(folder, 'r');
     const stopped = await stopCommand(LONG, folder, 'SIGINT', () => chunksIn(results) >= 3);
     expect(stopped.code).toBe(130);
-    expect(stopped.stderr).toMatch(/interrupted after \d+ of 96 trials; go on with --resume/);
+    expect(stopped.stderr).toMatch(/interrupted after \d+ of 320 trials; go on with --resume/);
     const part = reportOf(await readFile(join(results, 'report.json'), 'utf8'));
     expect(part.interrupted).toBe(true);
     const done = part.rows.reduce((sum, { trials }) => sum + trials, 0);
     expect(done).toBeGreaterThan(0);
-    expect(done).toBeLessThan(96);
+    expect(done).toBeLessThan(320);
     const resumed = await runCommand([...LONG, '--resume', '--quiet'], { folder });
     expect([resumed.code, resumed.stderr]).toEqual([0, '']);
     expect(await resultsIn(results)).toEqual(whole[0]);

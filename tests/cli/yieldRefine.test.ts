@@ -62,7 +62,8 @@ describe.concurrent('yield with chips retuned through the mesh and refined', () 
       ...refine,
     );
     const costs = budget['budget'] as { source: string; alone: { infidelity: { mean: number } } }[];
-    // All cells of the Fourier transform are in reach, so that splitters cost nothing; resolution is all there is.
+    // All cells of the Fourier transform are in reach, so that splitters cost nothing; resolution is all
+    // there is.
     expect(costs.map(({ source }) => source)).toEqual(['bits', 'sigma']);
     expect(Math.abs(costs[1]!.alone.infidelity.mean)).toBeLessThan(1e-12);
     const seventh = [...BASE, ...refine, '--out', 'one'];

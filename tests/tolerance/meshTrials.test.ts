@@ -71,8 +71,8 @@ describe('trials retuned through the mesh and refined', () => {
     }
   });
 
-  // Check-values, section 2: the better of both sides leaves 0.6 to 0.7 of the error cell by cell. A refinement
-  // wins more the more phases there are to share what a cell misses.
+  // Check-values, section 2: the better of both sides leaves 0.6 to 0.7 of the error cell by cell. A
+  // refinement wins more the more phases there are to share what a cell misses.
   it('leave the share of the error that is expected of them, on 1000 chips', () => {
     const plan = planFor(8, { sigmaAngle: 0.06 }, { target: 'haar' });
     const [cell, mesh, refine] = (['cell', 'mesh', 'refine'] as const).map((retune) =>
