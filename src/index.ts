@@ -28,6 +28,7 @@ export type {
   ExternalGuide,
   InternalArm,
   PhaseRange,
+  SplitterCount,
   SplitterForm,
 } from './chip/Chip.js';
 export { externalAtOutput } from './chip/Chip.js';
@@ -38,13 +39,15 @@ export { chipFromDocument, readChip } from './chip/readChip.js';
 export { resolveChip } from './chip/resolveChip.js';
 export type { IdealChipOptions } from './chip/idealChip.js';
 export { idealChip } from './chip/idealChip.js';
-export type { Reach } from './chip/reach.js';
-export { cellReach } from './chip/reach.js';
+export type { CellRatios } from './chip/cellSplitters.js';
+export { ratiosOfCell, splitterCount } from './chip/cellSplitters.js';
+export type { MissedStates, Reach } from './chip/reach.js';
+export { cellReach, missedStates } from './chip/reach.js';
+export type { BesideFactors, MeshReach } from './chip/MeshReach.js';
 export type { StuckShifter } from './chip/stuckShifters.js';
 export { stuckShifters, withoutStuckShifters } from './chip/stuckShifters.js';
-export type { MeshReach } from './chip/MeshReach.js';
 export { meshReach } from './chip/MeshReach.js';
-export { reachOfChip } from './chip/reachOfChip.js';
+export { besideFactors, reachOfChip } from './chip/reachOfChip.js';
 export type { Settings } from './chip/Settings.js';
 export type { Shifter, ShifterRole } from './chip/shifters.js';
 export { listShifters, phaseOf, phasesInOrder, settingsFromPhases, shifterCount } from './chip/shifters.js';

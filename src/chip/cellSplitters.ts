@@ -23,7 +23,10 @@ export interface SplitterPlaces {
   readonly outer: 0 | 2 | null;
 }
 
-/** The places for a style: outer, first, second for an external phase at the input, else first, second, outer. */
+/**
+ * The places for a style: outer, first, second for an external phase at the input; first, second, outer for
+ * one at the output.
+ */
 export function splitterPlaces(style: CellStyle): SplitterPlaces {
   if (style.splitters === 2) return { perCell: 2, first: 0, outer: null };
   return externalAtOutput(style) ? { perCell: 3, first: 0, outer: 2 } : { perCell: 3, first: 1, outer: 0 };

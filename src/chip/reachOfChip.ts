@@ -7,8 +7,8 @@ import { cosineOfSum, sineOfDifference } from './reach.js';
 import { shifterIndicesOfCell } from './shifters.js';
 
 /**
- * What each cell of a chip can attain with the two splitters around its arms and within the range of its internal phase: with
- * q = sin^2(theta/2), cos^2(theta/2) for real splitters,
+ * What each cell of a chip can attain with the two splitters around its arms and within the range of its
+ * internal phase: with q = sin^2(theta/2), cos^2(theta/2) for real splitters,
  *
  *     |W11|^2 = cos^2(a+b) + q sin 2a sin 2b,    |W12|^2 = sin^2(a-b) + (1 - q) sin 2a sin 2b
  *
@@ -36,10 +36,10 @@ export function reachOfChip(chip: Chip): MeshReach {
 }
 
 /**
- * What stands beside the factor of each cell of three splitters where its reach is judged: diag(e^{i d}) S(c)^dag
- * on its right, or S(c)^dag diag(e^{i d}) on its left for an external phase at the output.
- * @param carriedIn the phases e^{i d} that each cell meets in the carrying sweep, 4 numbers a cell: upper re, im,
- * lower
+ * What stands beside the factor of each cell of three splitters where its reach is judged: diag(e^{i d})
+ * S(c)^dag on its right, or S(c)^dag diag(e^{i d}) on its left for an external phase at the output.
+ * @param carriedIn the phases e^{i d} that each cell meets in the carrying sweep, 4 numbers a cell: upper
+ * re, im, lower
  */
 export function besideFactors(chip: Chip, carriedIn: Float64Array): BesideFactors {
   const { mesh, style, couplingRatios } = chip;

@@ -144,7 +144,8 @@ function requireOnePerSplitter(list: readonly number[], splitters: number, field
     throw chipFault(
       field,
       `there are ${list.length} entries for a cell of ${splitters} splitters`,
-      `Give one entry for each of its ${splitters} splitters, as the light meets them; how many a cell has is said by cellStyle.splitters.`,
+      `Give one entry for each of its ${splitters} splitters, as the light meets them; ` +
+        'how many a cell has is said by cellStyle.splitters.',
     );
   }
 }

@@ -418,7 +418,7 @@ function figureOf(
   }
   const groups = [...chips.values()].map((members) => {
     const { layout, splitters, columns, splitterCount, shifterCount: shifters, transmissionDb } = members[0]!;
-    const loss = transmissionDb < 0 ? [`${(-transmissionDb).toFixed(2)} dB of loss`] : [];
+    const loss = transmissionDb < -LEAST_LOSS_DB ? [`${(-transmissionDb).toFixed(2)} dB of loss`] : [];
     const sizes = [
       counted(columns, 'column'),
       counted(splitterCount, 'splitter'),
@@ -520,3 +520,10 @@ function listOf<Word extends string>(
     return known.filter((name) => words.includes(name));
   };
 }
+
+/** A loss without what rounding leaves of none. */
+function shownLoss(transmissionDb: number): string {
+  return transmissionDb > -LEAST_LOSS_DB ? '0' : shortNumber(-transmissionDb);
+}
+
+const LEAST_LOSS_DB = 1e-9;

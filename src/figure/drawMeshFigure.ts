@@ -198,6 +198,6 @@ function describeFigure({ name, mesh, style, portShifters }: Chip): string {
   return (
     `${mesh.layout} mesh${mirror} of the chip ${name}: ${mesh.modes} ports, ${mesh.cells} cells in ${mesh.columns} columns, ` +
     `${portShifters ? 'with' : 'without'} port shifters; light travels from left to right. Cells: external phase ` +
-    `${style.external}, internal phase ${style.internal}, ${style.splitters} ${style.splitterForm} splitters. Phases in multiples of pi.`
+    `${style.external}, internal phase ${style.internal}, ${style.splitters === 3 ? 'three ' : ''}${style.splitterForm} splitters. Phases in multiples of pi.`
   );
 }

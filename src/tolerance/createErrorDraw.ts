@@ -138,8 +138,8 @@ export function createErrorDraw(
 
 /**
  * Gives any two of the three numbers of each cell the correlation r in [-1/2, 1]; the first is kept, all
- * variances stay 1. With independent x, y, z: x, r x + sqrt(1 - r^2) y and r x + r q y + w z, where q^2 = (1 - r)/(1
- * + r) and w^2 = (1 - r)(1 + 2r)/(1 + r) (the triangular root of the matrix of correlations).
+ * variances stay 1. With independent x, y, z: x, r x + sqrt(1 - r^2) y and r x + r q y + w z, where
+ * q^2 = (1 - r)/(1 + r) and w^2 = (1 - r)(1 + 2r)/(1 + r) (the triangular root of the matrix of correlations).
  */
 function correlateTriples(numbers: Float64Array, cells: number, correlation: number): void {
   const fresh = Math.sqrt(1 - correlation * correlation);

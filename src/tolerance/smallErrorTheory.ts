@@ -64,8 +64,8 @@ export function infidelityTheory(
 }
 
 /**
- * What the correction cell by cell leaves of a Haar target, in units of s^4: for two splitters 2/3 (N^2 - 1) + 4 (N
- * - 1)/N, which grows with the mesh; for three (8/N) sum over k of (N - k) k 2^(1 - k), which does not: at
+ * What the correction cell by cell leaves of a Haar target, in units of s^4: for two splitters 2/3 (N^2 - 1) +
+ * 4 (N - 1)/N, which grows with the mesh; for three (8/N) sum over k of (N - k) k 2^(1 - k), which does not: at
  * most 32 (check-values, section 2; Hamerly, Bandyopadhyay, Englund, Nat. Commun. 13, 6831 (2022)).
  */
 function correctedShare(modes: number, splitters: SplitterCount): number {

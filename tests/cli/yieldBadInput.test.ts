@@ -102,6 +102,12 @@ const FAULTS: readonly Fault[] = [
     says: /measuredCells/,
     mends: /take bias instead/,
   },
+  {
+    args: [...DFT, '--chip', 'c.chip.json', '--sigma', '0.01', '--error', 'pairCorrelation=-0.6'],
+    files: { 'c.chip.json': '{"modes": 3, "cellStyle": {"splitters": 3}}' },
+    says: /pairCorrelation is -0\.6, and cells of three splitters allow -0\.5 or more/,
+    mends: /from -0\.5 to 1/,
+  },
   option(
     ['tolerance', 'dft(3)', '--source', 'correlationLength'],
     /nothing to correlate/,

@@ -33,7 +33,8 @@ const WAYS = 128;
  * In a cell of three splitters the external phase stands between two of them: it and the third one are taken
  * into the ways through the cell.
  *
- * ratios: 16 bytes a splitter, the coupling ratios, a cell's `splitters` (2 or 3) as the light meets them. arms: 4 x 16 bytes a cell. external: 2 x 16 bytes a cell.
+ * ratios: 16 bytes a splitter, the coupling ratios, a cell's `splitters` (2 or 3) as the light meets
+ * them. arms: 4 x 16 bytes a cell. external: 2 x 16 bytes a cell.
  * gain: 16 bytes a cell, the amplitude factor of its splitters' losses. input: 2 x 16 bytes a port, the fields'
  * factors at the inputs; factors: written, those at the outputs. ways: room for BLOCK cells. place: 0 upper
  * input, 1 lower input, 2 upper output, 3 lower output.
@@ -134,7 +135,7 @@ function passExternal(ways: usize, external: usize, place: i32): void {
   turn(ways + first + (place < UPPER_OUTPUT ? 64 : 32), er, ei);
 }
 
-/** Multiplies the third splitter into the ways through the cell: from the right, or from the left at the output. */
+/** Multiplies the third splitter into the ways through the cell, from the right, or at the output from the left. */
 function passOuterSplitter(ways: usize, ratio: usize, atOutput: bool, realSplitters: i32): void {
   const c = root(subtract(both(1.0), v128.load(ratio)));
   const s = root(v128.load(ratio));
