@@ -135,7 +135,7 @@ function passExternal(ways: usize, external: usize, place: i32): void {
   turn(ways + first + (place < UPPER_OUTPUT ? 64 : 32), er, ei);
 }
 
-/** Multiplies the third splitter into the ways through the cell, from the right, or at the output from the left. */
+/** Multiplies the third splitter into the ways through the cell: on the right, or on the left at the output. */
 function passOuterSplitter(ways: usize, ratio: usize, atOutput: bool, realSplitters: i32): void {
   const c = root(subtract(both(1.0), v128.load(ratio)));
   const s = root(v128.load(ratio));
