@@ -7,6 +7,12 @@ export interface StuckShifter {
   readonly phaseRad: number;
 }
 
+/** Whether a shifter (index from 0) stays at one phase: its own range is a single one. */
+export function isStuck({ shifterRanges }: Chip, shifterIndex: number): boolean {
+  const range = shifterRanges.get(shifterIndex);
+  return range !== undefined && range[0] === range[1];
+}
+
 /** The shifters of a chip whose own range is a single phase, in the phase table's order. */
 export function stuckShifters(chip: Chip): StuckShifter[] {
   return Array.from(chip.shifterRanges)

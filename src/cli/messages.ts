@@ -1,4 +1,5 @@
 import type { Chip } from '../chip/Chip.js';
+import { stuckShifters } from '../chip/stuckShifters.js';
 import type { AngleUnit } from '../units/angle.js';
 import { angleIn } from '../units/angle.js';
 import type { OutOfRange, OutOfReach } from '../program/carryingSweep.js';
@@ -82,7 +83,7 @@ export function shortNumber(value: number): string {
  * @param beyondPi whether an internal phase is beyond pi, as a search may leave it
  */
 export function cautions(chip: Chip, beyondPi = false): string[] {
-  const limits = chip.shifterRange ?? (chip.shifterRanges.size > 0 ? 'own' : null);
+  const limits = chip.shifterRange ?? (chip.shifterRanges.size > stuckShifters(chip).length ? 'own' : null);
   const assumed =
     limits === null
       ? `No shifter limits are given in the chip file; phases are in [0, 2 pi)${internalPhases(chip, beyondPi)}.`

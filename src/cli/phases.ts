@@ -56,8 +56,19 @@ import {
   shownMerit,
 } from './reportParts.js';
 import type { RetuneOptions } from './retuneOptions.js';
-import { addRetuneOptions, requireSensibleRetuning, settledRetuneOptions } from './retuneOptions.js';
-import { assignmentText, reassignmentBlock, retuningBlocks, retuningText } from './retuneReport.js';
+import {
+  addRetuneOptions,
+  onChipPorts,
+  requireSensibleRetuning,
+  settledRetuneOptions,
+} from './retuneOptions.js';
+import {
+  assignmentText,
+  reassignmentBlock,
+  refinementCaption,
+  retuningBlocks,
+  retuningText,
+} from './retuneReport.js';
 import type { ReassignedTarget, RetunedTarget, SearchControl } from './retuneTarget.js';
 import { reassignTarget, retuneTarget } from './retuneTarget.js';
 import type { MeshShade } from './shadeOption.js';
@@ -168,9 +179,10 @@ interface Run {
 async function programOne(
   { chip }: ReadChip,
   target: LoadedTarget,
-  options: PhasesOptions,
+  asked: PhasesOptions,
   control: SearchControl,
 ): Promise<Programmed> {
+  const options = onChipPorts(asked);
   const reassigned = reassignTarget(chip, target.matrix, options, control.signal);
   const { matrix, assignment } = reassigned;
   const found = await retuneTarget(chip, matrix, assignment, options, control);
@@ -191,7 +203,7 @@ async function reportOne(run: Run): Promise<number> {
   const files = new Map<string, string>(tableFiles(run, one, ''));
   if (chip.mesh.modes <= LARGEST_FIGURE) {
     const { drawMeshFigure } = await import('../figure/drawMeshFigure.js');
-    const caption = captionLines(chip, target.source, merit);
+    const caption = refinementCaption(one, captionLines(chip, target.source, merit));
     files.set(
       'mesh.svg',
       drawMeshFigure(chip, settings, {
@@ -257,7 +269,8 @@ function showOne({ console, options, readChip }: Run, one: Programmed): void {
         : '\nno port shifters: the port-phase-free fidelity is what detectors of power see',
     );
   }
-  for (const paragraph of retuningText(one, one.reassigned, options.unit)) console.result(`\n${paragraph}`);
+  for (const paragraph of retuningText(chip, one, one.reassigned, options.unit))
+    console.result(`\n${paragraph}`);
   console.result(`\n${shownRows(readChip, rows, options.unit)}`);
 }
 

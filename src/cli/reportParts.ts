@@ -82,11 +82,18 @@ export const MERIT_NAMES: Readonly<Record<keyof Merit, string>> = {
 export function meritLines(merit: Merit, uncorrected: Merit | null = null): string {
   const lines = MERIT_KEYS.map((key) => {
     const name = MERIT_NAMES[key].padEnd(26);
-    const value = shownMerit(merit[key]);
-    return uncorrected ? `${name}${value.padEnd(16)}${shownMerit(uncorrected[key])}` : `${name}${value}`;
+    const value = shownFigure(key, merit);
+    return uncorrected ? `${name}${value.padEnd(16)}${shownFigure(key, uncorrected)}` : `${name}${value}`;
   });
   const header = `${''.padEnd(26)}${'these phases'.padEnd(16)}phases of an ideal chip`;
   return (uncorrected ? [header, ...lines] : lines).join('\n');
+}
+
+/** Decibels that rounding leaves of no loss. */
+const NO_LOSS_DB = 1e-12;
+
+function shownFigure(key: keyof Merit, merit: Merit): string {
+  return key === 'transmissionDb' && Math.abs(merit[key]) < NO_LOSS_DB ? '0' : shownMerit(merit[key]);
 }
 
 /** Nearer to 1 than rounding leaves it. */

@@ -7,7 +7,7 @@ import type { ReassignedSide } from '../program/reassignPorts.js';
 import { REASSIGNED_SIDES } from '../program/reassignPorts.js';
 import type { Retuning } from '../program/retunings.js';
 import { RETUNINGS } from '../program/retunings.js';
-import { parsePortList } from '../target/parsePorts.js';
+import { parsePortList, parsePorts } from '../target/parsePorts.js';
 import { positiveNumberFor } from './commandOptions.js';
 
 /** Options that say how the phases of a chip are found. */
@@ -83,8 +83,13 @@ export function settledRetuneOptions(options: RetuneOptions): Record<string, unk
  * @throws InputError `usage/retune` for options that mean nothing without --retune refine, `usage/ports` for
  * ports that the target does not have
  */
-export function requireSensibleRetuning(options: RetuneOptions, modes: number): void {
+export function requireSensibleRetuning(
+  options: RetuneOptions & { readonly ports?: string },
+  modes: number,
+): void {
   const { retune, inputs, outputs, refineFor, refineSeconds, refineIterations } = options;
+  const [first, last] = options.ports === undefined ? [1, modes] : parsePorts(options.ports);
+  const size = last - first + 1;
   if (retune !== 'refine') {
     const given = Object.entries({
       '--inputs': inputs,
@@ -104,14 +109,29 @@ export function requireSensibleRetuning(options: RetuneOptions, modes: number): 
     ['--inputs', inputs],
     ['--outputs', outputs],
   ] as const) {
-    const missing = ports?.find((port) => port >= modes);
+    const missing = ports?.find((port) => port >= size);
     if (missing === undefined) continue;
     throw new InputError(
       'usage/ports',
       `${option}: there is no port ${missing + 1}`,
-      `The ports of this chip are numbered 1 to ${modes}.`,
+      `The ports of the target are numbered 1 to ${size}, wherever it stands on the chip.`,
     );
   }
+}
+
+/**
+ * The same options with the chosen ports of the target as ports of the chip: those of a target that --ports puts
+ * on some of them count from there.
+ */
+export function onChipPorts<T extends RetuneOptions & { readonly ports?: string }>(options: T): T {
+  if (options.ports === undefined) return options;
+  const [first] = parsePorts(options.ports);
+  const moved = (ports: readonly number[]): number[] => ports.map((port) => port + first - 1);
+  return {
+    ...options,
+    ...(options.inputs ? { inputs: moved(options.inputs) } : {}),
+    ...(options.outputs ? { outputs: moved(options.outputs) } : {}),
+  };
 }
 
 function portsFor(option: string): (text: string) => readonly number[] {

@@ -1,10 +1,12 @@
 import type { Chip } from '../chip/Chip.js';
 import type { CellMargin } from '../program/cellMargins.js';
+import type { CostDescription } from '../merit/createCost.js';
 import type { PortAssignment } from '../program/reassignPorts.js';
 import type { AngleUnit } from '../units/angle.js';
 import { counted, shortNumber, shownAngle } from './messages.js';
 import { MERIT_NAMES, shownMerit } from './reportParts.js';
 import type { ReassignedTarget, RetunedTarget } from './retuneTarget.js';
+import { judgedKey } from './retuneTarget.js';
 import { textTable } from './textTable.js';
 
 /** Meshes with more ports have their reach summed up in the report, not listed cell by cell. */
@@ -29,6 +31,8 @@ export function retuningBlocks(chip: Chip, found: RetunedTarget): Record<string,
             after: refinement.figure,
             iterations: refinement.iterations,
             stopped: refinement.stopped,
+            starts: found.starts,
+            ...(found.figureWithoutStuck === null ? {} : { withoutStuck: found.figureWithoutStuck }),
           },
         }
       : {}),
@@ -72,6 +76,7 @@ export function assignmentText({ outputs, inputs }: PortAssignment): string {
 
 /** How the phases were found, as paragraphs of text. */
 export function retuningText(
+  chip: Chip,
   found: RetunedTarget,
   { assignment, gain }: ReassignedTarget,
   unit: AngleUnit,
@@ -88,14 +93,12 @@ export function retuningText(
     paragraphs.push(textTable(['retuning', 'fidelity', 'port-phase-free', 'power distance'], rows));
   }
   if (refinement && refined) {
-    const ports = [
-      ...(refined.inputs ? [`light in inputs ${numbers(refined.inputs).join(', ')}`] : []),
-      ...(refined.outputs ? [`outputs ${numbers(refined.outputs).join(', ')}`] : []),
-    ];
-    const where = ports.length === 0 ? '' : ` for ${ports.join(' and ')}`;
+    const where = portsText(refined);
+    const starts = found.starts > 1 ? `, the best of ${found.starts} starts` : '';
     paragraphs.push(
       `refined ${MERIT_NAMES[refined.figure]}${where}: from ${shownMerit(refinement.figureBefore)} to ` +
-        `${shownMerit(refinement.figure)} in ${counted(refinement.iterations, 'step')} (${STOPS[refinement.stopped]})`,
+        `${shownMerit(refinement.figure)} in ${counted(refinement.iterations, 'step')}${starts} (${STOPS[refinement.stopped]})` +
+        (where === '' ? '' : '; all other figures are over all ports'),
     );
   }
   if (gain !== null) {
@@ -112,9 +115,12 @@ export function retuningText(
       .slice(0, 5)
       .map(({ shifterIndex, phaseRad }) => `${shifterIndex + 1} at ${shownAngle(phaseRad, unit)}`);
     const more = stuck.length > 5 ? ` and ${stuck.length - 5} more` : '';
+    const key = refined?.figure ?? judgedKey(chip);
+    const figure = refinement?.figure ?? merit[key];
     paragraphs.push(
       `stuck: ${stuck.length === 1 ? 'shifter' : 'shifters'} ${list.join(', ')}${more}; ` +
-        `fidelity ${shownMerit(merit.fidelity)}, without that ${shownMerit(meritWithoutStuck.fidelity)}`,
+        `${MERIT_NAMES[key]}${refined ? portsText(refined) : ''} ${shownMerit(figure)}, without that ` +
+        shownMerit(found.figureWithoutStuck ?? meritWithoutStuck[key]),
     );
   }
   const least = leastMargin(margins);
@@ -124,6 +130,33 @@ export function retuningText(
     );
   }
   return paragraphs;
+}
+
+/** The chosen ports in words, as the chip has them; empty for all. */
+function portsText({ inputs, outputs }: CostDescription): string {
+  const list = (noun: string, ports: readonly number[]): string =>
+    `the chip's ${noun}${ports.length === 1 ? '' : 's'} ${numbers(ports).join(', ')}`;
+  const ports = [
+    ...(inputs ? [`light in ${list('input', inputs)}`] : []),
+    ...(outputs ? [list('output', outputs)] : []),
+  ];
+  return ports.length === 0 ? '' : ` for ${ports.join(' and ')}`;
+}
+
+/**
+ * The caption of a figure, whose last line is the fidelity: after a refinement for chosen ports it says that this is
+ * over all ports, and what was refined.
+ */
+export function refinementCaption(
+  { refinement, refined }: RetunedTarget,
+  lines: readonly string[],
+): readonly string[] {
+  if (!refinement || !refined || portsText(refined) === '') return lines;
+  return [
+    ...lines.slice(0, -1),
+    `refined${portsText(refined)}: ${MERIT_NAMES[refined.figure]} ${shownMerit(refinement.figure)}`,
+    `over all ports: ${lines.at(-1)}`,
+  ];
 }
 
 const STOPS = {

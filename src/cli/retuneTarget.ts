@@ -1,4 +1,4 @@
-import type { Chip } from '../chip/Chip.js';
+import type { Chip, PhaseRange } from '../chip/Chip.js';
 import type { Settings } from '../chip/Settings.js';
 import type { StuckShifter } from '../chip/stuckShifters.js';
 import { stuckShifters, withoutStuckShifters } from '../chip/stuckShifters.js';
@@ -17,7 +17,8 @@ import { principalSettings } from '../program/principalSettings.js';
 import { programChip } from '../program/programChip.js';
 import type { PortAssignment } from '../program/reassignPorts.js';
 import { reassignPorts, sameAssignment } from '../program/reassignPorts.js';
-import type { RefinedSettings } from '../program/refineSettings.js';
+import { randomSettings } from '../program/randomSettings.js';
+import type { RefinedSettings, RefineOptions } from '../program/refineSettings.js';
 import { refineInterruptibly } from '../program/refineSettings.js';
 import type { DirectRetuning, Retuning } from '../program/retunings.js';
 import { simulate } from '../simulate/simulate.js';
@@ -44,6 +45,10 @@ export interface RetunedTarget {
   readonly retunings: readonly MeritOfRetuning[];
   readonly refinement: RefinedSettings | null;
   readonly refined: CostDescription | null;
+  /** Starts that the refinement went from. */
+  readonly starts: number;
+  /** What the refinement, or else the figure by which the chip is judged, would come to if none were stuck. */
+  readonly figureWithoutStuck: number | null;
   readonly stuck: readonly StuckShifter[];
   /** What the chip would do if no shifter were stuck; null when none is. */
   readonly meritWithoutStuck: Merit | null;
@@ -109,6 +114,8 @@ export async function retuneTarget(
   const free = freePorts(chip);
   const meritOf = (settings: Settings): Merit => figuresOfMerit(target, simulate(chip, settings), free);
   const merit = figuresOfMerit(target, achieved, free);
+  const meritWithoutStuck =
+    working && without && figuresOfMerit(target, simulate(working, without.settings), free);
   return {
     ...found,
     achieved,
@@ -118,14 +125,15 @@ export async function retuneTarget(
       { retune, merit },
     ],
     stuck,
-    meritWithoutStuck:
-      working && without && figuresOfMerit(target, simulate(working, without.settings), free),
+    meritWithoutStuck,
+    figureWithoutStuck:
+      meritWithoutStuck && (without?.refinement?.figure ?? meritWithoutStuck[judgedKey(chip)]),
   };
 }
 
 interface Programs extends Pick<
   RetunedTarget,
-  'settings' | 'outOfReach' | 'outOfRange' | 'margins' | 'refinement' | 'refined'
+  'settings' | 'outOfReach' | 'outOfRange' | 'margins' | 'refinement' | 'refined' | 'starts'
 > {
   readonly lesser: readonly (readonly [DirectRetuning, Settings])[];
 }
@@ -143,7 +151,7 @@ async function programsOf(
   // What the target asks of the cells one by one, whatever is then made of it.
   const { outOfReach } = cell.program;
   const margins = cellMargins(chip, cell.program);
-  const direct = { refinement: null, refined: null, outOfReach, margins };
+  const direct = { refinement: null, refined: null, starts: 0, outOfReach, margins };
   if (retune === 'none') {
     return { ...direct, settings: none.settings, outOfRange: none.outOfRange, lesser: [] };
   }
@@ -160,14 +168,58 @@ async function programsOf(
   lesser.push(['mesh', mesh.settings]);
   const refined = costDescription(chip, options, assignment);
   const starts = lesser.map(([, settings]) => settings);
-  const refinement = await refineInterruptibly(chip, target, starts, refined, {
+  const limits = (spent: number): RefineOptions => ({
     signal,
     onProgress,
-    ...(options.refineSeconds === undefined ? {} : { mostSeconds: options.refineSeconds }),
+    ...(options.refineSeconds === undefined
+      ? {}
+      : { mostSeconds: Math.max(options.refineSeconds - spent, LEAST_SECONDS) }),
     ...(options.refineIterations === undefined ? {} : { mostIterations: options.refineIterations }),
   });
+  const began = performance.now();
+  let refinement = await refineInterruptibly(chip, target, starts, refined, limits(0));
+  const { figureBefore } = refinement;
+  let tried = 1;
+  for (; tried <= moreStarts(chip) && !isOver(refinement, options, began); tried++) {
+    const start = [randomSettings(chip, tried - 1)];
+    const spent = (performance.now() - began) / 1000;
+    const other = await refineInterruptibly(chip, target, start, refined, limits(spent));
+    if (other.cost < refinement.cost) refinement = { ...other, figureBefore };
+    if (other.stopped === 'interrupted' || other.stopped === 'time') {
+      refinement = { ...refinement, stopped: other.stopped };
+    }
+  }
   const settings = calmer(chip, target, refinement, refined);
-  return { settings, outOfRange: [], outOfReach, margins, lesser, refinement, refined };
+  return { settings, outOfRange: [], outOfReach, margins, lesser, refinement, refined, starts: tried };
+}
+
+/** Time left for a start when the time granted is over: enough to look at it once. */
+const LEAST_SECONDS = 1e-3;
+/** Random starts besides the programmed ones, and the largest chip that is worth them by default. */
+const MORE_STARTS = 4;
+const LARGEST_FOR_MORE_STARTS = 24;
+
+/**
+ * Chips whose shifters are limited or stuck have poor local minima near their programmed phases; a few starts
+ * elsewhere find better ones. On others the programmed phases are as good as any start.
+ */
+function moreStarts({ mesh, shifterRange, shifterRanges }: Chip): number {
+  const isLimited = isShort(shifterRange) || Array.from(shifterRanges.values()).some(isShort);
+  return isLimited && mesh.modes <= LARGEST_FOR_MORE_STARTS ? MORE_STARTS : 0;
+}
+
+function isShort(range: PhaseRange | null): boolean {
+  return range !== null && range[1] - range[0] < 2 * Math.PI;
+}
+
+function isOver({ stopped }: RefinedSettings, { refineSeconds }: RetuneOptions, began: number): boolean {
+  if (stopped === 'interrupted' || stopped === 'time') return true;
+  return refineSeconds !== undefined && performance.now() - began > 1000 * refineSeconds;
+}
+
+/** The figure of merit by which a chip is judged. */
+export function judgedKey(chip: Chip): 'fidelity' | 'portPhaseFreeFidelity' {
+  return chip.portShifters ? 'fidelity' : 'portPhaseFreeFidelity';
 }
 
 /** Figures that differ by no more are the same to rounding. */
@@ -196,7 +248,7 @@ function costDescription(
   { refineFor, inputs, outputs }: RetuneOptions,
   assignment: PortAssignment,
 ): CostDescription {
-  const figure = refineFor ?? (chip.portShifters ? 'fidelity' : 'portPhaseFreeFidelity');
+  const figure = refineFor ?? judgedKey(chip);
   return {
     figure,
     freePorts: freePorts(chip),

@@ -1,4 +1,5 @@
 import type { Chip } from '../chip/Chip.js';
+import { stuckShifters } from '../chip/stuckShifters.js';
 import { drawHand } from './drawHand.js';
 import { columnWord } from './drawColumnNumbers.js';
 import type { MeshFigureLayout } from './meshFigureLayout.js';
@@ -60,6 +61,7 @@ function legendNotes(chip: Chip, layout: MeshFigureLayout): string[] {
   const notes = [
     layout.hands ? 'Square: phase shifter; its hand turns counterclockwise.' : 'Square: phase shifter.',
   ];
+  if (stuckShifters(chip).length > 0) notes.push('Dashed edge: stuck.');
   if (chip.mesh.cells === 0) return notes;
   if (layout.numbers) notes.push(numbersNote(chip, layout));
   if (chip.style.internal === 'differential') {

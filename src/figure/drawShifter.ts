@@ -1,6 +1,7 @@
 import type { Chip } from '../chip/Chip.js';
 import type { Shifter } from '../chip/shifters.js';
 import { phaseOf } from '../chip/shifters.js';
+import { isStuck } from '../chip/stuckShifters.js';
 import { drawHand } from './drawHand.js';
 import type { MeshPen } from './MeshPen.js';
 import type { MeshFigureLayout } from './meshFigureLayout.js';
@@ -8,6 +9,7 @@ import { isExternalAbove, isInternalAbove, numberBaseline, SMALL_TEXT } from './
 import { phaseColour } from './phaseColour.js';
 import { phaseLabel } from './phaseLabel.js';
 import type { SvgPart } from './SvgPage.js';
+import { rounded } from './SvgPage.js';
 import { guardedTextWidth } from './textWidth.js';
 
 /** One shifter as a group: what it is as a title, its block or two, and its number. */
@@ -19,28 +21,38 @@ export function drawShifter(parent: SvgPart, pen: MeshPen, shifter: Shifter): vo
   group.addText('title', describeShifter(chip, shifter, phase));
   const x = shifterCentre(layout, shifter);
   const y = guideY(shifter.portIndex);
-  drawPhaseBlock(group, layout, x, y, phase);
+  const stuck = isStuck(chip, shifter.index);
+  drawPhaseBlock(group, layout, x, y, phase, stuck);
   const pair = shifter.role === 'internal' && chip.style.internal === 'differential';
-  if (pair) drawPhaseBlock(group, layout, x, guideY(shifter.portIndex + 1), phase);
+  if (pair) drawPhaseBlock(group, layout, x, guideY(shifter.portIndex + 1), phase, stuck);
   if (layout.numbers) drawNumber(group, pen, shifter, phase);
 }
 
 /**
  * A square in the phase's colour with a hand that points along the phase, counterclockwise from the right.
  */
-function drawPhaseBlock(group: SvgPart, layout: MeshFigureLayout, x: number, y: number, phase: number): void {
+function drawPhaseBlock(
+  group: SvgPart,
+  layout: MeshFigureLayout,
+  x: number,
+  y: number,
+  phase: number,
+  stuck: boolean,
+): void {
   const size = layout.block;
   const stroke = Math.min(0.13, 0.12 * size);
+  const edge = stuck
+    ? { 'stroke': '#c01050', 'stroke-width': 2.2 * stroke, 'stroke-dasharray': rounded(size / 5) }
+    : { 'stroke': '#222222', 'stroke-width': stroke };
   group.add('rect', {
-    'class': 'block',
-    'x': x - size / 2,
-    'y': y - size / 2,
-    'width': size,
-    'height': size,
-    'rx': 0.14 * size,
-    'fill': phaseColour(phase),
-    'stroke': '#222222',
-    'stroke-width': stroke,
+    class: 'block',
+    x: x - size / 2,
+    y: y - size / 2,
+    width: size,
+    height: size,
+    rx: 0.14 * size,
+    fill: phaseColour(phase),
+    ...edge,
   });
   if (layout.hands) drawHand(group, x, y, size, phase);
 }
@@ -131,8 +143,9 @@ function describeShifter(chip: Chip, shifter: Shifter, phase: number): string {
   const port = pair
     ? `ports ${shifter.portIndex + 1} (half the phase) and ${shifter.portIndex + 2} (minus half)`
     : `port ${shifter.portIndex + 1}`;
+  const stuck = isStuck(chip, shifter.index) ? 'stuck ' : '';
   return (
-    `shifter ${shifter.index + 1}${name === undefined ? '' : ` (${name})`}, ${shifter.role}${where}, ${port}: ` +
+    `${stuck}shifter ${shifter.index + 1}${name === undefined ? '' : ` (${name})`}, ${shifter.role}${where}, ${port}: ` +
     `${phase.toFixed(4)} rad, ${phaseLabel(phase)}`
   );
 }

@@ -13,4 +13,5 @@ export const STREAMS = {
   phaseErrors: 7,
   splitterLosses: 8,
   refinementKick: 9,
+  refinementStart: 10,
 } as const;
