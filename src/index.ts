@@ -71,6 +71,8 @@ export type { LimitedSettings } from './program/limitSettings.js';
 export { limitSettings } from './program/limitSettings.js';
 export type { HeldShifter, RefinedSettings, RefineOptions } from './program/refineSettings.js';
 export { principalSettings } from './program/principalSettings.js';
+export type { ThoroughlyRefined } from './program/refineThoroughly.js';
+export { refineThoroughly } from './program/refineThoroughly.js';
 export { refineInterruptibly, refineSettings } from './program/refineSettings.js';
 
 // What a chip does with them, and how well

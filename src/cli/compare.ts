@@ -1,36 +1,32 @@
 import type { Command } from 'commander';
-import type { Chip } from '../chip/Chip.js';
+import { Option } from 'commander';
 import type { ChipFile } from '../chip/chipSchema.js';
-import { shifterCount } from '../chip/shifters.js';
 import { InputError } from '../errors/InputError.js';
 import { nearestName } from '../errors/nearestName.js';
 import type { drawComparison } from '../figure/drawComparison.js';
 import { printableText } from '../figure/printableText.js';
 import { runIdentity } from '../files/contentHash.js';
 import type { Merit } from '../merit/merit.js';
-import { isUpperLimit } from '../merit/merit.js';
-import { cellsPassed } from '../mesh/cellsPassed.js';
 import type { Layout } from '../mesh/Mesh.js';
 import { LAYOUTS } from '../mesh/Mesh.js';
 import type { Retuning } from '../program/retunings.js';
 import { RETUNINGS } from '../program/retunings.js';
-import { summarise } from '../statistics/summary.js';
 import { trialCost } from '../tolerance/chunking.js';
 import type { Threshold } from '../tolerance/thresholds.js';
-import { columnOf, judgedFigures } from '../tolerance/thresholds.js';
+import { judgedFigures } from '../tolerance/thresholds.js';
 import type { TrialPlan } from '../tolerance/TrialPlan.js';
-import { decibelFromPowerRatio } from '../units/decibel.js';
 import type { OutputOptions, TargetOptions } from './commandOptions.js';
 import { addOutputOptions, addTargetOptions, pathFor, settledTargetOptions } from './commandOptions.js';
+import type { Entry, Row, ShownError } from './compareRows.js';
+import { compareCsv, compareTable, LEAST_LOSS_DB, rowOf, shownError } from './compareRows.js';
 import type { Console } from './console.js';
 import { createConsole } from './console.js';
 import { shownSource } from './figureText.js';
 import { finish } from './finish.js';
 import { describedRun, runKept } from './keptRun.js';
-import { counted, shortNumber } from './messages.js';
-import { MERIT_NAMES, reportHead } from './reportParts.js';
-import type { PlanOutcome, PlanResults } from './runPlans.js';
-import { textTable } from './textTable.js';
+import { counted } from './messages.js';
+import { reportHead } from './reportParts.js';
+import type { PlanOutcome } from './runPlans.js';
 import type { SamplingOptions } from './trialOptions.js';
 import {
   addSamplingOptions,
@@ -42,14 +38,7 @@ import {
 import { refineBlock, refinementOf, tellOutOfTime } from './trialRefinement.js';
 import type { Scenario } from './trialScenario.js';
 import { loadScenario, planOf } from './trialScenario.js';
-import {
-  percent,
-  requireLight,
-  scenarioBlocks,
-  thresholdWords,
-  yieldBlock,
-  yieldFolder,
-} from './yieldParts.js';
+import { scenarioBlocks, thresholdWords, yieldFolder } from './yieldParts.js';
 
 /** The splitters that a cell may have, and what the chip file's cellStyle says of it. */
 const CELLS: Readonly<Record<string, ChipFile['cellStyle']>> = { 2: { splitters: 2 }, 3: { splitters: 3 } };
@@ -81,14 +70,9 @@ export function addCompareCommand(parent: Command, setExitCode: (code: number) =
       'chip file whose style, losses, limits and process all rows have',
       pathFor('--chip'),
     )
-    .option('--layouts <list>', 'layouts to compare', listOf('--layouts', LAYOUTS), LAYOUTS)
-    .option(
-      '--splitters <list>',
-      'numbers of splitters of a cell to compare',
-      listOf('--splitters', cells),
-      cells,
-    )
-    .option('--retunes <list>', 'retunings to compare', listOf('--retunes', RETUNINGS), RETUNINGS)
+    .addOption(listOption('--layouts', 'layouts to compare', LAYOUTS))
+    .addOption(listOption('--splitters', 'numbers of splitters of a cell to compare', cells))
+    .addOption(listOption('--retunes', 'retunings to compare', RETUNINGS))
     .option(
       '--trials <number>',
       `chips to sample in each row (default: ${USUAL_TRIALS}, fewer where that would take many minutes)`,
@@ -118,45 +102,6 @@ const USUAL_TRIALS = 1000;
 /** About as much processor time as a row may take when no number of trials is given. */
 const ROW_MICROSECONDS = 60e6;
 const FEWEST_TRIALS = 50;
-
-/** What one row is about. */
-interface Entry {
-  readonly layout: Layout;
-  readonly splitters: number;
-  readonly retune: Retuning;
-  readonly chip: Chip;
-  readonly plan: TrialPlan;
-  readonly trials: number;
-}
-
-/** A row as the report has it. */
-interface Row {
-  readonly layout: Layout;
-  readonly splitters: number;
-  readonly retune: Retuning;
-  readonly fidelity: Mean;
-  /** Fidelity won over the retuning in the row before, chip by chip; absent in the first row of a chip. */
-  readonly gain?: Mean & { readonly over: Retuning };
-  /** The other judged figures. */
-  readonly others: Partial<Record<keyof Merit, Mean>>;
-  readonly yield: number;
-  readonly yieldInterval: readonly [low: number, high: number];
-  readonly passed: number;
-  readonly trials: number;
-  readonly columns: number;
-  readonly splitterCount: number;
-  readonly shifterCount: number;
-  readonly cellsPassed: { readonly fewest: number; readonly most: number };
-  readonly splittersPassed: { readonly fewest: number; readonly most: number };
-  readonly transmission: Mean;
-  readonly transmissionDb: number;
-  readonly clamped: number;
-}
-
-interface Mean {
-  readonly mean: number;
-  readonly standardError: number | null;
-}
 
 interface Comparison {
   readonly console: Console;
@@ -265,69 +210,13 @@ async function chipsToCompare(
   return { chips, leftOut: OWN_FIELDS.filter((field) => file[field] !== undefined) };
 }
 
-/** Results of an entry. */
-interface Found {
-  readonly entry: Entry;
-  readonly results: PlanResults;
-}
-
-/**
- * What a retuning wins over another one on the same chips: as these have the same errors, that is known
- * better than either.
- */
-function gainOver(before: Found | undefined, { entry, results }: Found, columns: number): Pick<Row, 'gain'> {
-  if (before?.entry.chip !== entry.chip) return {};
-  const trials = Math.min(results.trials, before.results.trials);
-  const won = Float64Array.from(
-    { length: trials },
-    (_, k) => results.rows[k * columns]! - before.results.rows[k * columns]!,
-  );
-  const { mean, standardError } = summarise(won);
-  return { gain: { over: before.entry.retune, mean, standardError } };
-}
-
-function rowOf(found: Found, before: Found | undefined, { figures, thresholds, options }: Comparison): Row {
-  const { layout, splitters, retune, chip } = found.entry;
-  const { results } = found;
-  const { mesh } = chip;
-  const meanOf = (key: keyof Merit): Mean => {
-    const column = columnOf(results.rows, figures.length, figures.indexOf(key));
-    requireLight(column, key);
-    const { mean, standardError } = summarise(column);
-    return { mean, standardError };
-  };
-  const { share, low, high, passed, trials } = yieldBlock(results, figures, thresholds, options.confidence);
-  const passes = cellsPassed(mesh);
-  const transmission = meanOf('transmission');
-  const others = figures.filter((key) => key !== 'fidelity' && key !== 'transmission');
-  return {
-    layout,
-    splitters,
-    retune,
-    fidelity: meanOf('fidelity'),
-    ...gainOver(before, found, figures.length),
-    others: Object.fromEntries(others.map((key) => [key, meanOf(key)])),
-    yield: share,
-    yieldInterval: [low, high],
-    passed,
-    trials,
-    columns: mesh.columns,
-    splitterCount: splitters * mesh.cells,
-    shifterCount: shifterCount(chip),
-    cellsPassed: passes,
-    splittersPassed: { fewest: splitters * passes.fewest, most: splitters * passes.most },
-    transmission,
-    transmissionDb: decibelFromPowerRatio(transmission.mean),
-    clamped: results.clamped,
-  };
-}
-
 async function reportComparison(comparison: Comparison, outcome: PlanOutcome): Promise<void> {
   const { console, options, scenario, thresholds, figures, entries, leftOut, folder, runId } = comparison;
   const begun = entries
     .map((entry, k) => ({ entry, results: outcome.results[k]! }))
     .filter(({ results }) => results.trials > 0);
-  const rows = begun.map((found, k) => rowOf(found, begun[k - 1], comparison));
+  const judgement = { figures, thresholds, confidence: options.confidence };
+  const rows = begun.map((found, k) => rowOf(found, begun[k - 1], judgement));
   const shown = shownError(thresholds, scenario.readChip.chip);
   const { drawComparison } = await import('../figure/drawComparison.js');
   const svg = drawComparison(...figureOf(comparison, rows, shown, outcome.interrupted));
@@ -370,28 +259,6 @@ async function reportComparison(comparison: Comparison, outcome: PlanOutcome): P
     );
   }
   tellOutOfTime(console, refine, refined);
-}
-
-/** The error that is shown of each row: of what is judged first, as far as it makes one. */
-interface ShownError {
-  readonly words: string;
-  readonly of: (row: Row) => Mean;
-}
-
-function shownError(thresholds: readonly Threshold[], chip: Chip): ShownError {
-  const first = thresholds[0]!.key;
-  const isFidelity = (['averageGateFidelity', 'portPhaseFreeFidelity'] as (keyof Merit)[]).includes(first);
-  const judged = isUpperLimit(first) || isFidelity;
-  const key = judged ? first : 'fidelity';
-  const meanOf = (row: Row): Mean => (key === 'fidelity' ? row.fidelity : row.others[key]!);
-  if (isUpperLimit(key)) return { words: MERIT_NAMES[key], of: meanOf };
-  return {
-    words: key === 'fidelity' && chip.portShifters ? 'infidelity 1 \u2212 F' : `1 \u2212 ${MERIT_NAMES[key]}`,
-    of: (row) => {
-      const { mean, standardError } = meanOf(row);
-      return { mean: 1 - mean, standardError };
-    },
-  };
 }
 
 /** The chip file's name, or what ideal chips of both layouts have in common. */
@@ -458,44 +325,11 @@ function trialsWords(rows: readonly Row[]): string {
   return fewest === most ? `${counted(most, 'chip')} a row` : `${fewest} to ${most} chips a row`;
 }
 
-function compareCsv(rows: readonly Row[], figures: readonly (keyof Merit)[]): string {
-  const others = figures.filter((key) => key !== 'fidelity' && key !== 'transmission');
-  const header = [
-    ...['layout', 'splitters', 'retune', 'fidelityMean', 'fidelityStandardError'],
-    ...others.flatMap((key) => [`${key}Mean`, `${key}StandardError`]),
-    ...['yield', 'yieldLow', 'yieldHigh', 'passed', 'trials', 'columns', 'splitterCount', 'shifterCount'],
-    ...['fewestCellsPassed', 'mostCellsPassed', 'transmissionMean', 'transmissionDb'],
-  ];
-  const table = rows.map((row) => [
-    ...[row.layout, row.splitters, row.retune, row.fidelity.mean, row.fidelity.standardError ?? ''],
-    ...others.flatMap((key) => [row.others[key]!.mean, row.others[key]!.standardError ?? '']),
-    ...[row.yield, ...row.yieldInterval, row.passed, row.trials],
-    ...[row.columns, row.splitterCount, row.shifterCount, row.cellsPassed.fewest, row.cellsPassed.most],
-    ...[row.transmission.mean, row.transmissionDb],
-  ]);
-  return `${[header, ...table].map((fields) => fields.join(',')).join('\n')}\n`;
-}
-
-function compareTable(rows: readonly Row[], shown: ShownError): string {
-  return textTable(
-    [
-      ...['layout', 'a cell', 'retuning', `mean ${shown.words}`, '+-', 'yield', 'chips'],
-      ...['columns', 'splitters', 'shifters', 'loss (dB)'],
-    ],
-    rows.map((row) => {
-      const { mean, standardError } = shown.of(row);
-      return [
-        row.layout,
-        String(row.splitters),
-        row.retune,
-        mean.toExponential(2),
-        standardError === null ? '' : standardError.toExponential(1),
-        percent(row.yield),
-        ...[row.trials, row.columns, row.splitterCount, row.shifterCount].map(String),
-        shownLoss(row.transmissionDb),
-      ];
-    }),
-  );
+/** An option that takes some of the words known, all of them by default. */
+function listOption(name: string, description: string, known: readonly string[]): Option {
+  return new Option(`${name} <list>`, description)
+    .argParser(listOf(name, known))
+    .default(known, known.join(','));
 }
 
 /**
@@ -520,10 +354,3 @@ function listOf<Word extends string>(
     return known.filter((name) => words.includes(name));
   };
 }
-
-/** A loss without what rounding leaves of none. */
-function shownLoss(transmissionDb: number): string {
-  return transmissionDb > -LEAST_LOSS_DB ? '0' : shortNumber(-transmissionDb);
-}
-
-const LEAST_LOSS_DB = 1e-9;

@@ -1,12 +1,12 @@
 import type { Chip } from '../chip/Chip.js';
 import type { CellMargin } from '../program/cellMargins.js';
 import type { CostDescription } from '../merit/createCost.js';
+import { judgedFigure } from '../merit/judgedFidelity.js';
 import type { PortAssignment } from '../program/reassignPorts.js';
 import type { AngleUnit } from '../units/angle.js';
 import { counted, shortNumber, shownAngle } from './messages.js';
 import { MERIT_NAMES, shownMerit } from './reportParts.js';
 import type { ReassignedTarget, RetunedTarget } from './retuneTarget.js';
-import { judgedKey } from './retuneTarget.js';
 import { textTable } from './textTable.js';
 
 /** Meshes with more ports have their reach summed up in the report, not listed cell by cell. */
@@ -31,7 +31,7 @@ export function retuningBlocks(chip: Chip, found: RetunedTarget): Record<string,
             after: refinement.figure,
             iterations: refinement.iterations,
             stopped: refinement.stopped,
-            starts: found.starts,
+            starts: refinement.starts,
             ...(found.figureWithoutStuck === null ? {} : { withoutStuck: found.figureWithoutStuck }),
           },
         }
@@ -94,7 +94,7 @@ export function retuningText(
   }
   if (refinement && refined) {
     const where = portsText(refined);
-    const starts = found.starts > 1 ? `, the best of ${found.starts} starts` : '';
+    const starts = refinement.starts > 1 ? `, the best of ${refinement.starts} starts` : '';
     paragraphs.push(
       `refined ${MERIT_NAMES[refined.figure]}${where}: from ${shownMerit(refinement.figureBefore)} to ` +
         `${shownMerit(refinement.figure)} in ${counted(refinement.iterations, 'step')}${starts} (${STOPS[refinement.stopped]})` +
@@ -115,7 +115,7 @@ export function retuningText(
       .slice(0, 5)
       .map(({ shifterIndex, phaseRad }) => `${shifterIndex + 1} at ${shownAngle(phaseRad, unit)}`);
     const more = stuck.length > 5 ? ` and ${stuck.length - 5} more` : '';
-    const key = refined?.figure ?? judgedKey(chip);
+    const key = refined?.figure ?? judgedFigure(chip);
     const figure = refinement?.figure ?? merit[key];
     paragraphs.push(
       `stuck: ${stuck.length === 1 ? 'shifter' : 'shifters'} ${list.join(', ')}${more}; ` +

@@ -1,4 +1,4 @@
-import type { Chip, PhaseRange } from '../chip/Chip.js';
+import type { Chip } from '../chip/Chip.js';
 import type { Settings } from '../chip/Settings.js';
 import type { StuckShifter } from '../chip/stuckShifters.js';
 import { stuckShifters, withoutStuckShifters } from '../chip/stuckShifters.js';
@@ -8,18 +8,17 @@ import type { CostDescription } from '../merit/createCost.js';
 import { createCost } from '../merit/createCost.js';
 import type { Merit } from '../merit/merit.js';
 import { figuresOfMerit } from '../merit/merit.js';
+import { judgedFigure } from '../merit/judgedFidelity.js';
 import { freePorts } from '../merit/portPhaseFree.js';
 import type { MinimisationProgress } from '../optimise/minimise.js';
 import type { OutOfRange, OutOfReach } from '../program/carryingSweep.js';
 import type { CellMargin } from '../program/cellMargins.js';
 import { cellMargins } from '../program/cellMargins.js';
-import { principalSettings } from '../program/principalSettings.js';
 import { programChip } from '../program/programChip.js';
 import type { PortAssignment } from '../program/reassignPorts.js';
 import { reassignPorts, sameAssignment } from '../program/reassignPorts.js';
-import { randomSettings } from '../program/randomSettings.js';
-import type { RefinedSettings, RefineOptions } from '../program/refineSettings.js';
-import { refineInterruptibly } from '../program/refineSettings.js';
+import type { ThoroughlyRefined } from '../program/refineThoroughly.js';
+import { refineThoroughly } from '../program/refineThoroughly.js';
 import type { DirectRetuning, Retuning } from '../program/retunings.js';
 import { simulate } from '../simulate/simulate.js';
 import type { RetuneOptions } from './retuneOptions.js';
@@ -43,10 +42,8 @@ export interface RetunedTarget {
   readonly margins: readonly CellMargin[];
   /** The retuning asked for, and the lesser ones for comparison, from the least on. */
   readonly retunings: readonly MeritOfRetuning[];
-  readonly refinement: RefinedSettings | null;
+  readonly refinement: ThoroughlyRefined | null;
   readonly refined: CostDescription | null;
-  /** Starts that the refinement went from. */
-  readonly starts: number;
   /** What the refinement, or else the figure by which the chip is judged, would come to if none were stuck. */
   readonly figureWithoutStuck: number | null;
   readonly stuck: readonly StuckShifter[];
@@ -127,13 +124,13 @@ export async function retuneTarget(
     stuck,
     meritWithoutStuck,
     figureWithoutStuck:
-      meritWithoutStuck && (without?.refinement?.figure ?? meritWithoutStuck[judgedKey(chip)]),
+      meritWithoutStuck && (without?.refinement?.figure ?? meritWithoutStuck[judgedFigure(chip)]),
   };
 }
 
 interface Programs extends Pick<
   RetunedTarget,
-  'settings' | 'outOfReach' | 'outOfRange' | 'margins' | 'refinement' | 'refined' | 'starts'
+  'settings' | 'outOfReach' | 'outOfRange' | 'margins' | 'refinement' | 'refined'
 > {
   readonly lesser: readonly (readonly [DirectRetuning, Settings])[];
 }
@@ -151,7 +148,7 @@ async function programsOf(
   // What the target asks of the cells one by one, whatever is then made of it.
   const { outOfReach } = cell.program;
   const margins = cellMargins(chip, cell.program);
-  const direct = { refinement: null, refined: null, starts: 0, outOfReach, margins };
+  const direct = { refinement: null, refined: null, outOfReach, margins };
   if (retune === 'none') {
     return { ...direct, settings: none.settings, outOfRange: none.outOfRange, lesser: [] };
   }
@@ -168,78 +165,13 @@ async function programsOf(
   lesser.push(['mesh', mesh.settings]);
   const refined = costDescription(chip, options, assignment);
   const starts = lesser.map(([, settings]) => settings);
-  const limits = (spent: number): RefineOptions => ({
+  const refinement = await refineThoroughly(chip, target, starts, refined, {
     signal,
     onProgress,
-    ...(options.refineSeconds === undefined
-      ? {}
-      : { mostSeconds: Math.max(options.refineSeconds - spent, LEAST_SECONDS) }),
+    ...(options.refineSeconds === undefined ? {} : { mostSeconds: options.refineSeconds }),
     ...(options.refineIterations === undefined ? {} : { mostIterations: options.refineIterations }),
   });
-  const began = performance.now();
-  let refinement = await refineInterruptibly(chip, target, starts, refined, limits(0));
-  const { figureBefore } = refinement;
-  let tried = 1;
-  for (; tried <= moreStarts(chip) && !isOver(refinement, options, began); tried++) {
-    const start = [randomSettings(chip, tried - 1)];
-    const spent = (performance.now() - began) / 1000;
-    const other = await refineInterruptibly(chip, target, start, refined, limits(spent));
-    if (other.cost < refinement.cost) refinement = { ...other, figureBefore };
-    if (other.stopped === 'interrupted' || other.stopped === 'time') {
-      refinement = { ...refinement, stopped: other.stopped };
-    }
-  }
-  const settings = calmer(chip, target, refinement, refined);
-  return { settings, outOfRange: [], outOfReach, margins, lesser, refinement, refined, starts: tried };
-}
-
-/** Time left for a start when the time granted is over: enough to look at it once. */
-const LEAST_SECONDS = 1e-3;
-/** Random starts besides the programmed ones, and the largest chip that is worth them by default. */
-const MORE_STARTS = 4;
-const LARGEST_FOR_MORE_STARTS = 24;
-
-/**
- * Chips whose shifters are limited or stuck have poor local minima near their programmed phases; a few starts
- * elsewhere find better ones. On others the programmed phases are as good as any start.
- */
-function moreStarts({ mesh, shifterRange, shifterRanges }: Chip): number {
-  const isLimited = isShort(shifterRange) || Array.from(shifterRanges.values()).some(isShort);
-  return isLimited && mesh.modes <= LARGEST_FOR_MORE_STARTS ? MORE_STARTS : 0;
-}
-
-function isShort(range: PhaseRange | null): boolean {
-  return range !== null && range[1] - range[0] < 2 * Math.PI;
-}
-
-function isOver({ stopped }: RefinedSettings, { refineSeconds }: RetuneOptions, began: number): boolean {
-  if (stopped === 'interrupted' || stopped === 'time') return true;
-  return refineSeconds !== undefined && performance.now() - began > 1000 * refineSeconds;
-}
-
-/** The figure of merit by which a chip is judged. */
-export function judgedKey(chip: Chip): 'fidelity' | 'portPhaseFreeFidelity' {
-  return chip.portShifters ? 'fidelity' : 'portPhaseFreeFidelity';
-}
-
-/** Figures that differ by no more are the same to rounding. */
-const SAME_FIGURE = 1e-12;
-
-/** The refined phases as a plain program would have them, where that changes nothing but rounding. */
-function calmer(
-  chip: Chip,
-  target: ComplexMatrix,
-  { settings, figureBefore }: RefinedSettings,
-  description: CostDescription,
-): Settings {
-  const cost = createCost(target, description);
-  const figureOf = (one: Settings): number => cost.figure(takeColumns(simulate(chip, one), cost.inputs));
-  const principal = principalSettings(chip, settings);
-  const figure = figureOf(principal);
-  const isSame = Math.abs(figure - figureOf(settings)) <= SAME_FIGURE;
-  // What a refinement began with is never given up, not even by a rounding.
-  const isWorse = description.figure === 'powerDistance' ? figure > figureBefore : figure < figureBefore;
-  return isSame && !isWorse ? principal : settings;
+  return { ...direct, settings: refinement.settings, outOfRange: [], lesser, refinement, refined };
 }
 
 /** What is refined: the figure asked for, on the chip's ports that stand for those chosen of the target. */
@@ -248,7 +180,7 @@ function costDescription(
   { refineFor, inputs, outputs }: RetuneOptions,
   assignment: PortAssignment,
 ): CostDescription {
-  const figure = refineFor ?? judgedKey(chip);
+  const figure = refineFor ?? judgedFigure(chip);
   return {
     figure,
     freePorts: freePorts(chip),

@@ -3,6 +3,7 @@ import type { Command } from 'commander';
 import type { Chip, ProcessErrors } from '../chip/Chip.js';
 import { InputError } from '../errors/InputError.js';
 import { nearestName } from '../errors/nearestName.js';
+import { judgedFigure } from '../merit/judgedFidelity.js';
 import type { Merit } from '../merit/merit.js';
 import { isUpperLimit, MERIT_KEYS } from '../merit/merit.js';
 import type { ErrorSource } from '../tolerance/errorSources.js';
@@ -105,7 +106,7 @@ export function thresholdsOf(
   { threshold }: { readonly threshold?: readonly Threshold[] },
   chip: Chip,
 ): readonly Threshold[] {
-  return threshold ?? [{ key: chip.portShifters ? 'fidelity' : 'portPhaseFreeFidelity', limit: 0.99 }];
+  return threshold ?? [{ key: judgedFigure(chip), limit: 0.99 }];
 }
 
 /** Says so when thresholds look at phases that the chip cannot set. */

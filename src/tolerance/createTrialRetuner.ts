@@ -5,6 +5,7 @@ import type { ComplexMatrix } from '../matrix/ComplexMatrix.js';
 import type { CostFigure } from '../merit/createCost.js';
 import { COST_FIGURES } from '../merit/createCost.js';
 import type { Merit } from '../merit/merit.js';
+import { judgedFigure } from '../merit/judgedFidelity.js';
 import { freePorts } from '../merit/portPhaseFree.js';
 import { carryingSweep } from '../program/carryingSweep.js';
 import { programThroughMesh } from '../program/programThroughMesh.js';
@@ -27,7 +28,7 @@ export interface RetunedTrial {
  */
 export function refinedFigure(chip: Chip, judgedFirst: keyof Merit): CostFigure {
   const figure = COST_FIGURES.find((known) => known === judgedFirst) ?? 'fidelity';
-  return figure === 'fidelity' && !chip.portShifters ? 'portPhaseFreeFidelity' : figure;
+  return figure === 'fidelity' ? judgedFigure(chip) : figure;
 }
 
 /**

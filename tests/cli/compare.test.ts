@@ -1,10 +1,11 @@
 import { readFile } from 'node:fs/promises';
 import { join } from 'node:path';
-import { beforeAll, describe, expect, it } from 'vitest';
+import { describe, expect, it } from 'vitest';
 import { named } from '../figure/figureParts.js';
 import { readXml } from '../figure/readXml.js';
-import type { CommandRun } from './runCommand.js';
-import { freshFolder, runCommand, runMany } from './runCommand.js';
+import { describeRefusals } from './refusals.js';
+import type { Refusal } from './refusals.js';
+import { freshFolder, runCommand } from './runCommand.js';
 import { chunksIn, resultsIn, stopCommand } from './yieldRuns.js';
 
 interface Mean {
@@ -244,15 +245,8 @@ describe('compare, the same bytes', () => {
   });
 });
 
-interface Fault {
-  readonly args: readonly string[];
-  readonly files?: Readonly<Record<string, string>>;
-  readonly says: RegExp;
-  readonly mends: RegExp;
-}
-
 const DFT = ['compare', 'dft(3)', '--sigma', '0.02'];
-const FAULTS: readonly Fault[] = [
+const FAULTS: readonly Refusal[] = [
   { args: ['compare', 'dft(3)'], says: /nothing makes the chips differ/, mends: /--sigma 0\.02/ },
   { args: ['compare'], says: /missing required argument/, mends: /help compare/ },
   { args: [...DFT, '--layouts', 'square'], says: /there is no square/, mends: /rectangular,triangular/ },
@@ -298,23 +292,4 @@ const FAULTS: readonly Fault[] = [
   },
 ];
 
-describe('compare refuses, with a line that says what and one that mends', () => {
-  let runs: readonly CommandRun[];
-  beforeAll(async () => {
-    runs = await runMany(FAULTS.map(({ args, files }) => ({ args, files })));
-  });
-
-  it.each(FAULTS.map(({ args, says, mends, files }, k) => ({ name: args.join(' '), says, mends, files, k })))(
-    '$k: $name',
-    ({ says, mends, files, k }) => {
-      const { code, stdout, stderr, listing } = runs[k]!;
-      expect([code, stdout]).toEqual([2, '']);
-      const lines = stderr.trimEnd().split('\n');
-      expect(lines).toHaveLength(2);
-      expect(lines[0]).toMatch(says);
-      expect(lines[0]).toMatch(/^error: /);
-      expect(lines[1]).toMatch(mends);
-      expect(listing).toEqual(Object.keys(files ?? {}));
-    },
-  );
-});
+describeRefusals('compare refuses, with a line that says what and one that mends', FAULTS);

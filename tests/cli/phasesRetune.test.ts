@@ -1,4 +1,6 @@
 import { describe, expect, it } from 'vitest';
+import type { Refusal } from './refusals.js';
+import { describeRefusals } from './refusals.js';
 import { asRecord, runCommand } from './runCommand.js';
 import { largestDistance, transferFromCsv } from './transferFromCsv.js';
 
@@ -185,7 +187,8 @@ describe.concurrent('phases --reassign-ports', () => {
     };
     expect(assignment.outputs.toSorted()).toEqual([1, 2, 3, 4, 5, 6]);
     expect(assignment.inputs.toSorted()).toEqual([1, 2, 3, 4, 5, 6]);
-    // Crossing all light through cells that cannot cross is the worst that can be asked of this chip.
+    // To cross all light is the worst to ask of cells that cannot: each of 15 misses its state by e, e^2 = 0.04, and
+    // costs (2/N) e^2 (conventions, section 7), 0.2 in all.
     expect(assignment.after).toBeGreaterThan(assignment.before + 0.05);
     expect(fidelityOf(report)).toBeCloseTo(assignment.after, 12);
     const verified = await runCommand(['verify', 'r/phases.csv', '--json', '--quiet'], {
@@ -215,43 +218,31 @@ describe.concurrent('phases --reassign-ports', () => {
   });
 });
 
-describe.concurrent('phases --retune refuses', () => {
-  const faults: [string, string[], RegExp, RegExp][] = [
-    [
-      'ports without a refinement',
-      ['--inputs', '1'],
-      /^error: --inputs says what is refined/,
-      /--retune refine/,
-    ],
-    [
-      'a port too many',
-      ['--retune', 'refine', '--outputs', '2-7'],
-      /--outputs: there is no port 7/,
-      /1 to 6/,
-    ],
-    ['a port named twice', ['--retune', 'refine', '--inputs', '1,1'], /port 1 is listed twice/, /once/],
-    ['port 0', ['--retune', 'refine', '--inputs', '0'], /there is no port 0/, /from 1/],
-    ['no time', ['--retune', 'refine', '--refine-seconds', '0'], /not a positive number/, /number/],
-    ['half a step', ['--retune', 'refine', '--refine-iterations', '1.5'], /not a whole number/, /500/],
-    ['an unknown retuning', ['--retune', 'best'], /best.*none, cell, mesh, refine/, /help phases/],
-  ];
-  it.each(faults)('%s', async (_, args, says, mends) => {
-    const run = await phases(...args);
-    expect(run.code).toBe(2);
-    const lines = run.stderr.trimEnd().split('\n');
-    expect(lines).toHaveLength(2);
-    expect(lines[0]).toMatch(says);
-    expect(lines[1]).toMatch(mends);
-    expect(run.listing).toEqual(['c.chip.json', 's.chip.json']);
-  });
-
-  it('a stuck shifter with a range', async () => {
-    const chip = { modes: 3, shifterOverrides: [{ shifter: 2, stuckRad: 1, rangeRad: [0, 2] }] };
-    const run = await runCommand(['chip', 'x.chip.json'], { files: { 'x.chip.json': JSON.stringify(chip) } });
-    expect(run.code).toBe(2);
-    expect(run.stderr).toMatch(/shifterOverrides\[0\]\.stuckRad.*a stuck shifter has no range\nLeave out/);
-  });
+/** The command with these options, on the bad chip. */
+const refused = (options: string, says: RegExp, mends: RegExp): Refusal => ({
+  args: ['phases', TARGET, '--chip', 'c.chip.json', ...options.split(' ')],
+  files: { 'c.chip.json': JSON.stringify(BAD) },
+  says,
+  mends,
 });
+
+describeRefusals('phases --retune refuses', [
+  refused('--inputs 1', /--inputs says what is refined/, /--retune refine/),
+  refused('--retune refine --outputs 2-7', /--outputs: there is no port 7/, /1 to 6/),
+  refused('--retune refine --inputs 1,1', /port 1 is listed twice/, /once/),
+  refused('--retune refine --inputs 0', /there is no port 0/, /from 1/),
+  refused('--retune refine --refine-seconds 0', /not a positive number/, /number/),
+  refused('--retune refine --refine-iterations 1.5', /not a whole number/, /500/),
+  refused('--retune best', /best.*none, cell, mesh, refine/, /help phases/),
+  {
+    args: ['chip', 'x.chip.json'],
+    files: {
+      'x.chip.json': '{"modes": 3, "shifterOverrides": [{"shifter": 2, "stuckRad": 1, "rangeRad": [0, 2]}]}',
+    },
+    says: /shifterOverrides\[0\]\.stuckRad.*a stuck shifter has no range/,
+    mends: /^Leave out/,
+  },
+]);
 
 it('shades cells by their margin, and keeps the figure within its classes', async () => {
   const run = await runCommand(

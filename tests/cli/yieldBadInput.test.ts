@@ -1,20 +1,13 @@
-import { beforeAll, describe, expect, it } from 'vitest';
-import type { CommandRun } from './runCommand.js';
-import { freshFolder, runCommand, runMany } from './runCommand.js';
-
-/** A fault in the input: the first line tells what is wrong, the second how to mend it. */
-interface Fault {
-  readonly args: readonly string[];
-  readonly files?: Readonly<Record<string, string>>;
-  readonly says: RegExp;
-  readonly mends: RegExp;
-}
+import { describe, expect, it } from 'vitest';
+import { describeRefusals } from './refusals.js';
+import type { Refusal } from './refusals.js';
+import { freshFolder, runCommand } from './runCommand.js';
 
 const DFT = ['yield', 'dft(3)'];
 const SPREAD = [...DFT, '--sigma', '0.02'];
 
 /** A chip file with this process block. */
-function process(block: string, says: RegExp, mends: RegExp): Fault {
+function process(block: string, says: RegExp, mends: RegExp): Refusal {
   return {
     args: [...DFT, '--chip', 'c.chip.json'],
     files: { 'c.chip.json': `{"modes": 3, "process": ${block}}` },
@@ -23,11 +16,11 @@ function process(block: string, says: RegExp, mends: RegExp): Fault {
   };
 }
 
-function option(args: readonly string[], says: RegExp, mends: RegExp): Fault {
+function option(args: readonly string[], says: RegExp, mends: RegExp): Refusal {
   return { args, says, mends };
 }
 
-const FAULTS: readonly Fault[] = [
+const FAULTS: readonly Refusal[] = [
   option(DFT, /nothing makes the chips differ/, /--sigma 0\.02, --error .* or a process block/),
   option([...DFT, '--sigma', '0'], /nothing makes the chips differ/, /--sigma/),
   option([...DFT, '--error', 'pairCorrelation=0.5'], /nothing makes the chips differ/, /--sigma/),
@@ -170,27 +163,9 @@ const FAULTS: readonly Fault[] = [
   option(['tolerance', 'dft(3)', '--workers', '0'], /0 is not a sensible number/, /from 1 to/),
 ];
 
-describe('yield and tolerance refuse, with a line that says what and one that mends', () => {
-  let runs: readonly CommandRun[];
-  beforeAll(async () => {
-    runs = await runMany(FAULTS.map(({ args, files }) => ({ args, files })));
-  });
+describeRefusals('yield and tolerance refuse, with a line that says what and one that mends', FAULTS);
 
-  it.each(FAULTS.map(({ args, says, mends, files }, k) => ({ name: args.join(' '), says, mends, files, k })))(
-    '$k: $name',
-    ({ says, mends, files, k }) => {
-      const { code, stdout, stderr, listing } = runs[k]!;
-      expect([code, stdout]).toEqual([2, '']);
-      const lines = stderr.trimEnd().split('\n');
-      expect(lines).toHaveLength(2);
-      expect(lines[0]).toMatch(says);
-      expect(lines[0]).toMatch(/^error: /);
-      expect(lines[1]).toMatch(mends);
-      // No new folder of results, and nothing else either.
-      expect(listing).toEqual(Object.keys(files ?? {}));
-    },
-  );
-
+describe('a run that is refused', () => {
   it('leaves results of another run alone', async () => {
     const folder = freshFolder();
     const args = ['yield', 'dft(2)', '--sigma', '0.02', '--trials', '4', '--out', 'r', '--quiet'];
